@@ -1,0 +1,99 @@
+"""Plurality: in each seat the party with the most votes wins.
+
+An exact tie is decided by lot, as many electoral laws do (common practice): each seat holds one ticket per
+draw, the same on all dates, and the tied parties have equal chances. So no party gains from its place in
+the file. With local noise an exact tie practically never happens.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numba import njit, prange
+
+from aggregator.seats.rules import SeatsCounted, SeatVotes
+
+
+def count_by_plurality(votes: SeatVotes) -> SeatsCounted:
+    """Count the seats each party wins, draw by draw.
+
+    Parameters
+    ----------
+    votes
+        Votes in every seat; every seat has at least one party standing.
+
+    Returns
+    -------
+    SeatsCounted
+        Seats per draw, date and party, and the chance of each seat on the last date.
+    """
+    seats = _count(votes.strength, votes.multiplier, votes.region_start, votes.lot)
+    winner = _winners(votes.strength, votes.multiplier[:, -1], votes.region_start, votes.lot)
+    chance = np.stack([(winner == party).mean(axis=0) for party in range(votes.strength.shape[1])], axis=1)
+    return SeatsCounted(seats=seats, chance=chance)
+
+
+# Each draw is one thread's work from start to end: the number of threads changes nothing. Party after party
+# over a row of seats, first the running maximum, then who equals it: both loops run several seats at a time.
+@njit(parallel=True, cache=True)
+def _count(strength, multiplier, region_start, lot):  # type: ignore[no-untyped-def]
+    n_draws, n_parties, n_seats = strength.shape
+    n_dates, n_regions = multiplier.shape[1], multiplier.shape[2]
+    seats = np.zeros((n_draws, n_dates, n_parties), dtype=np.int16)
+    for draw in prange(n_draws):
+        most = np.empty(n_seats, dtype=np.float32)
+        for date in range(n_dates):
+            firsts = 0
+            for region in range(n_regions):
+                first, last = region_start[region], region_start[region + 1]
+                factor = multiplier[draw, date, region]
+                for seat in range(first, last):
+                    most[seat] = strength[draw, 0, seat] * factor[0]
+                for party in range(1, n_parties):
+                    for seat in range(first, last):
+                        most[seat] = max(most[seat], strength[draw, party, seat] * factor[party])
+                for party in range(n_parties):
+                    won = 0
+                    for seat in range(first, last):
+                        won += strength[draw, party, seat] * factor[party] == most[seat]
+                    seats[draw, date, party] += won
+                    firsts += won
+            if firsts > n_seats:
+                seats[draw, date] = 0
+                for region in range(n_regions):
+                    factor = multiplier[draw, date, region]
+                    for seat in range(region_start[region], region_start[region + 1]):
+                        seats[draw, date, _winner(strength[draw, :, seat], factor, lot[draw, seat])] += 1
+    return seats
+
+
+@njit(parallel=True, cache=True)
+def _winners(strength, multiplier, region_start, lot):  # type: ignore[no-untyped-def]
+    """Index of the winning party: dims (draw, seat)."""
+    n_draws, _, n_seats = strength.shape
+    winner = np.empty((n_draws, n_seats), dtype=np.int16)
+    for draw in prange(n_draws):
+        for region in range(multiplier.shape[1]):
+            factor = multiplier[draw, region]
+            for seat in range(region_start[region], region_start[region + 1]):
+                winner[draw, seat] = _winner(strength[draw, :, seat], factor, lot[draw, seat])
+    return winner
+
+
+@njit(cache=True)
+def _winner(strength, factor, lot):  # type: ignore[no-untyped-def]
+    """Index of the party with most votes in one seat; of several, the one the lot points at."""
+    most = np.float32(-1)
+    tied = 0
+    for party in range(factor.size):
+        votes = strength[party] * factor[party]
+        if votes > most:
+            most, tied = votes, 1
+        elif votes == most:
+            tied += 1
+    chosen = int(lot * tied)
+    for party in range(factor.size):
+        if strength[party] * factor[party] == most:
+            if chosen == 0:
+                return party
+            chosen -= 1
+    return 0

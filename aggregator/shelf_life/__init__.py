@@ -1,0 +1,1 @@
+"""How a poll ages: what its respondents are still worth, today and for polling day."""
