@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 
 
@@ -11,7 +13,7 @@ def reference_multipliers(
     """Factors (draw, date, region, party) by many cold-started steps in double precision."""
     strength = strength.astype(float)
     factor = np.ones(support.shape)
-    for region, (first, last) in enumerate(zip(region_start[:-1], region_start[1:], strict=True)):
+    for region, (first, last) in enumerate(pairwise(region_start)):
         here, part = strength[:, None, :, first:last], weight[first:last]
         wanted = support[:, :, region].astype(float)
         for _ in range(3000):
