@@ -1,0 +1,198 @@
+"""A contest as the desk describes it in ``contest.toml``."""
+
+from __future__ import annotations
+
+from datetime import date
+from enum import StrEnum
+from typing import Annotated
+
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field
+
+OTHERS = "OTH"
+
+# The region of a contest that names none.
+WHOLE_COUNTRY = "ALL"
+
+
+# A year outside is a slip of the hand (0231, 20310); it would also not fit into a nanosecond time stamp.
+FIRST_DAY, LAST_DAY = date(1900, 1, 1), date(2199, 12, 31)
+
+
+def _no_number(value: object) -> object:
+    # Pydantic reads a number as seconds since 1970; here it is a date without its dashes.
+    if isinstance(value, (int, float)):
+        raise ValueError("a number is not a date")
+    return value
+
+
+Day = Annotated[date, BeforeValidator(_no_number), Field(ge=FIRST_DAY, le=LAST_DAY)]
+Colour = Annotated[str, Field(pattern=r"^#[0-9a-fA-F]{6}$")]
+
+
+class _Frozen(BaseModel):
+    model_config = ConfigDict(frozen=True, extra="forbid", populate_by_name=True)
+
+
+class CountingRule(StrEnum):
+    """How votes become seats."""
+
+    NONE = "none"
+    PLURALITY = "plurality"
+    HIGHEST_AVERAGES = "highest_averages"
+    LARGEST_REMAINDER = "largest_remainder"
+    MIXED_PARALLEL = "mixed_parallel"
+    MIXED_COMPENSATORY = "mixed_compensatory"
+    TWO_ROUND = "two_round"
+
+
+class Party(_Frozen):
+    """A party: its code (the column name in every file), its name, where it stands."""
+
+    code: str = Field(description="a short code like HU, the party's column in every file")
+    name: str = Field(min_length=1, description="the party's name")
+    regions: tuple[str, ...] | None = Field(
+        default=None, min_length=1, description="a list of region codes, where it stands only there"
+    )
+    inherits: dict[str, Annotated[float, Field(gt=0, le=1)]] = Field(
+        default_factory=dict, description="a part of another column's last votes, above 0 and up to 1"
+    )
+    colour: Colour | None = Field(default=None, description="a colour like #1f6f8b")
+
+
+class Alliance(_Frozen):
+    """Parties that are polled or counted together, from one day to another; either end may be open."""
+
+    code: str = Field(description="a short code like LAKE, the alliance's column in the poll register")
+    name: str = Field(min_length=1, description="the alliance's name")
+    members: tuple[str, ...] = Field(description="a list of two or more party codes")
+    from_: Day | None = Field(default=None, alias="from", description="its first day, like 2030-11-01")
+    until: Day | None = Field(default=None, description="its last day, like 2031-05-18")
+    colour: Colour | None = Field(default=None, description="a colour like #1f6f8b")
+
+    def active_on(self, day: date) -> bool:
+        """Whether the alliance exists on a day (both ends included)."""
+        return (self.from_ is None or self.from_ <= day) and (self.until is None or day <= self.until)
+
+
+class Region(_Frozen):
+    """A part of the country with its own support; ``electorate`` weighs it where no last result does."""
+
+    code: str = Field(description="a short code like NORTH, used in the region column of every file")
+    name: str = Field(min_length=1, description="the region's name")
+    polling_day: Day | None = Field(default=None, description="the region's own polling day, like 2031-05-11")
+    electorate: float | None = Field(default=None, gt=0, description="the number of voters, above 0")
+
+
+class LastResult(_Frozen):
+    """When the last election was and which file holds it."""
+
+    date: Day = Field(description="the day of the last election, like 2027-05-16")
+    file: str = Field(
+        default="result_last.csv",
+        pattern=r"^[^/\\]+\.(csv|CSV|xlsx|XLSX)$",
+        description="the name of a .csv or .xlsx file in the contest folder",
+    )
+
+
+class Counting(_Frozen):
+    """The rule by which votes become seats."""
+
+    rule: CountingRule = Field(
+        default=CountingRule.PLURALITY, description="one of " + ", ".join(CountingRule)
+    )
+    seats: int | None = Field(default=None, ge=1, description="a whole number of seats, 1 or more")
+    majority: int | None = Field(default=None, ge=1, description="a whole number of seats, 1 or more")
+
+
+class Silence(_Frozen):
+    """A window in which local law forbids publishing polls: both ends included, in one time zone."""
+
+    from_: Day = Field(alias="from", description="the first day, like 2031-05-16")
+    until: Day = Field(description="the last day, like 2031-05-18")
+    time_zone: str = Field(default="UTC", description="a time zone like Europe/Paris")
+    regions: tuple[str, ...] | None = Field(default=None, min_length=1, description="a list of region codes")
+    law: str | None = Field(default=None, description="the law, as text")
+
+
+class ReleaseRules(_Frozen):
+    """What the desk says about publication."""
+
+    silence: tuple[Silence, ...] = Field(
+        default=(), description="a list of windows, each with from and until"
+    )
+    publisher: str | None = Field(default=None, description="the publisher's name")
+
+
+class ModelOverrides(_Frozen):
+    """Settings of the model that a contest may override; every default stands in ``docs/method.md``."""
+
+    shared_lean: bool = Field(default=True, strict=True, description="true or false")
+    shared_lean_points: float = Field(default=2.5, gt=0, le=20, description="points, above 0 and up to 20")
+    shared_lean_correlation: float = Field(default=1 / 3, ge=0, le=1, description="a number from 0 to 1")
+
+
+class Contest(_Frozen):
+    """One election: parties, alliances, regions, how votes become seats, publication rules."""
+
+    title: str = Field(min_length=1, description="the contest's title")
+    polling_day: Day = Field(description="a date like 2031-05-18, without quotation marks")
+    parties: tuple[Party, ...] = Field(
+        alias="party", min_length=1, description="one [[party]] or more, each with code and name"
+    )
+    alliances: tuple[Alliance, ...] = Field(
+        default=(), alias="alliance", description="[[alliance]], each with code, name and members"
+    )
+    regions: tuple[Region, ...] = Field(
+        default=(), alias="region", description="[[region]], each with code and name"
+    )
+    last_result: LastResult | None = Field(default=None, description="[last_result] with date and file")
+    counting: Counting = Field(default=Counting(), description="[counting] with rule, seats, majority")
+    others: bool = Field(default=True, strict=True, description="true or false")
+    release: ReleaseRules = Field(default=ReleaseRules(), description="[release] with silence, publisher")
+    model: ModelOverrides = Field(default=ModelOverrides(), description="[model] with overrides")
+
+    @property
+    def party_codes(self) -> tuple[str, ...]:
+        """Codes of all parties in file order, ``OTH`` last where others exist."""
+        codes = tuple(p.code for p in self.parties)
+        return (*codes, OTHERS) if self.others and OTHERS not in codes else codes
+
+    @property
+    def party_names(self) -> dict[str, str]:
+        """Name of each party by code, others included."""
+        names = {p.code: p.name for p in self.parties}
+        if self.others:
+            names.setdefault(OTHERS, "Others")
+        return names
+
+    @property
+    def region_codes(self) -> tuple[str, ...]:
+        """Codes of all regions in file order; one nameless region, ``ALL``, where there are none."""
+        return tuple(r.code for r in self.regions) or (WHOLE_COUNTRY,)
+
+    def polling_day_of(self, region: str) -> date:
+        """Polling day of one region: its own where voting is in phases, else the contest's."""
+        own = {r.code: r.polling_day for r in self.regions}.get(region)
+        return own or self.polling_day
+
+    def stands_in(self, party: str, region: str) -> bool:
+        """Whether a party stands in a region; others stand everywhere."""
+        where = {p.code: p.regions for p in self.parties}.get(party)
+        return where is None or region in where
+
+    @property
+    def column_codes(self) -> tuple[str, ...]:
+        """Codes that may head a column of the poll register: parties, others, alliances."""
+        return (*self.party_codes, *(a.code for a in self.alliances))
+
+    @property
+    def last_polling_day(self) -> date:
+        """The day on which the last region votes."""
+        return max(self.polling_day_of(r) for r in self.region_codes)
+
+    def members_of(self, code: str) -> tuple[str, ...]:
+        """The parties a column counts: an alliance's members, or the party itself."""
+        for alliance in self.alliances:
+            if alliance.code == code:
+                return alliance.members
+        return (code,)

@@ -1,0 +1,184 @@
+"""What is not wrong in the register, but deserves a second look: warnings that travel into the release."""
+
+from __future__ import annotations
+
+import math
+from collections import Counter, defaultdict
+from collections.abc import Iterator, Mapping, Sequence
+from datetime import timedelta
+from itertools import combinations
+
+import pandas as pd
+
+from aggregator.inputs.close_spelling import nearly_same
+from aggregator.inputs.contest import OTHERS, Contest
+from aggregator.inputs.poll_breakdowns import rows_by_poll
+from aggregator.inputs.poll_row import PollRow
+from aggregator.inputs.poll_shares import SharesOfRow, codes_not_asked
+from aggregator.inputs.reading_rules import Rule
+from aggregator.inputs.register_columns import Status
+from aggregator.problems import Problem, Severity
+
+SMALLEST_USUAL_SAMPLE, LARGEST_USUAL_SAMPLE = 100, 30_000
+
+# Fieldwork longer than this mixes opinion of different times, and is often a wrong month.
+LONGEST_USUAL_WINDOW = timedelta(days=35)
+
+# Two polls that agree in every figure are remarkable from this many figures on, within this time.
+_FIGURES_TO_COMPARE, _TIME_TO_COMPARE = 4, timedelta(days=21)
+
+# A remainder is far above what others had from this many points and this many times on.
+_POINTS_ABOVE, _TIMES_ABOVE = 5.0, 1.5
+
+
+def check_doubts(
+    rows: Sequence[PollRow],
+    *,
+    shares: Mapping[int, SharesOfRow],
+    contest: Contest,
+    last_result: pd.DataFrame | None,
+    file: str,
+) -> list[Problem]:
+    """All doubts about the rows that enter."""
+    return [
+        *_check_blanks(rows, file),
+        *_check_samples(rows, file),
+        *_check_windows(rows, file),
+        *_check_provisional(rows, file),
+        *_check_spellings(rows, file),
+        *_check_same_figures(rows, file),
+        *_check_remainders(rows, shares, contest, last_result, file),
+    ]
+
+
+def _warning(
+    file: str, row: int, column: str | None, found: str, expected: str, remedy: str, rule: Rule
+) -> Problem:
+    return Problem(file, row, column, found, expected, remedy, rule, Severity.WARNING)
+
+
+def _listed(rows: Sequence[PollRow]) -> str:
+    """``row 4`` or ``rows 4, 7, 9, … (17 in total)``."""
+    numbers = sorted(row.row for row in rows)
+    if len(numbers) == 1:
+        return f"row {numbers[0]}"
+    text = ", ".join(str(n) for n in numbers[:5])
+    return f"rows {text}" + (f", … ({len(numbers)} in total)" if len(numbers) > 5 else "")
+
+
+def _check_blanks(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
+    """One finding for the whole file: whoever leaves these cells blank mostly does so throughout."""
+    unpublished = [row for row in rows if not row.published_given]
+    if unpublished:
+        yield _warning(
+            file, min(r.row for r in unpublished), "published", f"a blank cell in {_listed(unpublished)}",
+            "the day of publication", "The last day of fieldwork is taken for it.", Rule.PUBLISHED_BLANK,
+        )  # fmt: skip
+    startless = [row for row in rows if not row.start_given]
+    if startless:
+        yield _warning(
+            file, min(r.row for r in startless), "start", f"a blank cell in {_listed(startless)}",
+            "the first day of fieldwork", "Fieldwork is read as one day, the last one.", Rule.START_BLANK,
+        )  # fmt: skip
+
+
+def _check_samples(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
+    for group in rows_by_poll(rows).values():
+        size = sum(row.sample or 0 for row in group)
+        if not SMALLEST_USUAL_SAMPLE <= size <= LARGEST_USUAL_SAMPLE:
+            yield _warning(
+                file, group[0].row, "sample", f"{size:g} respondents",
+                f"{SMALLEST_USUAL_SAMPLE} to {LARGEST_USUAL_SAMPLE}",
+                "Look for a digit too many or too few.", Rule.SAMPLE_UNUSUAL,
+            )  # fmt: skip
+
+
+def _check_windows(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
+    for row in rows:
+        if row.end - row.start > LONGEST_USUAL_WINDOW:
+            yield _warning(
+                file, row.row, "start", f"{row.start} for fieldwork that ended on {row.end}",
+                f"at most {LONGEST_USUAL_WINDOW.days} days of fieldwork", "Check month and year.",
+                Rule.LONG_WINDOW,
+            )  # fmt: skip
+
+
+def _check_provisional(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
+    for group in rows_by_poll(rows).values():
+        if group[0].status is Status.PROVISIONAL:
+            yield _warning(
+                file, group[0].row, "status", f"provisional figures of {group[0].poll}", "final figures",
+                "Enter the final ones, when they are out, as a new row that replaces it.", Rule.PROVISIONAL,
+            )  # fmt: skip
+
+
+def _check_spellings(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
+    yield from _check_spelling_of("house", rows, file)
+    yield from _check_spelling_of("mode", rows, file)
+    yield from _check_spelling_of("population", rows, file)
+    by_house: dict[str, list[PollRow]] = defaultdict(list)
+    for row in rows:
+        by_house[row.house].append(row)
+    for of_house in by_house.values():
+        yield from _check_spelling_of("method", of_house, file)
+
+
+def _check_spelling_of(column: str, rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
+    counts = Counter(getattr(row, column) for row in rows)
+    counts.pop("", None)
+    for first, second in combinations(sorted(counts), 2):
+        if nearly_same(first, second):
+            # The spelling used less often is the likelier slip.
+            slip, usual = sorted((first, second), key=lambda n: (counts[n], n))
+            row = min(r.row for r in rows if getattr(r, column) == slip)
+            yield _warning(
+                file, row, column, f'"{slip}", nearly "{usual}"', "one spelling of each name",
+                "They are read as two; if it is one, write it in one way.", Rule.NEARLY_SAME_NAME,
+            )  # fmt: skip
+
+
+def _check_same_figures(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
+    by_figures: dict[tuple[object, ...], list[PollRow]] = defaultdict(list)
+    for row in rows:
+        if len(row.shares) >= _FIGURES_TO_COMPARE:
+            by_figures[row.regions, tuple(sorted(row.shares.items()))].append(row)
+    for group in by_figures.values():
+        ordered = sorted(group, key=lambda r: (r.end, r.poll))
+        for earlier, later in combinations(ordered, 2):
+            near = later.end - earlier.end <= _TIME_TO_COMPARE and later.house == earlier.house
+            if later.poll != earlier.poll and (near or later.sample == earlier.sample):
+                yield _warning(
+                    file, later.row, None, f"the figures of row {earlier.row} ({earlier.poll})",
+                    "figures of its own", "If a poll was entered twice, delete one.", Rule.SAME_FIGURES,
+                )  # fmt: skip
+
+
+def _check_remainders(
+    rows: Sequence[PollRow],
+    shares: Mapping[int, SharesOfRow],
+    contest: Contest,
+    last_result: pd.DataFrame | None,
+    file: str,
+) -> Iterator[Problem]:
+    if last_result is None:
+        return
+    votes = last_result.groupby("region")[list(contest.party_codes)].sum()
+    seen = {p for p in contest.party_codes if last_result[p].notna().any()} | {OTHERS}
+    largest_others = max((r.shares[OTHERS] for r in rows if OTHERS in r.shares), default=0.0)
+    known: dict[tuple[object, ...], float] = {}
+    for row in rows:
+        remainder = shares[row.row].remainder
+        not_asked = codes_not_asked(row, contest=contest)
+        if math.isnan(remainder) or OTHERS in row.shares or not not_asked <= seen:
+            continue
+        place = (row.regions, frozenset(not_asked))
+        if place not in known:
+            here = votes.loc[[r for r in row.regions if r in votes.index]].sum()
+            known[place] = 100 * float(here[sorted(not_asked)].sum() / here.sum())
+        ever = max(known[place], largest_others)
+        if remainder > ever + _POINTS_ABOVE and remainder > ever * _TIMES_ABOVE:
+            yield _warning(
+                file, row.row, None, f"{remainder:.3g} % left for {', '.join(sorted(not_asked))}",
+                f"no more than they ever had (about {ever:.2g} %)",
+                "Refusals often hide in it: enter them in undecided.", Rule.LARGE_REMAINDER,
+            )  # fmt: skip

@@ -1,0 +1,152 @@
+"""A table as its file shows it: a header and rows of cells, nothing interpreted yet."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass
+from datetime import date
+
+from aggregator.inputs.close_spelling import did_you_mean
+from aggregator.inputs.reading_rules import Rule
+from aggregator.problems import Problem
+
+# Text from any file; numbers and dates only from a workbook, where the file itself says what they are.
+type Cell = str | float | bool | date
+
+
+@dataclass(frozen=True, slots=True)
+class SheetRow:
+    """One row: its number as a spreadsheet counts it, and its filled cells by column."""
+
+    number: int
+    cells: Mapping[str, Cell]
+
+
+@dataclass(frozen=True, slots=True)
+class SheetTable:
+    """A file's header and its rows; blank rows are gone, blank cells are absent from their row."""
+
+    file: str
+    columns: tuple[str, ...]
+    rows: tuple[SheetRow, ...]
+
+
+def as_text(cell: Cell) -> str:
+    """A cell as the reader of the file would write it (a whole number without a decimal point)."""
+    if isinstance(cell, bool):
+        return "TRUE" if cell else "FALSE"
+    if isinstance(cell, float):
+        return str(int(cell)) if cell.is_integer() else repr(cell)
+    return cell.isoformat() if isinstance(cell, date) else cell
+
+
+def quoted(cell: Cell) -> str:
+    """A cell's content for a message: text in quotation marks, numbers bare, long text cut."""
+    text = as_text(cell)
+    if len(text) > 60:
+        text = text[:57] + "…"
+    return f'"{text}"' if isinstance(cell, str) else text
+
+
+def build_table(
+    cells: Sequence[Sequence[Cell]], *, file: str, check_width: bool
+) -> tuple[SheetTable | None, list[Problem]]:
+    """Make a table of raw rows, blank ones included.
+
+    Parameters
+    ----------
+    cells
+        All rows of the file in order; the first one that is not blank is the header.
+    check_width
+        Whether a row must have as many cells as the header (a text file), or is padded by its
+        program (a workbook).
+
+    Returns
+    -------
+    The table, None where its header cannot be used, and what was found wrong.
+    """
+    numbered = [(i, row) for i, row in enumerate(cells, start=1) if any(c != "" for c in row)]
+    if not numbered:
+        found = Problem(
+            file, None, None, "an empty file", "a header and at least one row",
+            "Fill in the table, or restore the file.", Rule.TABLE_EMPTY,
+        )  # fmt: skip
+        return None, [found]
+    (header_row, header_cells), body = numbered[0], numbered[1:]
+    header = [as_text(c) for c in header_cells]
+    while header and header[-1] == "":
+        header.pop()
+    problems = _check_header(header, body=body, file=file, row=header_row)
+    if problems:
+        return None, problems
+    rows = []
+    for number, row in body:
+        width = len(row)
+        while width > len(header) and row[width - 1] == "":
+            width -= 1
+        if width > len(header) or (check_width and len(row) < len(header)):
+            problems.append(_wrong_width(file, number, width=min(width, len(row)), expected=len(header)))
+            continue
+        rows.append(
+            SheetRow(number, {c: v for c, v in zip(header, row, strict=False) if c != "" and v != ""})
+        )
+    return SheetTable(file, tuple(c for c in header if c), tuple(rows)), problems
+
+
+def _check_header(
+    header: list[str], *, body: list[tuple[int, Sequence[Cell]]], file: str, row: int
+) -> list[Problem]:
+    problems = []
+    for place, name in enumerate(header):
+        if name == "" and any(len(r) > place and r[place] != "" for _, r in body):
+            problems.append(
+                Problem(
+                    file, row, None, f"no name above column {place + 1}, which is filled in",
+                    "a name in every column", "Name the column, or empty it.", Rule.HEADER,
+                )
+            )  # fmt: skip
+        elif name != "" and name in header[:place]:
+            problems.append(
+                Problem(
+                    file, row, name, f"the name twice (columns {header.index(name) + 1} and {place + 1})",
+                    "each column once", "Delete or rename one of the two.", Rule.HEADER,
+                )
+            )  # fmt: skip
+    return problems
+
+
+def _wrong_width(file: str, row: int, *, width: int, expected: int) -> Problem:
+    if width > expected:
+        remedy = (
+            "Put cells that hold the separator into quotation marks "
+            '("34,5"), or save the file with another separator.'
+        )
+    else:
+        remedy = "Add the missing separators: a blank cell has a meaning here, a missing one has none."
+    return Problem(
+        file, row, None, f"{width} cells", f"{expected} cells, as in the header", remedy, Rule.TABLE_SHAPE
+    )
+
+
+def check_columns(
+    table: SheetTable, *, known: Iterable[str], needed: Iterable[str], unknown_remedy: str
+) -> list[Problem]:
+    """Report columns no one knows and needed ones that are missing."""
+    known = list(known)
+    problems = [
+        Problem(
+            table.file, 1, column, "a column of this name", "a known column",
+            f"{did_you_mean(column, known)} {unknown_remedy}".strip(), Rule.COLUMN_UNKNOWN,
+        )
+        for column in table.columns
+        if column not in known
+    ]  # fmt: skip
+    problems += [
+        Problem(
+            table.file, 1, column, "no such column", "a column of this name",
+            f"Add the column {column} to the header and fill it in.", Rule.COLUMN_NEEDED,
+        )
+        for column in needed
+        if column not in table.columns
+    ]  # fmt: skip
+    return problems
