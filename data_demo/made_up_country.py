@@ -1,0 +1,189 @@
+"""The voters of an invented election: its last result, and how support moves until polling day."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import pandas as pd
+
+from data_demo.made_up_scenery import OTHERS, Scenery
+
+SIGMA_AT_15_PERCENT = 0.035
+"""Log points per square root of a week that a party of 15 % drifts."""
+REGIONAL_DRIFT_RATIO = 0.5
+PARTY_NOISE = 0.3
+"""Log sd of the party scales about their law."""
+LEAN_SCALE = 0.025 / np.sqrt(0.24)
+"""The shared lean's sd is this over the root of the share: 2.5 points at 40 %."""
+LEAN_TURN = np.arccos(1 / 3)
+"""Angle by which the shared lean turns between two elections: correlation 1/3."""
+REGIONAL_LEAN_RATIO = 0.4
+NEW_PARTY_SPREAD = 0.5
+SEAT_VOTES = 21_000
+
+
+@dataclass(frozen=True)
+class Country:
+    """The last result and the true support since then.
+
+    Attributes
+    ----------
+    last_votes
+        Votes by seat at the last election: columns seat, name, region, then the parties that stood.
+    baseline
+        Log last share after ``inherits``, dims (region, party); minus infinity where a party is absent.
+    weights
+        Share of the last turnout by region, dims (region,).
+    days
+        Every day from the last election to polling day.
+    log_support
+        Log of the true support, dims (day, region, party).
+    sigma
+        National drift, log points per square root of a week, dims (party,).
+    lean_scale
+        Sd of the shared lean, log points, dims (party,).
+    lean
+        Shared lean, log points, dims (day, region, party), regional part included.
+    """
+
+    scenery: Scenery
+    last_votes: pd.DataFrame
+    baseline: np.ndarray
+    weights: np.ndarray
+    days: pd.DatetimeIndex
+    log_support: np.ndarray
+    sigma: np.ndarray
+    lean_scale: np.ndarray
+    lean: np.ndarray
+
+    @property
+    def last_shares(self) -> np.ndarray:
+        """National share of each party as the model's start sees it, dims (party,)."""
+        return self.weights @ softmax(self.baseline)
+
+    def day_number(self, day: object) -> int:
+        """Position of a date in ``days``."""
+        return int((pd.Timestamp(day) - self.days[0]).days)  # type: ignore[arg-type]
+
+
+def softmax(log_weights: np.ndarray) -> np.ndarray:
+    """Shares along the last axis; minus infinity gives zero."""
+    weights = np.exp(log_weights - log_weights.max(axis=-1, keepdims=True))
+    return weights / weights.sum(axis=-1, keepdims=True)
+
+
+def log_softmax(log_weights: np.ndarray) -> np.ndarray:
+    """Log shares along the last axis; minus infinity stays."""
+    top = log_weights.max(axis=-1, keepdims=True)
+    return log_weights - top - np.log(np.exp(log_weights - top).sum(axis=-1, keepdims=True))
+
+
+def draw_country(scenery: Scenery, *, shared_lean: bool, rng: np.random.Generator) -> Country:
+    """Draw a last result, the walk of support since then and the lean all houses share."""
+    votes = draw_last_votes(scenery, rng=rng)
+    baseline, weights = _baseline(scenery, votes=votes, rng=rng)
+    shares = weights @ softmax(baseline)
+    sigma = SIGMA_AT_15_PERCENT * np.sqrt(0.15 / shares) * np.exp(PARTY_NOISE * rng.normal(size=shares.size))
+    days = pd.date_range(scenery.last_election, scenery.polling_day, freq="D")
+    log_support = _walk(baseline, weights=weights, sigma=sigma, days=days.size, rng=rng)
+    lean_scale = LEAN_SCALE / np.sqrt(shares)
+    lean = draw_shared_lean(lean_scale, weights=weights, days=days.size, rng=rng)
+    if not shared_lean:
+        lean = np.zeros_like(lean)
+    return Country(scenery, votes, baseline, weights, days, log_support, sigma, lean_scale, lean)
+
+
+def draw_last_votes(scenery: Scenery, *, rng: np.random.Generator) -> pd.DataFrame:
+    """Votes by seat at the last election; regions stray from the country, seats from their region."""
+    old = [p for p in scenery.parties if not p.is_new]
+    codes = [p.code for p in old]
+    usual = [p.usual_share for p in old]
+    regional_spread = [p.regional_spread for p in old]
+    seat_spread = [p.seat_spread for p in old]
+    standing = scenery.standing()[:, [not p.is_new for p in scenery.parties] + [True]]
+    if scenery.dissolved is not None:
+        code, share = scenery.dissolved
+        codes, usual = [*codes, code], [*usual, share]
+        regional_spread, seat_spread = [*regional_spread, 0.25], [*seat_spread, 0.35]
+        standing = np.insert(standing, -1, True, axis=1)
+    codes, usual = [*codes, OTHERS], [*usual, scenery.others_share]
+    regional_spread, seat_spread = [*regional_spread, 0.15], [*seat_spread, 0.25]
+
+    # A party that stands in few regions is as strong there as its national share demands.
+    log_usual = np.log(np.array(usual)) - np.log(standing.mean(axis=0))
+    national = log_usual + 0.15 * rng.normal(size=len(codes))
+    frames = []
+    for r, region in enumerate(scenery.regions):
+        centre = national + np.array(regional_spread) * rng.normal(size=len(codes))
+        centre[~standing[r]] = -np.inf
+        names = region.seat_names
+        shares = softmax(centre + np.array(seat_spread) * rng.normal(size=(len(names), len(codes))))
+        turnout = SEAT_VOTES * np.exp(0.12 * rng.normal() + 0.12 * rng.normal(size=len(names)))
+        table = pd.DataFrame(np.rint(shares * turnout[:, None]).astype(int), columns=codes)
+        table.insert(0, "seat", [f"{region.code}-{k + 1:02d}" for k in range(len(names))])
+        table.insert(1, "name", names)
+        table.insert(2, "region", region.code)
+        frames.append(table)
+    return pd.concat(frames, ignore_index=True)
+
+
+def handed_on(votes: pd.DataFrame, *, scenery: Scenery) -> pd.DataFrame:
+    """Votes by party now standing: a dissolved party's go to its heirs, what is left to others.
+
+    Columns become ``scenery.codes``; a new party has none.
+    """
+    present = votes.reindex(columns=list(scenery.codes), fill_value=0).astype(float)
+    if scenery.dissolved is not None:
+        code = scenery.dissolved[0]
+        free = votes[code].astype(float)
+        for party in scenery.parties:
+            taken = dict(party.inherits).get(code, 0.0) * votes[code]
+            present[party.code] += taken
+            free = free - taken
+        present[OTHERS] += free
+    return present
+
+
+def _baseline(
+    scenery: Scenery, *, votes: pd.DataFrame, rng: np.random.Generator
+) -> tuple[np.ndarray, np.ndarray]:
+    totals = votes.groupby("region", sort=False).sum(numeric_only=True)
+    by_region = handed_on(totals, scenery=scenery).to_numpy()
+    weights = by_region.sum(axis=1) / by_region.sum()
+    with np.errstate(divide="ignore"):
+        baseline = np.log(by_region / by_region.sum(axis=1, keepdims=True))
+    for j, party in enumerate(scenery.parties):
+        if party.is_new:
+            first = np.log(party.usual_share) + NEW_PARTY_SPREAD * rng.normal()
+            baseline[:, j] = first + party.regional_spread * rng.normal(size=len(scenery.regions))
+    baseline[~scenery.standing()] = -np.inf
+    return log_softmax(baseline), weights
+
+
+def _walk(
+    baseline: np.ndarray, *, weights: np.ndarray, sigma: np.ndarray, days: int, rng: np.random.Generator
+) -> np.ndarray:
+    regions, parties = baseline.shape
+    daily = sigma / np.sqrt(7)
+    national = np.cumsum(rng.normal(size=(days - 1, 1, parties)) * daily, axis=0)
+    regional = np.cumsum(rng.normal(size=(days - 1, regions, parties)) * daily * REGIONAL_DRIFT_RATIO, axis=0)
+    regional -= np.einsum("r,trp->tp", weights, regional)[:, None]
+    start = np.zeros((1, regions, parties))
+    return log_softmax(baseline + np.concatenate([start, national + regional]))
+
+
+def draw_shared_lean(
+    lean_scale: np.ndarray, *, weights: np.ndarray, days: int, rng: np.random.Generator
+) -> np.ndarray:
+    """Lean of all houses together, log points, dims (day, region, party).
+
+    Its variance is the same on every day; between the two polling days it turns by an angle whose
+    cosine is their correlation. A smaller part that never moves is each region's own.
+    """
+    first, second = rng.normal(size=(2, lean_scale.size))
+    angle = LEAN_TURN * np.linspace(0, 1, days)[:, None]
+    common = lean_scale * (np.cos(angle) * first + np.sin(angle) * second)
+    own = REGIONAL_LEAN_RATIO * lean_scale * rng.normal(size=(weights.size, lean_scale.size))
+    own -= weights @ own
+    return common[:, None, :] + own[None]

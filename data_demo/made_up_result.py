@@ -1,0 +1,109 @@
+"""Polling day of an invented election: votes and winners, seat by seat."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import pandas as pd
+
+from data_demo.made_up_country import Country, handed_on, log_softmax, softmax
+
+TURNOUT_NOISE = 0.04
+"""Log sd of a region's weight on polling day about its last one."""
+SLOPE_SD = 0.12
+LOCAL_SD = 0.15
+LOCAL_SD_NOISE = 0.25
+LOCAL_TAIL = 4
+"""Degrees of freedom of the local noise."""
+NEW_PARTY_SEAT_SPREAD = 0.35
+
+
+@dataclass(frozen=True)
+class PollingDay:
+    """What happened on polling day.
+
+    Attributes
+    ----------
+    votes
+        Votes by seat: columns seat, name, region, then the parties.
+    turnout_weights
+        Share of the turnout by region, dims (region,).
+    slope
+        How much stronger than its log share a party moved where it was strong, dims (party,).
+    local_sd
+        Sd of the local noise, log points, dims (party,).
+    """
+
+    votes: pd.DataFrame
+    turnout_weights: np.ndarray
+    slope: np.ndarray
+    local_sd: np.ndarray
+
+
+def draw_polling_day(country: Country, *, rng: np.random.Generator) -> PollingDay:
+    """Draw turnout, votes by seat, and so the winners.
+
+    A region's votes are its true support, moved by the mean of its seats' local noise; the seats are
+    then centred on the region's votes exactly (up to whole votes).
+    """
+    scenery = country.scenery
+    codes = list(scenery.codes)
+    turnout_weights = country.weights * np.exp(TURNOUT_NOISE * rng.normal(size=country.weights.size))
+    turnout_weights /= turnout_weights.sum()
+    slope = SLOPE_SD * rng.normal(size=len(codes))
+    local_sd = LOCAL_SD * np.exp(LOCAL_SD_NOISE * rng.normal(size=len(codes)))
+    last_total = country.last_votes.drop(columns=["seat", "name", "region"]).to_numpy().sum()
+    frames = []
+    for r, region in enumerate(scenery.region_codes):
+        seats = country.last_votes[country.last_votes["region"] == region].reset_index(drop=True)
+        last_turnout = seats.drop(columns=["seat", "name", "region"]).sum(axis=1).to_numpy()
+        turnout = last_turnout * np.exp(0.03 * rng.normal(size=len(seats)))
+        turnout *= turnout_weights[r] * last_total / turnout.sum()
+        strength = _last_strength(country, seats=seats, region=r, rng=rng)
+        # Scaled to unit variance: a Student t's own variance is df / (df - 2).
+        unit = rng.standard_t(LOCAL_TAIL, size=strength.shape) / np.sqrt(LOCAL_TAIL / (LOCAL_TAIL - 2))
+        noise = local_sd * unit
+        log_support = log_softmax(country.log_support[-1, r] + noise.mean(axis=0))
+        shares = _centred(
+            (1 + slope) * strength + log_support + noise, turnout=turnout, target=np.exp(log_support)
+        )
+        table = pd.DataFrame(np.rint(shares * turnout[:, None]).astype(int), columns=codes)
+        frames.append(pd.concat([seats[["seat", "name", "region"]], table], axis=1))
+    return PollingDay(pd.concat(frames, ignore_index=True), turnout_weights, slope, local_sd)
+
+
+def _last_strength(
+    country: Country, *, seats: pd.DataFrame, region: int, rng: np.random.Generator
+) -> np.ndarray:
+    """Log of a seat's last share over its region's, dims (seat, party); zero where absent."""
+    scenery = country.scenery
+    shares = handed_on(seats, scenery=scenery).to_numpy()
+    # Half a vote keeps the logarithm finite where a weak party got none in a seat.
+    shares = np.maximum(shares, 0.5) / shares.sum(axis=1, keepdims=True)
+    strength = np.log(shares) - np.log(np.maximum(softmax(country.baseline[region]), 1e-300))
+    for j, party in enumerate(scenery.parties):
+        if party.is_new:
+            strength[:, j] = NEW_PARTY_SEAT_SPREAD * rng.normal(size=len(seats))
+    strength[:, ~scenery.standing()[region]] = 0.0
+    return strength
+
+
+def _centred(log_shares: np.ndarray, *, turnout: np.ndarray, target: np.ndarray) -> np.ndarray:
+    """Seat shares whose turnout-weighted mean is the region's, by shifting each party's log share."""
+    weights = turnout / turnout.sum()
+    present = target > 0
+    shift = np.zeros(target.size)
+    for _ in range(200):
+        mean = weights @ softmax(log_shares + shift)
+        gap = np.log(target[present] / mean[present])
+        shift[present] += gap
+        if np.abs(gap).max() < 1e-12:
+            break
+    return softmax(log_shares + shift)
+
+
+def count_winners(votes: pd.DataFrame, *, codes: tuple[str, ...]) -> pd.Series:
+    """Seats by party when the most votes in a seat win it, in the order of ``codes``."""
+    winners = votes[list(codes)].idxmax(axis=1)
+    return winners.value_counts().reindex(list(codes), fill_value=0).rename("seats").rename_axis("code")

@@ -1,0 +1,132 @@
+"""Make the demo contest ``data_demo/lake_provinces`` again, byte for byte.
+
+Run from the top of the project: ``python -m data_demo.make_lake_provinces``.
+"""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from datetime import date, timedelta
+from pathlib import Path
+
+import pandas as pd
+
+from data_demo.lake_provinces_scenery import LAKE_PROVINCES
+from data_demo.made_up_election import MadeUpElection, simulate_scenery
+from data_demo.made_up_folder import contest_text, write_contest_folder
+
+SEED = 1990
+"""Chosen for a close race: an alliance near the line, no party near it alone."""
+
+HEADER = """\
+# An invented country. Its polls and results were simulated; what was true all along is in truth/.
+
+"""
+
+RELEASE = """
+[release]
+publisher = "The Lakeshore Courier, data desk"
+
+# The law forbids publishing polls in this window (both days included): a release made for a day inside
+# it is marked "not for publication". Set what the law that applies to you says, or leave it out.
+[[release.silence]]
+from = 2026-05-10
+until = 2026-05-17
+time_zone = "Europe/Zurich"
+law = "Lake Provinces Election Act, section 41"
+
+# The model's settings may be overridden here; left out, the defaults hold.
+# [model]
+# shared_lean = true             # an error all houses share, which polls alone cannot show
+# shared_lean_points = 2.5       # its sd for a party of 40 %
+# shared_lean_correlation = 0.33 # between the last election's and this one's
+"""
+
+
+def build_lake_provinces() -> MadeUpElection:
+    """Simulate the Lake Provinces and let the register live through what registers live through."""
+    election = simulate_scenery(LAKE_PROVINCES, seed=SEED)
+    return replace(election, polls=with_register_events(election.polls))
+
+
+def write_lake_provinces(folder: Path) -> None:
+    """Write the demo contest folder."""
+    election = build_lake_provinces()
+    write_contest_folder(election, folder)
+    text = HEADER + contest_text(election.scenery) + RELEASE
+    (folder / "contest.toml").write_text(text, encoding="utf-8")
+
+
+def with_register_events(polls: pd.DataFrame) -> pd.DataFrame:
+    """Add a correction, a withdrawal, a poll left out in the open and a hypothetical question."""
+    table = polls.astype(
+        {"replaces": object, "status_date": object, "use": object, "why_not": object, "note": object}
+    )
+    table = _corrected(table)
+    table = _withdrawn(table)
+    table = _hypothetical(table)
+    table = _left_out(table)
+    return table.sort_values(["published", "poll"], kind="stable", ignore_index=True)
+
+
+def _national(table: pd.DataFrame, *, house: str, after: date) -> int:
+    """Row of a house's first whole-country poll published after a day."""
+    rows = table["house"].eq(house) & table["region"].eq("") & table["published"].gt(str(after))
+    return int(rows.idxmax())
+
+
+def _corrected(table: pd.DataFrame) -> pd.DataFrame:
+    """Two columns were swapped at first publication; a week later the right row replaced that one."""
+    row = _national(table, house="Pelloran Panel", after=date(2025, 9, 1))
+    right = table.loc[row].copy()
+    published = date.fromisoformat(str(right["published"]))
+    fixed_on = str(published + timedelta(days=6))
+    table.loc[row, ["WS", "CC"]] = right[["CC", "WS"]].to_numpy()
+    right["replaces"], right["poll"] = right["poll"], f"{right['poll']}b"
+    right["status_date"], right["source"] = fixed_on, f"correction {fixed_on}"
+    right["note"] = "Watershed and Civic Compact were swapped in the first release."
+    return pd.concat([table, right.to_frame().T], ignore_index=True).astype(table.dtypes.to_dict())
+
+
+def _withdrawn(table: pd.DataFrame) -> pd.DataFrame:
+    row = _national(table, house="Marrimund", after=date(2025, 12, 1))
+    published = date.fromisoformat(str(table.at[row, "published"]))
+    table.loc[row, ["status", "status_date"]] = ["withdrawn", str(published + timedelta(days=9))]
+    table.loc[row, "note"] = "Withdrawn by the house: part of the sample was drawn twice."
+    return table
+
+
+def _hypothetical(table: pd.DataFrame) -> pd.DataFrame:
+    row = _national(table, house="Dovrenna", after=date(2026, 1, 15))
+    extra = table.loc[row].copy()
+    extra["question"] = "hypothetical"
+    extra[["HU", "UP", "CC"]] = [extra["HU"] - 2.3, extra["UP"] - 0.9, extra["CC"] + 3.0]
+    extra["note"] = "If the mayor of Fenlosund led Civic Compact."
+    return pd.concat([table, extra.to_frame().T], ignore_index=True).astype(table.dtypes.to_dict())
+
+
+def _left_out(table: pd.DataFrame) -> pd.DataFrame:
+    votes = {"HU": 19.0, "UP": 44.0, "CC": 9.0, "TL": 15.0, "WS": 4.0, "OL": 5.0, "NL": 3.0, "SH": 1.0}
+    row = {
+        "poll": "UGR-001",
+        "house": "Upland Gazette reader vote",
+        "sponsor": "Upland Gazette",
+        "start": "2026-02-10",
+        "end": "2026-02-15",
+        "published": "2026-02-17",
+        "question": "vote",
+        "region": "",
+        "sample": 9412,
+        "mode": "online",
+        "population": "adults",
+        "status": "final",
+        "use": "no",
+        "why_not": "Readers took part by themselves: no sample was drawn.",
+        "source": "release 2026-02-17",
+        **votes,
+    }
+    return pd.concat([table, pd.DataFrame([row])], ignore_index=True)
+
+
+if __name__ == "__main__":
+    write_lake_provinces(Path(__file__).parent / "lake_provinces")
