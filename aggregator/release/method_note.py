@@ -1,0 +1,59 @@
+"""The method note: the model in words, this run's settings, checks, polls and cautions."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from html import escape
+from pathlib import Path
+
+from jinja2 import Environment, FileSystemLoader, StrictUndefined
+
+from aggregator.release.cautions import CAUTIONS
+from aggregator.release.contents import ReleaseContents
+from aggregator.release.rounding import date_text, whole_text
+
+TEMPLATES = Path(__file__).parent / "templates"
+
+
+def build_method_note(contents: ReleaseContents) -> str:
+    """Write the note as Markdown; every number in it is of this run.
+
+    Text of the desk's own files is escaped, so that it stays text wherever the note is shown.
+    """
+    environment = Environment(
+        loader=FileSystemLoader(TEMPLATES),
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        autoescape=False,
+    )
+    environment.filters |= {"md": inert_markdown, "day": date_text, "whole": whole_text}
+    unused = contents.inputs.unused_polls
+    reasons = {} if unused.empty else unused["why_not"].astype(str).value_counts(sort=False).to_dict()
+    return environment.get_template("method.md.j2").render(
+        contents=contents,
+        contest=contents.contest,
+        model=contents.contest.model,
+        cautions=CAUTIONS,
+        checks=list(contents.verdict.table.itertuples()),
+        settings=list(flat_settings(contents.settings)),
+        unused_reasons=reasons,
+        unused_count=len(unused),
+    )
+
+
+def inert_markdown(text: object) -> str:
+    """Text that Markdown shows as it is: no markup, no table cell, no new line, no tag."""
+    flat = " ".join(escape(str(text), quote=False).split())
+    for mark in "\\`*_[]|#":
+        flat = flat.replace(mark, f"\\{mark}")
+    return flat
+
+
+def flat_settings(settings: Mapping[str, object], *, prefix: str = "") -> Iterator[tuple[str, str]]:
+    """Settings as name and value, a nested one named ``outer.inner``."""
+    for name, value in settings.items():
+        if isinstance(value, Mapping):
+            yield from flat_settings(value, prefix=f"{prefix}{name}.")
+        else:
+            yield f"{prefix}{name}", "–" if value is None else str(value)

@@ -1,0 +1,102 @@
+"""The release as one page: no script needed, nothing fetched from anywhere."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from jinja2 import Environment, FileSystemLoader, StrictUndefined
+from markdown_it import MarkdownIt
+from markupsafe import Markup
+
+from aggregator.problems import Problem
+from aggregator.release.cautions import CAUTIONS
+from aggregator.release.chart_files import DrawnChart
+from aggregator.release.contents import ReleaseContents
+from aggregator.release.method_note import TEMPLATES
+from aggregator.release.page_tables import (
+    chances_table,
+    closest_seats_table,
+    houses_table,
+    polls_tables,
+    regions_table,
+    seats_table,
+    support_table,
+    worth_table,
+)
+from aggregator.release.rounding import date_text, whole_text
+
+DESK_ONLY_COLUMNS = frozenset({"note", "why_not", "source"})
+"""Findings about these columns may quote the desk's own remarks, and stay in the desk's half."""
+
+
+def build_page(contents: ReleaseContents, *, charts: Sequence[DrawnChart], method_note: str) -> str:
+    """Write the page.
+
+    Parameters
+    ----------
+    contents
+        What the release says.
+    charts
+        Drawn charts, which go in as markup.
+    method_note
+        The note as Markdown, its foreign text already inert.
+    """
+    environment = Environment(
+        loader=FileSystemLoader(TEMPLATES),
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        autoescape=True,
+    )
+    environment.filters |= {"day": date_text, "whole": whole_text}
+    latest, older = polls_tables(contents)
+    return environment.get_template("page.html.j2").render(
+        contents=contents,
+        contest=contents.contest,
+        cautions=CAUTIONS,
+        charts={drawn.chart.name: _markup(drawn) for drawn in charts},
+        support=support_table(contents),
+        regions=regions_table(contents),
+        seats=seats_table(contents),
+        chances=chances_table(contents),
+        closest=closest_seats_table(contents),
+        houses=houses_table(contents),
+        worth=worth_table(contents),
+        latest=latest,
+        older=older,
+        warnings=[
+            public_warning(problem)
+            for problem in contents.inputs.warnings
+            if problem.column not in DESK_ONLY_COLUMNS
+        ],
+        method=Markup(
+            MarkdownIt("commonmark", {"html": False})
+            .enable("table")
+            .render(_below_page_headings(method_note))
+        ),  # noqa: S704
+    )
+
+
+def _markup(drawn: DrawnChart) -> dict[str, object]:
+    return {
+        "wide": Markup(drawn.wide),  # noqa: S704
+        "narrow": Markup(drawn.narrow),  # noqa: S704
+        "name": drawn.chart.name,
+        "alt": drawn.chart.alt_text,
+    }
+
+
+def public_warning(problem: Problem) -> str:
+    """A finding as a reader of the page may see it: the place and what was found, without what the desk is to do."""
+    place = problem.file
+    if problem.row is not None:
+        place += f", row {problem.row}"
+    if problem.column is not None:
+        place += f", {problem.column}"
+    return f"{place}: found {problem.found}; expected {problem.expected}."
+
+
+def _below_page_headings(note: str) -> str:
+    """The note one heading level down, without its title: the page has its own."""
+    lines = [line for line in note.splitlines() if not line.startswith("# ")]
+    return "\n".join(f"#{line}" if line.startswith("## ") else line for line in lines)

@@ -1,0 +1,103 @@
+"""Seats by date and code, the chances that hang on them, and each seat's chances."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+import pandas as pd
+import xarray as xr
+
+from aggregator.inputs.contest import Contest
+from aggregator.release.codes import Code
+from aggregator.release.draw_summaries import stack_samples, summarise_samples
+from aggregator.release.rounding import round_chance
+from aggregator.release.table_schemas import SEAT_CHANCES, SEATS, Kind
+from models.dimensions import CHAIN, DATE, DRAW, PARTY, SEAT
+
+
+def seats_in_chamber(seats: xr.Dataset) -> int:
+    """How many seats are counted: the same number in every draw."""
+    return int(seats["seats_polling_day"].isel({CHAIN: 0, DRAW: 0}).sum())
+
+
+def majority_line(contest: Contest, *, chamber: int) -> int:
+    """Seats that make a majority: the contest's number, else the smallest whole number above half."""
+    return contest.counting.majority or chamber // 2 + 1
+
+
+def build_seats_table(seats: xr.Dataset, *, contest: Contest, codes: Sequence[Code]) -> pd.DataFrame:
+    """Summarise seats on every date and on polling day.
+
+    Parameters
+    ----------
+    seats
+        Draws of seats: ``seats`` (chain, draw, date, party) and ``seats_polling_day`` (chain, draw, party).
+    contest
+        Says which alliances exist when.
+    codes
+        The codes to summarise, in the order of the rows; an alliance is summed draw by draw.
+
+    Returns
+    -------
+    pandas.DataFrame
+        Columns of the schema ``SEATS``.
+    """
+    dated = [
+        (pd.Timestamp(day).date(), Kind.ON_DATE, seats["seats"].sel({DATE: day}))
+        for day in seats[DATE].values
+    ]
+    dated.append((contest.polling_day, Kind.ON_POLLING_DAY, seats["seats_polling_day"]))
+    blocks = []
+    for day, kind, drawn in dated:
+        there = [code for code in codes if code.exists_on(day)]
+        samples = np.stack(
+            [stack_samples(drawn.sel({PARTY: list(code.members)}).sum(PARTY), dims=()) for code in there]
+        )
+        blocks.append(
+            pd.DataFrame(
+                {
+                    "date": np.datetime64(day, "s"),
+                    "code": [code.code for code in there],
+                    "level": [code.level.value for code in there],
+                    "kind": kind.value,
+                    **summarise_samples(samples, whole=True),
+                }
+            )
+        )
+    return pd.concat(blocks, ignore_index=True)[list(SEATS.column_names)]
+
+
+def build_seat_chances_table(seats: xr.Dataset) -> pd.DataFrame:
+    """Each seat's chances on polling day, one row per seat and party that stands there.
+
+    Parameters
+    ----------
+    seats
+        With ``seat_chance``, ``seat_share``, ``last_share`` (seat, party; 0 to 1) and the coordinates
+        ``seat_name`` and ``seat_region``.
+
+    Returns
+    -------
+    pandas.DataFrame
+        Columns of the schema ``SEAT_CHANCES``.
+    """
+    samples = seats.sizes[CHAIN] * seats.sizes[DRAW]
+    parties = [str(code) for code in seats[PARTY].values]
+    share = seats["seat_share"].transpose(SEAT, PARTY).values.astype(np.float64)
+    last = seats["last_share"].transpose(SEAT, PARTY).values.astype(np.float64)
+    chance = seats["seat_chance"].transpose(SEAT, PARTY).values.astype(np.float64)
+    count = len(parties)
+    table = pd.DataFrame(
+        {
+            "seat": np.repeat(seats[SEAT].values.astype(str), count),
+            "name": np.repeat(seats["seat_name"].values.astype(str), count),
+            "region": np.repeat(seats["seat_region"].values.astype(str), count),
+            "code": parties * seats.sizes[SEAT],
+            "last_share": np.where(last > 0, 100.0 * last, np.nan).ravel(),
+            "expected_share": (100.0 * share).ravel(),
+            "chance": round_chance(chance, samples=samples).ravel(),
+        }
+    )
+    stands = (np.nan_to_num(share) > 0).ravel()
+    return table.loc[stands, list(SEAT_CHANCES.column_names)].reset_index(drop=True)

@@ -1,0 +1,420 @@
+"""What every table of a release holds: column by column, in one place.
+
+Tables are checked against these schemas before they are written, and ``docs/formats.md`` is checked against
+them by a test, so that neither can drift away.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import StrEnum
+from typing import NamedTuple
+
+from aggregator.release.likelihood_words import LIKELIHOOD_WORDS
+from aggregator.release.rounding import CHANCE_DECIMALS, SHARE_DECIMALS_TABLE
+
+
+class ColumnType(StrEnum):
+    """How a column is written and what may stand in it."""
+
+    DATE = "date"
+    CODE = "code"
+    TEXT = "text"
+    WHOLE = "whole number"
+    NUMBER = "number"
+    YES_NO = "yes or no"
+
+
+class Level(StrEnum):
+    """What a code stands for, so that no sum counts anyone twice."""
+
+    PARTY = "party"
+    ALLIANCE = "alliance"
+    OTHERS = "others"
+
+
+class Kind(StrEnum):
+    """Which of two statements a row makes: they are never confused."""
+
+    ON_DATE = "on_date"
+    ON_POLLING_DAY = "on_polling_day"
+
+
+class Outcome(StrEnum):
+    """What a chance is the chance of."""
+
+    MOST_SUPPORT = "most_support"
+    LARGEST = "largest"
+    MAJORITY_ALONE = "majority_alone"
+    MAJORITY_ONLY_AS_ALLIANCE = "majority_only_as_alliance"
+    NO_MAJORITY = "no_majority"
+
+
+class Bounds(NamedTuple):
+    """Smallest and largest value a column may hold."""
+
+    low: float
+    high: float
+
+
+@dataclass(frozen=True)
+class Column:
+    """One column of a table.
+
+    Attributes
+    ----------
+    name, type, unit, meaning
+        As a reader of the table needs them.
+    allowed
+        The only words that may stand in it; empty where any may.
+    bounds
+        Smallest and largest value; None where there is none.
+    decimals
+        Digits after the point; None except for numbers.
+    blank
+        What a blank cell means; None where no cell may be blank.
+    from_register
+        Whether the text comes from the desk's files as typed, and so must be made inert in a spreadsheet.
+    """
+
+    name: str
+    type: ColumnType
+    unit: str
+    meaning: str
+    allowed: tuple[str, ...] = ()
+    bounds: Bounds | None = None
+    decimals: int | None = None
+    blank: str | None = None
+    from_register: bool = False
+
+
+@dataclass(frozen=True)
+class TableSchema:
+    """One table: where it lies in the release, what a row is, its columns in order."""
+
+    path: str
+    one_row_per: str
+    columns: tuple[Column, ...]
+
+    @property
+    def column_names(self) -> tuple[str, ...]:
+        """Names of the columns, in order."""
+        return tuple(column.name for column in self.columns)
+
+
+PERCENT = Bounds(0.0, 100.0)
+PROBABILITY = Bounds(0.0, 1.0)
+ANY_COUNT = Bounds(0.0, float("inf"))
+
+CAUTION = Column(
+    "caution",
+    ColumnType.TEXT,
+    "–",
+    "Why the table must not be relied on; present only in a release whose checks failed",
+)
+"""The last column of every table of a release whose checks failed."""
+
+
+def _number(
+    name: str,
+    unit: str,
+    meaning: str,
+    *,
+    decimals: int = SHARE_DECIMALS_TABLE,
+    bounds: Bounds | None = PERCENT,
+    blank: str | None = None,
+) -> Column:
+    return Column(name, ColumnType.NUMBER, unit, meaning, bounds=bounds, decimals=decimals, blank=blank)
+
+
+def _whole(name: str, unit: str, meaning: str, *, blank: str | None = None) -> Column:
+    return Column(name, ColumnType.WHOLE, unit, meaning, bounds=ANY_COUNT, decimals=0, blank=blank)
+
+
+def _typed(name: str, meaning: str, *, blank: str | None = None) -> Column:
+    return Column(name, ColumnType.TEXT, "–", meaning, blank=blank, from_register=True)
+
+
+def _date(name: str, meaning: str, *, blank: str | None = None) -> Column:
+    return Column(name, ColumnType.DATE, "ISO 8601", meaning, blank=blank)
+
+
+_DATE = _date("date", "The day the estimate is for; for `on_polling_day` the polling day of the region")
+_CODE = Column("code", ColumnType.CODE, "–", "Party, alliance or `OTH`, as in `contest.toml`")
+_LEVEL = Column(
+    "level",
+    ColumnType.TEXT,
+    "–",
+    "What `code` stands for. `party` and `others` together make the whole; an alliance counts its members again",
+    allowed=tuple(Level),
+)
+_KIND = Column(
+    "kind",
+    ColumnType.TEXT,
+    "–",
+    "`on_date`: on that day. `on_polling_day`: when people vote, drift until then included",
+    allowed=tuple(Kind),
+)
+
+
+def _quantiles(unit: str, *, of: str, bounds: Bounds, decimals: int, whole: bool) -> tuple[Column, ...]:
+    quantile = _whole if whole else _number
+    options = {} if whole else {"bounds": bounds, "decimals": decimals}
+    words = {"q05": "5 %", "q25": "25 %", "q50": "50 % (the median)", "q75": "75 %", "q95": "95 %"}
+    return (
+        _number("mean", unit, f"Mean of {of} over the draws", bounds=bounds, decimals=decimals),
+        _number("sd", unit, "Standard deviation over the draws", bounds=bounds, decimals=decimals),
+        *(
+            quantile(name, unit, f"{of[0].upper()}{of[1:]} is below this with chance {word}", **options)  # type: ignore[arg-type]
+            for name, word in words.items()
+        ),
+    )
+
+
+SUPPORT = TableSchema(
+    "public/support.csv",
+    "date, region, code and kind",
+    (
+        _DATE,
+        Column("region", ColumnType.CODE, "–", "Region code", blank="the whole country"),
+        _CODE,
+        _LEVEL,
+        _KIND,
+        *_quantiles(
+            "percent of the vote", of="support", bounds=PERCENT, decimals=SHARE_DECIMALS_TABLE, whole=False
+        ),
+    ),
+)
+
+SEATS = TableSchema(
+    "public/seats.csv",
+    "date, code and kind",
+    (
+        _DATE,
+        _CODE,
+        _LEVEL,
+        _KIND,
+        *_quantiles("seats", of="the number of seats", bounds=ANY_COUNT, decimals=2, whole=True),
+    ),
+)
+
+CHANCES = TableSchema(
+    "public/chances.csv",
+    "date, kind, outcome and code",
+    (
+        _DATE,
+        _KIND,
+        Column(
+            "outcome",
+            ColumnType.TEXT,
+            "–",
+            "`most_support`: more votes than any other party. `largest`: more seats than any other party. "
+            "`majority_alone`: reaches the majority line by itself. `majority_only_as_alliance`: the alliance reaches it and "
+            "no member does alone. `no_majority`: neither a party nor an alliance reaches it. `OTH` is not a party: it leads "
+            "nothing and has no majority",
+            allowed=tuple(Outcome),
+        ),
+        Column(
+            "code",
+            ColumnType.CODE,
+            "–",
+            "Party, or alliance for `majority_only_as_alliance`",
+            blank="`no_majority`, which has no code",
+        ),
+        _number(
+            "probability",
+            "0 to 1",
+            "Chance of the outcome: (k + ½)/(S + 1) for k of S draws, so never 0 or 1. A tie for the lead counts in equal parts",
+            decimals=CHANCE_DECIMALS,
+            bounds=PROBABILITY,
+        ),
+        _number(
+            "mc_error",
+            "0 to 1",
+            "Monte Carlo standard error of the probability: what another seed may change",
+            decimals=CHANCE_DECIMALS,
+            bounds=PROBABILITY,
+        ),
+        Column(
+            "likelihood",
+            ColumnType.TEXT,
+            "–",
+            "The narrowest band of the IPCC likelihood scale that holds the probability",
+            allowed=LIKELIHOOD_WORDS,
+        ),
+    ),
+)
+
+SEAT_CHANCES = TableSchema(
+    "public/seat_chances.csv",
+    "seat and code",
+    (
+        Column("seat", ColumnType.CODE, "–", "Seat code, as in `result_last.csv`", from_register=True),
+        _typed("name", "Name of the seat", blank="not given"),
+        Column("region", ColumnType.CODE, "–", "Region of the seat"),
+        _CODE,
+        _number(
+            "last_share", "percent of the vote", "Share at the last election", blank="did not stand there"
+        ),
+        _number("expected_share", "percent of the vote", "Mean share on polling day"),
+        _number(
+            "chance",
+            "0 to 1",
+            "Chance of winning the seat on polling day, never 0 or 1",
+            decimals=CHANCE_DECIMALS,
+            bounds=PROBABILITY,
+        ),
+    ),
+)
+
+HOUSES = TableSchema(
+    "public/houses.csv",
+    "house, method and code",
+    (
+        _typed("house", "The polling organisation"),
+        _typed(
+            "method", "The house's label for its way of working", blank="one way of working, or none given"
+        ),
+        _CODE,
+        _number(
+            "lean",
+            "percentage points",
+            "What the house reports minus what the average of the houses would report (posterior mean). A difference, not an error",
+            bounds=Bounds(-100.0, 100.0),
+        ),
+        _number(
+            "q05", "percentage points", "The lean is below this with chance 5 %", bounds=Bounds(-100.0, 100.0)
+        ),
+        _number(
+            "q95",
+            "percentage points",
+            "The lean is below this with chance 95 %",
+            bounds=Bounds(-100.0, 100.0),
+        ),
+        _whole("polls", "polls", "Polls of the house in the fit"),
+        _number(
+            "design_effect",
+            "ratio",
+            "Posterior mean of the variance of a poll of the house's usual size, over that of a simple random sample of that size",
+            bounds=ANY_COUNT,
+        ),
+        _whole("usual_sample", "respondents", "The house's usual sample size"),
+    ),
+)
+
+_WORTH = {
+    "worth_today": "Fresh respondents of the same house, asked on the day of the run, that would tell as much about support on that day",
+    "worth_polling_day": "Respondents interviewed on polling day that would tell as much about support on polling day",
+}
+
+SHELF_LIFE = TableSchema(
+    "public/shelf_life.csv",
+    "age in days and code",
+    (
+        _whole(
+            "age_days",
+            "days",
+            "Age of a poll of 1,000 respondents on the day of the run; for `expected_error`, days before polling day",
+        ),
+        _CODE,
+        _LEVEL,
+        *(
+            _number(
+                f"{name}{end}",
+                "respondents",
+                f"{meaning}: posterior {word}",
+                decimals=0,
+                bounds=ANY_COUNT,
+            )
+            for name, meaning in _WORTH.items()
+            for end, word in (("", "mean"), ("_q05", "5 % quantile"), ("_q95", "95 % quantile"))
+        ),
+        _number(
+            "expected_error",
+            "percentage points",
+            "Root mean square error to expect, on polling day, of a poll of this age",
+        ),
+        _number(
+            "error_sampling",
+            "percentage points",
+            "The part of `expected_error` from sampling and weighting; parts add up in squares",
+        ),
+        _number("error_house", "percentage points", "The part from the house's lean"),
+        _number("error_shared_lean", "percentage points", "The part from a lean shared by all houses"),
+        _number("error_drift", "percentage points", "The part from opinion moving until polling day"),
+    ),
+)
+
+POLLS_USED = TableSchema(
+    "public/polls_used.csv",
+    "poll in the fit",
+    (
+        _typed("poll", "Identifier of the poll"),
+        _typed("house", "Who did the fieldwork"),
+        _typed("sponsor", "Who paid for it", blank="not given"),
+        _date("start", "First day of fieldwork", blank="not given"),
+        _date("end", "Last day of fieldwork"),
+        _date("published", "Day of publication", blank="not given; the last day of fieldwork is assumed"),
+        Column("regions", ColumnType.TEXT, "–", "Regions asked, joined by `+`", blank="the whole country"),
+        _whole("sample", "respondents", "Sample size as reported", blank="not given"),
+        _whole(
+            "respondents", "respondents", "Respondents counted, once each, after the undecided were set aside"
+        ),
+        _typed("mode", "How people were asked", blank="not given"),
+        _typed("population", "Who was asked", blank="not given"),
+        _typed("method", "The house's label for its way of working", blank="not given"),
+        _number(
+            "undecided",
+            "percent",
+            "Undecided, set aside before the fit",
+            blank="already left out by the house, or not given",
+        ),
+        _number(
+            "worth_today",
+            "respondents",
+            "Fresh respondents of the same house that would tell as much today about the code with most support",
+            decimals=0,
+            bounds=ANY_COUNT,
+            blank="not worked out",
+        ),
+        _typed("source", "Where the poll was published", blank="not given"),
+    ),
+)
+
+POLLS_WEIGHED = TableSchema(
+    "desk/polls_weighed.csv",
+    "row of the register",
+    (
+        _typed("poll", "Identifier of the poll", blank="not given"),
+        _whole("row", "row", "Row of the register as a spreadsheet counts it (the header is row 1)"),
+        _typed("house", "Who did the fieldwork", blank="not given"),
+        _date("start", "First day of fieldwork", blank="not given"),
+        _date("end", "Last day of fieldwork", blank="not given"),
+        Column("used", ColumnType.YES_NO, "–", "Whether the row is in the fit", allowed=("yes", "no")),
+        _typed("why_not", "Why the row is not in the fit", blank="it is"),
+        _whole(
+            "respondents",
+            "respondents",
+            "Respondents of this row, after the undecided were set aside",
+            blank="not in the fit",
+        ),
+        _number(
+            "worth_today",
+            "respondents",
+            "As in `polls_used.csv`",
+            decimals=0,
+            bounds=ANY_COUNT,
+            blank="not in the fit, or not worked out",
+        ),
+        _number(
+            "pareto_k",
+            "–",
+            "Pareto shape of the poll's importance weights: above 0.7 the model finds the poll hard to foresee; read it again",
+            bounds=Bounds(float("-inf"), float("inf")),
+            blank="not worked out",
+        ),
+        _typed("warnings", "What was doubtful about the row when it was read", blank="nothing"),
+    ),
+)
+
+ALL_SCHEMAS = (SUPPORT, SEATS, CHANCES, SEAT_CHANCES, HOUSES, SHELF_LIFE, POLLS_USED, POLLS_WEIGHED)

@@ -1,0 +1,105 @@
+"""All tables of a release, from one run's draws."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import pandas as pd
+import xarray as xr
+
+from aggregator.inputs.desk_inputs import DeskInputs
+from aggregator.release.chances_table import build_chances_table
+from aggregator.release.codes import contest_codes
+from aggregator.release.houses_table import build_houses_table
+from aggregator.release.poll_tables import build_polls_used_table, build_polls_weighed_table
+from aggregator.release.seats_tables import build_seat_chances_table, build_seats_table
+from aggregator.release.support_table import build_support_table
+from aggregator.release.table_schemas import (
+    CHANCES,
+    HOUSES,
+    POLLS_USED,
+    POLLS_WEIGHED,
+    SEAT_CHANCES,
+    SEATS,
+    SHELF_LIFE,
+    SUPPORT,
+    TableSchema,
+)
+
+
+@dataclass(frozen=True)
+class ReleaseTables:
+    """The tables of one release; ``docs/formats.md`` says what their columns mean.
+
+    Attributes
+    ----------
+    seats, seat_chances
+        None where nothing is counted in seats.
+    """
+
+    support: pd.DataFrame
+    chances: pd.DataFrame
+    houses: pd.DataFrame
+    shelf_life: pd.DataFrame
+    polls_used: pd.DataFrame
+    polls_weighed: pd.DataFrame
+    seats: pd.DataFrame | None = None
+    seat_chances: pd.DataFrame | None = None
+
+    def with_schemas(self) -> Iterator[tuple[TableSchema, pd.DataFrame]]:
+        """Every table there is, with its schema."""
+        pairs = (
+            (SUPPORT, self.support),
+            (SEATS, self.seats),
+            (CHANCES, self.chances),
+            (SEAT_CHANCES, self.seat_chances),
+            (HOUSES, self.houses),
+            (SHELF_LIFE, self.shelf_life),
+            (POLLS_USED, self.polls_used),
+            (POLLS_WEIGHED, self.polls_weighed),
+        )
+        return ((schema, table) for schema, table in pairs if table is not None)
+
+
+def build_tables(
+    inputs: DeskInputs,
+    *,
+    draws: xr.Dataset,
+    seats: xr.Dataset | None,
+    shelf_life: pd.DataFrame,
+    polls_worth: pd.DataFrame,
+) -> ReleaseTables:
+    """Summarise a run as the tables of its release.
+
+    Parameters
+    ----------
+    inputs
+        The desk's checked files.
+    draws
+        Posterior draws.
+    seats
+        Draws of seats; None where nothing is counted in seats.
+    shelf_life
+        Worth of a poll of 1,000 by age and code, as the schema ``SHELF_LIFE`` has it.
+    polls_worth
+        Worth today of each poll in the fit, one row per poll: ``poll``, ``worth_today``, and ``pareto_k``
+        where it was worked out.
+    """
+    contest = inputs.contest
+    codes = contest_codes(contest)
+    return ReleaseTables(
+        support=build_support_table(draws, contest=contest, codes=codes),
+        chances=build_chances_table(draws, seats=seats, contest=contest, codes=codes),
+        houses=build_houses_table(draws),
+        shelf_life=shelf_life[list(SHELF_LIFE.column_names)],
+        polls_used=build_polls_used_table(inputs.polls, polls_worth=polls_worth, contest=contest),
+        polls_weighed=build_polls_weighed_table(
+            inputs.polls,
+            unused_polls=inputs.unused_polls,
+            polls_worth=polls_worth,
+            warnings=inputs.warnings,
+        ),
+        seats=None if seats is None else build_seats_table(seats, contest=contest, codes=codes),
+        seat_chances=None if seats is None else build_seat_chances_table(seats),
+    )
