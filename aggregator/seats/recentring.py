@@ -88,32 +88,34 @@ def solve_multipliers(
     return Recentred(multiplier=multiplier, largest_gap=float(gap.max(initial=0.0)))
 
 
-# Sums may be reordered (the machine adds eight seats at a time); NaN and infinity keep their meaning.
+# Sums may be reordered (the machine adds several seats at a time); NaN and infinity keep their meaning.
 # Each draw is one thread's work from start to end: the number of threads changes nothing.
 @njit(parallel=True, cache=True, fastmath={"reassoc", "contract", "nsz", "arcp"})
 def _solve(strength, support, weight, region_start, tolerance, max_steps):  # type: ignore[no-untyped-def]
-    n_draws, n_parties, n_seats = strength.shape
+    n_draws, n_parties, _ = strength.shape
     n_dates, n_regions = support.shape[1], support.shape[2]
     multiplier = np.zeros((n_draws, n_dates, n_regions, n_parties), dtype=np.float32)
     gap = np.zeros(n_draws, dtype=np.float32)
     for draw in prange(n_draws):
         factor = np.empty(n_parties, dtype=np.float32)
         mean = np.empty(n_parties, dtype=np.float32)
-        part = np.empty(n_seats, dtype=np.float32)
         for region in range(n_regions):
             first, last = region_start[region], region_start[region + 1]
+            here, part = strength[draw, :, first:last], weight[first:last]
+            each = np.empty(last - first, dtype=np.float32)
             factor[:] = 1
-            _region_mean(strength[draw], factor, weight, first, last, part, mean)
+            _region_mean(here, factor, part, each, mean)
             for date in range(n_dates):
+                wanted = support[draw, date, region]
                 miss = np.float32(0)
                 for _ in range(max_steps):
                     for party in range(n_parties):
-                        wanted = max(support[draw, date, region, party], _FLOOR)
-                        factor[party] = factor[party] * wanted / mean[party] if mean[party] > 0 else 0
-                    _region_mean(strength[draw], factor, weight, first, last, part, mean)
+                        scale = max(wanted[party], _FLOOR) / mean[party] if mean[party] > 0 else 0
+                        factor[party] *= scale
+                    _region_mean(here, factor, part, each, mean)
                     miss = np.float32(0)
                     for party in range(n_parties):
-                        miss = max(miss, abs(mean[party] - support[draw, date, region, party]))
+                        miss = max(miss, abs(mean[party] - wanted[party]))
                     if miss <= tolerance:
                         break
                 gap[draw] = max(gap[draw], miss)
@@ -122,18 +124,22 @@ def _solve(strength, support, weight, region_start, tolerance, max_steps):  # ty
 
 
 @njit(cache=True, fastmath={"reassoc", "contract", "nsz", "arcp"})
-def _region_mean(strength, factor, weight, first, last, part, mean):  # type: ignore[no-untyped-def]
-    """Mean share of each party over the seats ``first`` to ``last``, written into ``mean``."""
-    n_parties = factor.size
-    for seat in range(first, last):
-        part[seat] = 0
-    for party in range(n_parties):
-        for seat in range(first, last):
-            part[seat] += strength[party, seat] * factor[party]
-    for seat in range(first, last):
-        part[seat] = weight[seat] / part[seat]
-    for party in range(n_parties):
+def _region_mean(strength, factor, part, each, mean):  # type: ignore[no-untyped-def]
+    """Mean share of each party over the seats of a region, written into ``mean``.
+
+    ``part`` is each seat's part of the region's votes; ``each``, room for one number per seat, takes that
+    part per unit of strength.
+    """
+    each[:] = 0
+    for party in range(factor.size):
+        row = strength[party]
+        for seat in range(each.size):
+            each[seat] += row[seat] * factor[party]
+    for seat in range(each.size):
+        each[seat] = part[seat] / each[seat]
+    for party in range(factor.size):
+        row = strength[party]
         total = np.float32(0)
-        for seat in range(first, last):
-            total += strength[party, seat] * part[seat]
+        for seat in range(each.size):
+            total += row[seat] * each[seat]
         mean[party] = total * factor[party]
