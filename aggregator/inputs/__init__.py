@@ -1,0 +1,1 @@
+"""The desk's files, read and checked whole."""

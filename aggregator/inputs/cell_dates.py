@@ -78,7 +78,7 @@ def read_dates(
 
 
 def _read_day(text: str) -> date | dict[Order, date] | None:
-    """One day, or the day under each order, or None where the text is no date."""
+    """Read one day, or the day under each order, or None where the text is no date."""
     if match := _YEAR_FIRST.fullmatch(text):
         return _day(int(match[1]), int(match[3]), int(match[4]))
     match = _YEAR_LAST.fullmatch(text)
@@ -101,7 +101,8 @@ def _choose_order(
         example = f'"{open_dates[row, column][0]}" in row {row}, column {column}'
         return None, [
             Problem(
-                file, r, c, f'"{open_dates[r, c][0]}"', f"dates in one order ({example} has the {more.value})",
+                file, r, c, f'"{open_dates[r, c][0]}"',
+                f"dates in one order ({example} has the {more.value})",
                 "Write all dates of the file as 2031-04-23.", Rule.DATE_ORDER,
             )
             for r, c in only[fewer]

@@ -7,7 +7,7 @@ is one way of writing, ``34.5`` beside ``1,024`` the other, and a file that mixe
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable, Mapping
+from collections.abc import Mapping
 from dataclasses import dataclass
 from enum import StrEnum
 
@@ -55,7 +55,7 @@ class WrittenNumber:
 
 
 def _readings(text: str, *, kind: NumberKind) -> WrittenNumber | None:
-    """The values a text can have; None where it is no number."""
+    """Read a text under each way of writing; None where it is no number."""
     body = text
     if kind is NumberKind.PERCENT and body.endswith("%"):
         body = body[:-1].rstrip()
@@ -140,7 +140,8 @@ def _choose_marks(
         example = f'"{written[only[more][0]][1]}" in row {row}, column {column}'
         problems = [
             Problem(
-                file, r, c, f'"{written[r, c][1]}"', f"numbers written as in the rest of the file ({example})",
+                file, r, c, f'"{written[r, c][1]}"',
+                f"numbers written as in the rest of the file ({example})",
                 f"Write the decimals after a {more.value} in every cell, and no thousands mark.",
                 Rule.NUMBER_MARKS,
             )
@@ -176,8 +177,3 @@ def _not_a_number(file: str, row: int, column: str, cell: Cell, *, kind: NumberK
     else:
         remedy = "Write the number alone; words belong in the note."
     return Problem(file, row, column, quoted(cell), expected, remedy, Rule.NUMBER)
-
-
-def number_columns(percent: Iterable[str], count: Iterable[str]) -> dict[str, NumberKind]:
-    """The kinds of a table's number columns."""
-    return {c: NumberKind.PERCENT for c in percent} | {c: NumberKind.COUNT for c in count}

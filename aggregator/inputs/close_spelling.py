@@ -11,14 +11,14 @@ NEARLY_SAME = 0.9
 
 
 def close_spelling(word: str, known: Iterable[str]) -> str | None:
-    """The known word nearest to ``word``, or None where none is near; capitals do not count."""
+    """Find the known word nearest to ``word``, None where none is near; capitals do not count."""
     by_folded = {k.casefold(): k for k in known}
     found = get_close_matches(word.casefold(), by_folded, n=1, cutoff=0.6)
     return by_folded[found[0]] if found else None
 
 
 def did_you_mean(word: str, known: Iterable[str]) -> str:
-    """``Did you mean "HU"?`` or, where nothing is near, the known words (the first twelve)."""
+    """Say ``Did you mean "HU"?`` or, where nothing is near, the known words (the first twelve)."""
     words = list(known)
     near = close_spelling(word, words)
     if near is not None:
@@ -34,7 +34,7 @@ def _bare(name: str) -> str:
 
 
 def nearly_same(first: str, second: str) -> bool:
-    """Whether two different names differ so little that one may be a slip of the other."""
+    """Tell whether two different names differ so little that one may be a slip of the other."""
     if first == second:
         return False
     a, b = _bare(first), _bare(second)

@@ -70,7 +70,7 @@ class Alliance(_Frozen):
     colour: Colour | None = Field(default=None, description="a colour like #1f6f8b")
 
     def active_on(self, day: date) -> bool:
-        """Whether the alliance exists on a day (both ends included)."""
+        """Tell whether the alliance exists on a day (both ends included)."""
         return (self.from_ is None or self.from_ <= day) and (self.until is None or day <= self.until)
 
 
@@ -117,9 +117,7 @@ class Silence(_Frozen):
 class ReleaseRules(_Frozen):
     """What the desk says about publication."""
 
-    silence: tuple[Silence, ...] = Field(
-        default=(), description="a list of windows, each with from and until"
-    )
+    silence: tuple[Silence, ...] = Field(default=(), description="windows, each with from and until")
     publisher: str | None = Field(default=None, description="the publisher's name")
 
 
@@ -171,12 +169,12 @@ class Contest(_Frozen):
         return tuple(r.code for r in self.regions) or (WHOLE_COUNTRY,)
 
     def polling_day_of(self, region: str) -> date:
-        """Polling day of one region: its own where voting is in phases, else the contest's."""
+        """Give a region's polling day: its own where voting is in phases, else the contest's."""
         own = {r.code: r.polling_day for r in self.regions}.get(region)
         return own or self.polling_day
 
     def stands_in(self, party: str, region: str) -> bool:
-        """Whether a party stands in a region; others stand everywhere."""
+        """Tell whether a party stands in a region; others stand everywhere."""
         where = {p.code: p.regions for p in self.parties}.get(party)
         return where is None or region in where
 
@@ -191,7 +189,7 @@ class Contest(_Frozen):
         return max(self.polling_day_of(r) for r in self.region_codes)
 
     def members_of(self, code: str) -> tuple[str, ...]:
-        """The parties a column counts: an alliance's members, or the party itself."""
+        """List the parties a column counts: an alliance's members, or the party itself."""
         for alliance in self.alliances:
             if alliance.code == code:
                 return alliance.members

@@ -21,7 +21,7 @@ WIDEST_PHASES = timedelta(days=92)
 
 
 def check_contest(contest: Contest) -> list[Problem]:
-    """Everything that is wrong or doubtful within ``contest.toml``."""
+    """Find everything that is wrong or doubtful within ``contest.toml``."""
     return [
         *_check_codes(contest),
         *_check_parties(contest),
@@ -122,7 +122,7 @@ def _check_parties(contest: Contest) -> Iterator[Problem]:
     if not contest.others:
         for donor in kept:
             yield _problem(
-                "others", f"false, while {1 - taken[donor]:.6g} of {donor}'s last votes are inherited by no one",
+                "others", f"false, while no one inherits {1 - taken[donor]:.6g} of {donor}'s votes",
                 "others, to hold them", "Let the parts sum to 1, or allow others.", Rule.INHERITS,
             )  # fmt: skip
 

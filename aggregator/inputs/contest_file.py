@@ -64,7 +64,7 @@ def _not_toml(message: str) -> Problem:
 
 
 def key_path(location: tuple[str | int, ...]) -> str:
-    """A place in the file as a reader counts it: ``party[2].code`` is the second party's code."""
+    """Write a place in the file as a reader counts it: ``party[2].code`` is the second party's code."""
     path = ""
     for part in location:
         path += f"[{part + 1}]" if isinstance(part, int) else f".{part}" if path else part
@@ -72,19 +72,19 @@ def key_path(location: tuple[str | int, ...]) -> str:
 
 
 def _model_in(annotation: Any) -> type[BaseModel] | None:
-    """The model class inside an annotation such as ``tuple[Party, ...]`` or ``LastResult | None``."""
+    """Find the model class inside an annotation such as ``tuple[Party, ...]`` or ``LastResult | None``."""
     if isinstance(annotation, type) and issubclass(annotation, BaseModel):
         return annotation
     return next((m for a in get_args(annotation) if (m := _model_in(a)) is not None), None)
 
 
 def known_keys(model: type[BaseModel]) -> dict[str, FieldInfo]:
-    """The keys of one table of the file, as written there, with what each holds."""
+    """List the keys of one table of the file, as written there, with what each holds."""
     return {field.alias or name: field for name, field in model.model_fields.items()}
 
 
 def _field_at(location: tuple[str | int, ...]) -> tuple[type[BaseModel], FieldInfo | None]:
-    """The table a place lies in, and its field there (None for a key no one knows)."""
+    """Find the table a place lies in, and its field there (None for a key no one knows)."""
     table: type[BaseModel] = Contest
     field: FieldInfo | None = None
     for i, part in enumerate(location):
@@ -129,7 +129,7 @@ def _shown(value: Any) -> str:
 
 
 def _rough_contest(raw: dict[str, Any], details: list[Any]) -> Contest | None:
-    """The contest without what is wrong in it, for checking codes in the other files."""
+    """Build the contest without what is wrong in it, for checking codes in the other files."""
     dropped: list[tuple[list[Any], int]] = []
     try:
         for detail in details:

@@ -47,11 +47,10 @@ UNREAD_FILES = (
 
 @dataclass(frozen=True)
 class _Register:
-    """The register's rows after each was checked, and the shares of those that may enter."""
+    """The register's rows, each of them sound."""
 
     file: str
     rows: tuple[PollRow, ...]
-    shares: dict[int, SharesOfRow]
 
 
 def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date) -> DeskInputs:
@@ -107,11 +106,16 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
         problems.append(_no_usable_poll(register.file, unused, as_of))
     if _errors(problems):
         raise InputError(_in_order(problems, read))
+    # Read again from the rows that enter alone: as of a day, later polls must not show a rounding step.
+    shares, more = _read_all_shares(entering, contest=contest, file=register.file)
+    problems += more
+    if _errors(more):
+        raise InputError(_in_order(problems, read))
     problems += check_doubts(
-        entering, shares=register.shares, contest=contest, last_result=last_result, file=register.file
+        entering, shares=shares, contest=contest, last_result=last_result, file=register.file
     )
     out = {row.row for row, _ in unused}
-    polls = build_polls(entering, shares=register.shares, kept=kept, contest=contest)
+    polls = build_polls(entering, shares=shares, kept=kept, contest=contest)
     return DeskInputs(
         folder=folder,
         contest=contest,
@@ -132,7 +136,7 @@ def _errors(problems: Iterable[Problem]) -> bool:
 
 
 def _in_order(problems: Iterable[Problem], read: dict[str, bytes]) -> tuple[Problem, ...]:
-    """By file as read, then row; the order of discovery inside a row."""
+    """Sort by file as read, then row; the order of discovery inside a row."""
     names = list(read)
     place = {name: i for i, name in enumerate(names)}
     return tuple(sorted(problems, key=lambda p: (place.get(p.file, len(names)), p.row or 0)))
@@ -144,7 +148,7 @@ def _is_about_used(problem: Problem, register_file: str, out: set[int]) -> bool:
 
 
 def _read_bytes(folder: Path, name: str, read: dict[str, bytes]) -> bytes | None:
-    """The bytes of a file, None where it is not there; remembered under its name."""
+    """Read the bytes of a file, None where it is not there; remembered under its name."""
     path = folder / name
     try:
         data = path.read_bytes()
@@ -163,7 +167,7 @@ def _missing(folder: Path, name: str, needed: str) -> Problem:
 
 
 def _read_contest(folder: Path, read: dict[str, bytes]) -> tuple[Contest | None, bool, list[Problem]]:
-    """The contest, whether every key of it could be read, and what was found."""
+    """Read the contest; say whether every key of it could be read, and what was found."""
     data = _read_bytes(folder, CONTEST_FILE, read)
     if data is None:
         return None, False, [_missing(folder, CONTEST_FILE, "the description of the contest")]
@@ -201,18 +205,18 @@ def _read_register(
             sound_rows.append(row)
     problems += check_history(sound_rows, broken=frozenset(broken_polls), file=file)
     problems += check_breakdowns([row for row in sound_rows if row.poll not in broken_polls], file=file)
-    shares, more = _read_all_shares(sound_rows, contest=contest, file=file)
+    wanted = [row for row in sound_rows if row.wants_in]
+    shares, more = _read_all_shares(wanted, contest=contest, file=file)
     usable = tuple(row for row in sound_rows if row.row in shares or not row.wants_in)
-    return _Register(file, usable, shares), problems + more
+    return _Register(file, usable), problems + [p for p in more if p.severity is Severity.ERROR]
 
 
 def _read_all_shares(
     rows: list[PollRow], *, contest: Contest, file: str
 ) -> tuple[dict[int, SharesOfRow], list[Problem]]:
-    wanted = [row for row in rows if row.wants_in]
-    steps = rounding_steps(wanted)
+    steps = rounding_steps(rows)
     shares, problems = {}, []
-    for row in wanted:
+    for row in rows:
         read, found = read_shares(row, contest=contest, step=steps[row.poll], file=file)
         problems += found
         if read is not None:

@@ -172,7 +172,7 @@ def _check_totals(table: SheetTable, rows: list[_Votes], *, broken: set[int | No
 
 
 def _check_standing(table: SheetTable, rows: list[_Votes], contest: Contest) -> Iterator[Problem]:
-    """One finding per party, not per seat: a party may well have stood more widely last time."""
+    """Give one finding per party, not per seat: a party may well have stood more widely last time."""
     where = [_region_of(as_text(r.cells.get("region", "")), contest) for r in table.rows]
     for party in contest.parties:
         if party.regions is None:
@@ -206,7 +206,7 @@ def _result_frame(table: SheetTable, rows: list[_Votes], contest: Contest) -> pd
 
 
 def inherit(votes: _Votes, region: str, contest: Contest) -> _Votes:
-    """Last votes by today's parties: each takes its parts of the columns it inherits from.
+    """Give last votes by today's parties: each takes its parts of the columns it inherits from.
 
     All parts are taken of the votes as cast. What no heir that stands in the region takes stays with the
     donor where that is a party of today, and goes to others where it is not. Blank plus blank is blank.

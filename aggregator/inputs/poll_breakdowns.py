@@ -23,7 +23,7 @@ _LEAST_COVERED = 0.8
 
 
 def rows_by_poll(rows: Sequence[PollRow]) -> dict[str, list[PollRow]]:
-    """The rows of each poll, in register order."""
+    """Group the rows of each poll, in register order."""
     groups: dict[str, list[PollRow]] = defaultdict(list)
     for row in rows:
         groups[row.poll].append(row)
@@ -31,7 +31,7 @@ def rows_by_poll(rows: Sequence[PollRow]) -> dict[str, list[PollRow]]:
 
 
 def check_breakdowns(rows: Sequence[PollRow], *, file: str) -> list[Problem]:
-    """Everything wrong between the rows of one poll."""
+    """Find everything wrong between the rows of one poll."""
     problems: list[Problem] = []
     for group in rows_by_poll(rows).values():
         if len(group) > 1:
@@ -114,7 +114,7 @@ def _covers(parts: Sequence[PollRow], national: PollRow) -> bool:
 def choose_rows(
     rows: Sequence[PollRow], *, contest: Contest
 ) -> tuple[list[PollRow], list[tuple[PollRow, str]]]:
-    """Of a poll that has a national row and regional ones, keep one or the other, never both.
+    """Keep, of a poll with a national row and regional ones, one or the other, never both.
 
     The regional rows enter if they cover the country and name every code the national row names;
     else the national row enters.
@@ -130,9 +130,7 @@ def choose_rows(
             continue
         missing = _codes_missing(parts, national, contest)
         if not _covers(parts, national):
-            reason = (
-                "" if row.national else "entered by its national row: the regional ones leave regions out"
-            )
+            reason = "" if row.national else "entered by its national row: the others leave regions out"
         elif missing:
             reason = "" if row.national else f"entered by its national row: only that names {missing}"
         else:
@@ -145,7 +143,7 @@ def choose_rows(
 
 
 def _codes_missing(parts: Sequence[PollRow], national: PollRow, contest: Contest) -> str:
-    """Codes that the national row names and some regional row, where they stand, does not."""
+    """Name the codes that the national row names and some regional row, where they stand, does not."""
     missing = [
         code
         for code in national.shares

@@ -97,7 +97,7 @@ def _check_identical(table: SheetTable) -> Iterator[Problem]:
 
 
 def made_poll_id(house: str, end: date) -> str:
-    """The identifier of a poll whose ``poll`` cell is blank: its house and its last day."""
+    """Make the identifier of a poll whose ``poll`` cell is blank: its house and its last day."""
     slug = re.sub(r"\W+", "-", house.casefold()).strip("-")
     return f"{slug}-{end.isoformat()}"
 
@@ -197,7 +197,7 @@ _BLANK_REMEDY = {
 def _read_regions(
     text: str, *, file: str, row: int, contest: Contest
 ) -> tuple[tuple[str, ...], list[Problem]]:
-    """Region codes of a row in the contest's order; all of them where the cell is blank."""
+    """Read a row's region codes in the contest's order; all of them where the cell is blank."""
     if not text:
         return contest.region_codes, []
     known = [r.code for r in contest.regions]

@@ -18,7 +18,7 @@ HIGHEST_SUM = 105.0
 
 
 def check_poll_row(row: PollRow, *, file: str, contest: Contest) -> list[Problem]:
-    """Everything wrong with one row."""
+    """Find everything wrong with one row."""
     problems = [*_check_days(row, file), *_check_decision(row, file), *_check_status(row, file)]
     problems += _check_sample(row, file)
     if row.question is Question.SEATS_ONLY:
@@ -38,7 +38,7 @@ def _check_days(row: PollRow, file: str) -> Iterator[Problem]:
         )  # fmt: skip
     if row.published < row.end:
         yield Problem(
-            file, row.row, "published", row.published.isoformat(), f"the end of fieldwork ({row.end}) or later",
+            file, row.row, "published", row.published.isoformat(), f"the end ({row.end}) or later",
             "Correct published or end.", Rule.PUBLISHED_ORDER,
         )  # fmt: skip
 
@@ -76,8 +76,8 @@ def _check_status(row: PollRow, file: str) -> Iterator[Problem]:
         )  # fmt: skip
     if row.status is Status.WITHDRAWN and row.status_date is not None and row.status_date < row.published:
         yield Problem(
-            file, row.row, "status_date", row.status_date.isoformat(), f"published ({row.published}) or later",
-            "Correct one of the two.", Rule.STATUS,
+            file, row.row, "status_date", row.status_date.isoformat(),
+            f"the day of publication ({row.published}) or later", "Correct either.", Rule.STATUS,
         )  # fmt: skip
 
 
@@ -135,7 +135,7 @@ def _check_figures(row: PollRow, file: str) -> Iterator[Problem]:
 
 
 def _check_partition(row: PollRow, file: str, contest: Contest) -> Iterator[Problem]:
-    """No party's support may stand in two filled columns."""
+    """Check that no party's support stand in two filled columns."""
     holder: dict[str, str] = {}
     for code in row.shares:
         for member in contest.members_of(code):
@@ -157,7 +157,7 @@ def _check_standing(row: PollRow, file: str, contest: Contest) -> Iterator[Probl
         ):
             yield Problem(
                 file, row.row, code, f"{share:g} for fieldwork from {row.start} to {row.end}",
-                f"a blank cell: the alliance exists from {alliance.from_ or '…'} until {alliance.until or '…'}",
+                f"a blank cell: the alliance exists from {alliance.from_ or '…'} to {alliance.until or '…'}",
                 "Enter its members instead, or correct from and until in contest.toml.", Rule.ALLIANCE_PERIOD,
             )  # fmt: skip
         stands = any(contest.stands_in(m, r) for m in contest.members_of(code) for r in row.regions)

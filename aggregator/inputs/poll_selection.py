@@ -31,7 +31,7 @@ def select_rows(
 
 
 def polling_day_of(row: PollRow, contest: Contest) -> date:
-    """The last polling day among a row's regions."""
+    """Give the last polling day among a row's regions."""
     return max((contest.polling_day_of(r) for r in row.regions), default=contest.polling_day)
 
 
@@ -49,7 +49,7 @@ def _why_not(row: PollRow, contest: Contest) -> str:
 
 
 def check_span(row: PollRow, *, contest: Contest, file: str) -> list[Problem]:
-    """Doubts about fieldwork at either end of the contest."""
+    """Look for doubtful fieldwork at either end of the contest."""
     if not row.wants_in:
         return []
     problems = []
@@ -65,8 +65,8 @@ def check_span(row: PollRow, *, contest: Contest, file: str) -> list[Problem]:
         problems.append(
             Problem(
                 file, row.row, "start", row.start.isoformat(),
-                f"a day after the last election ({last.date})", "Correct the date: interviews from before and "
-                "after an election are no one poll.", Rule.EARLIER_CONTEST,
+                f"a day after the last election ({last.date})", "Correct the date: interviews from "
+                "before and after an election are not one poll.", Rule.EARLIER_CONTEST,
             )
         )  # fmt: skip
     if row.use is Use.YES and row.end > polling_day:

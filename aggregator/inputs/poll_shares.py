@@ -64,7 +64,7 @@ class SharesOfRow:
 
 
 def rounding_step(values: Iterable[float]) -> float:
-    """The coarsest step (1, 0.5, 0.1, …) of which all values are multiples."""
+    """Find the coarsest step (1, 0.5, 0.1, …) of which all values are multiples."""
     found = list(values)
     return next(
         (s for s in _STEPS if all(abs(v / s - round(v / s)) < 1e-6 for v in found)),
@@ -73,7 +73,7 @@ def rounding_step(values: Iterable[float]) -> float:
 
 
 def rounding_steps(rows: Sequence[PollRow]) -> dict[str, float]:
-    """Each poll's rounding step: from its own figures, or its house's where it has few."""
+    """Find each poll's rounding step: from its own figures, or its house's where it has few."""
     by_house: dict[str, list[float]] = defaultdict(list)
     by_poll: dict[str, list[float]] = defaultdict(list)
     for row in rows:
@@ -90,7 +90,7 @@ def rounding_steps(rows: Sequence[PollRow]) -> dict[str, float]:
 
 
 def codes_not_asked(row: PollRow, *, contest: Contest) -> set[str]:
-    """Parties, others included, that stand in the row's regions and are in none of its filled columns."""
+    """List the parties, others included, that stand in the row's regions and have no figure there."""
     standing = {p for p in contest.party_codes if any(contest.stands_in(p, r) for r in row.regions)}
     return standing - {m for code in row.shares for m in contest.members_of(code)}
 

@@ -39,7 +39,7 @@ def check_doubts(
     last_result: pd.DataFrame | None,
     file: str,
 ) -> list[Problem]:
-    """All doubts about the rows that enter."""
+    """Find all doubts about the rows that enter."""
     return [
         *_check_blanks(rows, file),
         *_check_samples(rows, file),
@@ -58,7 +58,7 @@ def _warning(
 
 
 def _listed(rows: Sequence[PollRow]) -> str:
-    """``row 4`` or ``rows 4, 7, 9, … (17 in total)``."""
+    """Write ``row 4`` or ``rows 4, 7, 9, … (17 in total)``."""
     numbers = sorted(row.row for row in rows)
     if len(numbers) == 1:
         return f"row {numbers[0]}"
@@ -67,7 +67,7 @@ def _listed(rows: Sequence[PollRow]) -> str:
 
 
 def _check_blanks(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
-    """One finding for the whole file: whoever leaves these cells blank mostly does so throughout."""
+    """Give one finding for the whole file: whoever leaves these cells blank mostly does so throughout."""
     unpublished = [row for row in rows if not row.published_given]
     if unpublished:
         yield _warning(

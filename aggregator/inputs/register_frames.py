@@ -24,7 +24,7 @@ def build_polls(
     kept: Mapping[str, float],
     contest: Contest,
 ) -> pd.DataFrame:
-    """The table of rows that enter the fit (its columns: :class:`DeskInputs`).
+    """Build the table of rows that enter the fit (its columns: :class:`DeskInputs`).
 
     Parameters
     ----------
@@ -58,7 +58,7 @@ def build_polls(
 
 
 def build_unused(unused: Sequence[tuple[PollRow, str]], *, contest: Contest) -> pd.DataFrame:
-    """The table of rows that do not enter, as read, with the reason."""
+    """Build the table of rows that do not enter, as read, with the reason."""
     labels = ("question", *_LABELS, "undecided", "status", "status_date", "replaces", "source", "note")
     records = []
     for row, reason in unused:

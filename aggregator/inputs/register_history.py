@@ -62,7 +62,7 @@ def check_history(rows: Sequence[PollRow], *, broken: frozenset[str], file: str)
         if target is None:
             if row.replaces not in broken:
                 yield Problem(
-                    file, row.row, "replaces", f'"{row.replaces}"', "the identifier of a poll in the register",
+                    file, row.row, "replaces", f'"{row.replaces}"', "the identifier of another poll",
                     _replaces_remedy(row, first_of), Rule.REPLACES,
                 )  # fmt: skip
             continue

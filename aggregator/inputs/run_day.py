@@ -37,7 +37,7 @@ def choose_run_day(
     as_of: date | None,
     today: date,
 ) -> RunDay:
-    """The day asked for; else today; else, where the contest lies wholly elsewhere, its last publication.
+    """Choose the day: as asked; else today; else, in a contest not under way, its last publication.
 
     Parameters
     ----------
@@ -66,7 +66,7 @@ def choose_run_day(
 
 
 def check_future(rows: Sequence[PollRow], *, run_day: RunDay, file: str) -> Iterator[Problem]:
-    """In a contest that is under way, no fieldwork has ended after today."""
+    """Check that, in a contest that is under way, no fieldwork has ended after today."""
     if not run_day.live:
         return
     for row in rows:

@@ -32,7 +32,7 @@ class SheetTable:
 
 
 def as_text(cell: Cell) -> str:
-    """A cell as the reader of the file would write it (a whole number without a decimal point)."""
+    """Write a cell as the reader of the file would write it (a whole number without a decimal point)."""
     if isinstance(cell, bool):
         return "TRUE" if cell else "FALSE"
     if isinstance(cell, float):
@@ -41,7 +41,7 @@ def as_text(cell: Cell) -> str:
 
 
 def quoted(cell: Cell) -> str:
-    """A cell's content for a message: text in quotation marks, numbers bare, long text cut."""
+    """Write a cell's content for a message: text in quotation marks, numbers bare, long text cut."""
     text = as_text(cell)
     if len(text) > 60:
         text = text[:57] + "…"

@@ -117,7 +117,7 @@ def _read_text_cells(data: bytes, *, file: str) -> tuple[list[list[Cell]] | None
 
 
 def _separator(text: str) -> str | None:
-    """The separator that divides the header into the most cells; None where none divides it."""
+    """Find the separator that divides the header into the most cells; None where none divides it."""
     header = next((line for line in text.split("\n") if line.strip(" ,;\t\ufeff")), "")
     counts = {s: len(next(csv.reader([header], delimiter=s))) for s in SEPARATORS}
     best = max(counts, key=lambda s: counts[s])

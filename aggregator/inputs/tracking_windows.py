@@ -13,7 +13,7 @@ from aggregator.problems import Problem, Severity
 
 
 def check_windows(rows: Sequence[PollRow], *, file: str) -> tuple[dict[str, float], list[Problem]]:
-    """The part of each poll's respondents that no earlier poll of its series already has.
+    """Find the part of each poll's respondents that no earlier poll of its series already has.
 
     Polls are one series where house, regions, method, mode, population and sponsor are the same. Answers
     are taken as even over the window's days; of two polls the one that ended first keeps all its days.

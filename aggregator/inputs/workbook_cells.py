@@ -21,7 +21,7 @@ _PACKAGE = "{http://schemas.openxmlformats.org/package/2006/relationships}"
 def read_workbook_cells(
     data: bytes, *, file: str, sheet: str
 ) -> tuple[list[list[Cell]] | None, list[Problem]]:
-    """All cells of the only sheet, or of the one called ``sheet``, blank ones as ``""``."""
+    """Read all cells of the only sheet, or of the one called ``sheet``, blank ones as ``""``."""
     try:
         workbook = python_calamine.CalamineWorkbook.from_object(io.BytesIO(data))
     except (python_calamine.CalamineError, zipfile.BadZipFile) as error:
