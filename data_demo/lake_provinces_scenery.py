@@ -77,7 +77,7 @@ HOUSES = (
         "voters",
         2100,
         0.1,
-        breakdown=0.10,
+        breakdown=0.20,
         activity=1.5,
         sponsors=("", "Mere Morning"),
     ),
@@ -174,4 +174,5 @@ LAKE_PROVINCES = Scenery(
     alliances=ALLIANCES,
     dissolved=("RF", 0.04),
     others_share=0.035,
+    drift=0.75,
 )

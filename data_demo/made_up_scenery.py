@@ -113,6 +113,8 @@ class Scenery:
         First day a poll may start, last day one may be published.
     dissolved
         Party that stood last time only: code and usual share.
+    drift
+        Factor on the usual scales of drift: below one for a calmer country.
     """
 
     title: str
@@ -127,6 +129,7 @@ class Scenery:
     alliances: tuple[MadeUpAlliance, ...] = ()
     dissolved: tuple[str, float] | None = None
     others_share: float = 0.05
+    drift: float = 1.0
 
     @property
     def codes(self) -> tuple[str, ...]:
