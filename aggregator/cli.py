@@ -35,8 +35,25 @@ _MACHINE_TROUBLE = {
     errno.ENFILE, errno.ENOMEM,
 }  # fmt: skip
 
+
+def _examples(*lines: str) -> str:
+    r"""Lay out an epilog line by line: ``\b`` keeps the help from refilling it."""
+    return "\b\n" + "\n".join(["Example:" if len(lines) == 1 else "Examples:", *(f"  {x}" for x in lines)])
+
+
+_FIRST_ROUND = """\b
+A first round:
+  fieldfold new lakes
+  fieldfold check lakes
+  fieldfold refresh lakes
+
+\b
+Exit codes: 0 done, 1 wrong input, 2 wrong usage, 3 done but checks failed,
+5 machine trouble, 70 internal error, 130 interrupted."""
+
 app = typer.Typer(
     name="fieldfold",
+    epilog=_FIRST_ROUND,
     add_completion=False,
     no_args_is_help=True,
     pretty_exceptions_enable=False,
@@ -114,32 +131,17 @@ def _fieldfold(
         typer.Option("--version", callback=_print_version, is_eager=True, help="Print the version."),
     ] = False,
 ) -> None:
-    r"""Fold the fieldwork of many polling houses into one picture of an election.
-
-    \b
-    A first round:
-        fieldfold new lakes
-        fieldfold check lakes
-        fieldfold refresh lakes
-
-    \b
-    Exit codes: 0 done, 1 wrong input, 2 wrong usage, 3 done but checks failed,
-    5 machine trouble, 70 internal error, 130 interrupted.
-    """
+    """Fold the fieldwork of many polling houses into one picture of an election."""
 
 
-@app.command()
+@app.command(epilog=_examples("fieldfold new lakes"))
 def new(
     folder: Annotated[Path, typer.Argument(metavar="DIR", help="The folder to make.", show_default=False)],
 ) -> None:
-    r"""Make a commented new contest.
+    """Make a commented new contest.
 
     It is invented and complete: check and refresh work on it at once. Then put your own parties, polls
     and votes in.
-
-    \b
-    Example:
-        fieldfold new lakes
     """
     from aggregator.inputs.new_contest import new_contest
 
@@ -147,19 +149,15 @@ def new(
         print(path)
 
 
-@app.command()
+@app.command(epilog=_examples("fieldfold check lakes --as-of 2031-04-01"))
 def check(
     folder: Annotated[Path, _DIR],
     as_of: Annotated[datetime | None, _AS_OF] = None,
     as_json: Annotated[bool, _JSON] = False,
 ) -> None:
-    r"""Read every file of a contest and report everything found.
+    """Read every file of a contest and report everything found.
 
     Errors stop a refresh; warnings travel into the release. Nothing is written.
-
-    \b
-    Example:
-        fieldfold check lakes --as-of 2031-04-01
     """
     from aggregator.inputs.contest_folder import read_contest_folder
 
@@ -177,7 +175,11 @@ def check(
         _print_inputs(inputs)
 
 
-@app.command()
+@app.command(
+    epilog=_examples(
+        "fieldfold refresh lakes", "fieldfold refresh lakes --as-of 2031-04-01 --out april --seed 7"
+    )
+)
 def refresh(
     folder: Annotated[Path, _DIR],
     as_of: Annotated[datetime | None, _AS_OF] = None,
@@ -192,13 +194,7 @@ def refresh(
     quiet: Annotated[bool, typer.Option("--quiet", help="Show no progress.")] = False,
     as_json: Annotated[bool, _JSON] = False,
 ) -> None:
-    r"""Make this week's release: check, fit, count seats, write.
-
-    \b
-    Examples:
-        fieldfold refresh lakes
-        fieldfold refresh lakes --as-of 2031-04-01 --out april --seed 7
-    """
+    """Make this week's release: check, fit, count seats, write."""
     if as_of is not None and out is None:
         raise UsageError("--as-of needs --out: a look back is no release of the week.")
     from aggregator.weekly_run import refresh as refresh_contest
