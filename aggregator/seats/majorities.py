@@ -13,8 +13,9 @@ majority only as an alliance
 no majority
     neither a party nor an alliance of the day holds it.
 
-With a majority above half of the chamber and alliances that share no member, exactly one of the last three
-kinds happens in every draw, to one code.
+Others (``OTH``) are no party: they neither lead nor hold a majority. With a majority above half of the
+chamber and alliances that share no member, exactly one of the last three kinds happens in every draw, to one
+code.
 """
 
 from __future__ import annotations
@@ -29,7 +30,7 @@ import numpy.typing as npt
 import pandas as pd
 import xarray as xr
 
-from aggregator.inputs.contest import Alliance, Contest
+from aggregator.inputs.contest import OTHERS, Alliance, Contest
 from models.dimensions import CHAIN, DATE, DRAW, PARTY
 
 FloatArray = npt.NDArray[np.float64]
@@ -100,7 +101,8 @@ def chances_of_outcomes(seats: xr.DataArray, *, alliances: Iterable[Alliance], m
     pd.DataFrame
         Columns ``outcome``, ``code``, ``probability``, ``mc_error``.
     """
-    won = seats.transpose(CHAIN, DRAW, PARTY)
+    seats = seats.transpose(CHAIN, DRAW, PARTY)
+    won = seats.sel({PARTY: seats[PARTY] != OTHERS})
     most = won == won.max(PARTY)
     largest = most / most.sum(PARTY)
     alone = won >= majority
@@ -109,7 +111,7 @@ def chances_of_outcomes(seats: xr.DataArray, *, alliances: Iterable[Alliance], m
     rows += [(Outcome.MAJORITY_ALONE, code, alone.sel({PARTY: code})) for code in won[PARTY].values]
     nobody = nobody_alone
     for alliance in alliances:
-        together = won.sel({PARTY: list(alliance.members)}).sum(PARTY) >= majority
+        together = seats.sel({PARTY: list(alliance.members)}).sum(PARTY) >= majority
         rows.append((Outcome.MAJORITY_ONLY_AS_ALLIANCE, alliance.code, together & nobody_alone))
         nobody = nobody & ~together
     rows.append((Outcome.NO_MAJORITY, NO_CODE, nobody))

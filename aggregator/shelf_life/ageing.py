@@ -49,7 +49,7 @@ def share_variance(share: xr.DataArray, *, sd_log: xr.DataArray, members: Sequen
 
 
 def fresh_worth[Quantity: (float, xr.DataArray)](
-    sample: float, *, weeks: float, share: Quantity, drift_variance: Quantity, kappa: Quantity
+    sample: float, *, weeks: float | Quantity, share: Quantity, drift_variance: Quantity, kappa: Quantity
 ) -> Quantity:
     r"""Fresh respondents of the same house that would be worth as much as an old sample.
 

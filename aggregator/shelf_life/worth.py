@@ -11,19 +11,24 @@ from dataclasses import dataclass
 from datetime import date
 
 import numpy as np
+import numpy.typing as npt
 import pandas as pd
 import xarray as xr
 
 from aggregator.inputs.contest import OTHERS, Alliance
 from aggregator.shelf_life.ageing import fresh_worth, half_life_weeks, share_variance
-from models.dimensions import DATE, HOUSE, PARTY
+from models.dimensions import CHAIN, DATE, DRAW, HOUSE, PARTY
+
+FloatArray = npt.NDArray[np.float64]
 
 DAYS_PER_WEEK = 7.0
 POINTS = 100.0
 # The interval of every published table.
 LOWER, UPPER = 0.05, 0.95
-# From the day of fieldwork to a quarter of a year, in days.
-USUAL_AGES = (0, 3, 7, 14, 21, 28, 42, 56, 70, 91)
+# Every day of a quarter of a year.
+USUAL_AGES = tuple(range(91))
+_AGE = "age_days"
+_DRAWS = (CHAIN, DRAW)
 
 
 @dataclass(frozen=True)
@@ -44,7 +49,7 @@ def codes_of(draws: xr.Dataset, *, alliances: Iterable[Alliance] = ()) -> list[C
 
 def headline_code(draws: xr.Dataset) -> str:
     """Code of the largest party on the run date by mean national support; others are no party."""
-    support = _support_today(draws).mean(("chain", "draw"))
+    support = _support_today(draws).mean(_DRAWS)
     named = support.sel({PARTY: support[PARTY] != OTHERS})
     return str(named.idxmax(PARTY).item())
 
@@ -60,8 +65,8 @@ def summarise_shelf_life(
 
     A poll of age a was taken a days before the run date. ``worth_today`` counts respondents interviewed on
     the run date, ``worth_polling_day`` respondents interviewed on polling day. The expected error is that
-    of the poll's own figure against the result, as a root mean square over draws, in four parts whose
-    squares add up:
+    of the same poll's own figure against the result (the drift is that of its age *and* of the days left),
+    as a root mean square over draws, in four parts whose squares add up:
 
     - sampling :math:`p(1-p)(\kappa + (n-1)\rho)/n`, weighting loss and the house's floor included,
     - house, the spread of leans between houses,
@@ -92,33 +97,30 @@ def summarise_shelf_life(
     """
     share = _support_today(draws)
     kappa, rho = draws["kappa"].mean(HOUSE), draws["rho"].mean(HOUSE)
-    weeks_left = _days_to_polling_day(draws) / DAYS_PER_WEEK
-    rows = []
+    age = xr.DataArray(list(ages), dims=_AGE)
+    weeks = age / DAYS_PER_WEEK
+    weeks_to_vote = weeks + _days_to_polling_day(draws) / DAYS_PER_WEEK
+    tables = []
     for code in codes_of(draws, alliances=alliances):
         support = share.sel({PARTY: list(code.members)}).sum(PARTY)
         drift = share_variance(share, sd_log=draws["drift_sd_log"], members=code.members)
         house = share_variance(share, sd_log=draws["house_sd_log"], members=code.members)
         shared = share_variance(share, sd_log=draws["shared_lean_sd_log"], members=code.members)
         sampling = support * (1 - support) * (kappa + (sample - 1) * rho) / sample
-        for age in ages:
-            weeks = age / DAYS_PER_WEEK
-            today = fresh_worth(sample, weeks=weeks, share=support, drift_variance=drift, kappa=kappa)
-            later = fresh_worth(
-                sample, weeks=weeks + weeks_left, share=support, drift_variance=drift, kappa=kappa
-            )
-            rows.append(
-                {
-                    "age_days": age,
-                    "code": code.code,
-                    "level": code.level,
-                    **_median_and_interval(today, name="worth_today"),
-                    **_median_and_interval(later, name="worth_polling_day"),
-                    **_expected_error(
-                        sampling=sampling, house=house, shared_lean=shared, drift=drift * (weeks + weeks_left)
-                    ),
-                }
-            )
-    return pd.DataFrame(rows).sort_values("age_days", kind="stable", ignore_index=True)
+        today = fresh_worth(sample, weeks=weeks, share=support, drift_variance=drift, kappa=kappa)
+        later = fresh_worth(sample, weeks=weeks_to_vote, share=support, drift_variance=drift, kappa=kappa)
+        columns = {
+            _AGE: age.to_numpy(),
+            "code": code.code,
+            "level": code.level,
+            **_median_and_interval(today, name="worth_today"),
+            **_median_and_interval(later, name="worth_polling_day"),
+            **_expected_error(
+                sampling=sampling, house=house, shared_lean=shared, drift=drift * weeks_to_vote
+            ),
+        }
+        tables.append(pd.DataFrame(columns))
+    return pd.concat(tables, ignore_index=True).sort_values(_AGE, kind="stable", ignore_index=True)
 
 
 def summarise_half_life(
@@ -225,13 +227,14 @@ def _days_to_polling_day(draws: xr.Dataset) -> int:
     return max(days.days, 0)
 
 
-def _median_and_interval(values: xr.DataArray, *, name: str) -> dict[str, float]:
-    lower, median, upper = np.quantile(values.to_numpy(), [LOWER, 0.5, UPPER])
-    return {name: float(median), f"{name}_q05": float(lower), f"{name}_q95": float(upper)}
+def _median_and_interval(values: xr.DataArray, *, name: str) -> dict[str, FloatArray]:
+    """Median and interval over draws: one number, or one per age."""
+    over_draws = values.quantile([LOWER, 0.5, UPPER], _DRAWS).to_numpy()
+    return {name: over_draws[1], f"{name}_q05": over_draws[0], f"{name}_q95": over_draws[2]}
 
 
-def _expected_error(**variance: xr.DataArray) -> dict[str, float]:
+def _expected_error(**variance: xr.DataArray) -> dict[str, FloatArray]:
     """Root mean square over draws of each cause and of all together, in points."""
-    mean = {cause: float(value.mean()) for cause, value in variance.items()}
-    total = {"expected_error": POINTS * float(np.sqrt(sum(mean.values())))}
-    return total | {f"error_{cause}": POINTS * float(np.sqrt(value)) for cause, value in mean.items()}
+    mean = {cause: value.mean(_DRAWS).to_numpy() for cause, value in variance.items()}
+    total = {"expected_error": POINTS * np.sqrt(sum(mean.values()))}
+    return total | {f"error_{cause}": POINTS * np.sqrt(value) for cause, value in mean.items()}

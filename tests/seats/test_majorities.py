@@ -56,8 +56,16 @@ def test_outcomes_of_majority_are_complete_and_exclusive() -> None:
     table = summarise_majorities(seats, contest=made_up_contest())
     sums = table.assign(largest=table["outcome"] == "largest").groupby(["date", "kind", "largest"])
     np.testing.assert_allclose(sums["probability"].sum(), 1)
-    assert table["kind"].value_counts()["on_polling_day"] == 2 * 5 + 2
+    assert table["kind"].value_counts()["on_polling_day"] == 2 * 4 + 2
     assert (table["mc_error"] > 0).all()
+
+
+def test_others_neither_lead_nor_hold_a_majority() -> None:
+    seats = seats_of((1, 2, 7), (6, 4, 0)).assign_coords(party=["FER", "LAN", "OTH"])
+    table = chances_of_outcomes(seats, alliances=[], majority=6)
+    assert "OTH" not in set(table["code"])
+    assert chance(table, "largest", "LAN") == pytest.approx(1 / 2)
+    assert chance(table, "no_majority") == pytest.approx(1 / 2)
 
 
 def test_alliance_counts_only_on_the_days_it_exists() -> None:
