@@ -48,7 +48,8 @@ _ENDINGS = ("mar", "ness", "wold", "sund", "thorn", "quay", "gate", "stow")
 def _regions() -> tuple[MadeUpRegion, ...]:
     """Name every seat once: stems and endings in turn, so that neighbours in the list differ."""
     total = sum(count for _, _, count in _REGIONS)
-    names = [_STEMS[k % len(_STEMS)] + _ENDINGS[(k + k // len(_STEMS)) % len(_ENDINGS)] for k in range(total)]
+    stems = len(_STEMS)
+    names = [_STEMS[k % stems] + _ENDINGS[(k % stems + k // stems) % len(_ENDINGS)] for k in range(total)]
     regions, start = [], 0
     for code, name, count in _REGIONS:
         regions.append(MadeUpRegion(code, name, tuple(sorted(names[start : start + count]))))

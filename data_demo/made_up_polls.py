@@ -139,7 +139,7 @@ def _draw_poll(
     rows, whole = [], pd.Series(0, index=list(groups))
     for region, asked, count in zip(regions, samples, decided, strict=True):
         expected = country.weights @ answers if region == "" else answers[scenery.region_codes.index(region)]
-        cells = _draw_cells(expected, groups=groups, respondents=int(count), deff=deff, rng=rng)
+        cells = draw_answers(expected, groups=groups, respondents=int(count), deff=deff, rng=rng)
         whole = whole.add(pd.Series(cells), fill_value=0)
         printed = _print_cells(cells, house=house, sample=int(asked), decided=int(count))
         rows.append({**head, "region": region, "sample": int(asked), **printed})
@@ -204,7 +204,7 @@ def _head(
     }
 
 
-def _draw_cells(
+def draw_answers(
     expected: np.ndarray,
     *,
     groups: dict[str, list[int]],
