@@ -1,0 +1,307 @@
+"""The election model: one hierarchical model of several polls over time, as a ``pm.Model``.
+
+θ_{r,t} = softmax(b_r + a_t + d_{r,t}): the last result, the national swing, the region's own swing. Polls see θ
+through the shared lean and their house's lean, with their design effect.
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+import pymc as pm
+import pytensor.tensor as pt
+
+from models.arrays import ElectionArrays
+from models.block_geometry import Geometry
+from models.conditional_laplace import add_modes, answer_information
+from models.design_effect import add_design_effect_parameters, row_design_effect
+from models.free_baseline import add_free_baseline, add_free_region_baseline
+from models.party_scales import add_party_scale
+from models.poll_answers import (
+    add_answers,
+    add_small_cells,
+    answer_precision,
+    cell_shares,
+    kept_cells,
+    small_counts,
+    softmax,
+)
+from models.priors import Priors
+from models.shared_lean import add_shared_lean, lean_loadings, lean_scale
+
+Array = Any
+
+# Log support of a party that does not stand: small enough to vanish, large enough to stay finite.
+ABSENT = -40.0
+
+
+def build_election_model(
+    arrays: ElectionArrays, *, geometry: Geometry, priors: Priors, shared_lean: bool = True
+) -> pm.Model:
+    """Build the model of one contest.
+
+    All numbers of the contest and of the week enter as ``pm.Data``, so that another week's polls change
+    no constant of the graph.
+
+    Parameters
+    ----------
+    arrays
+        The contest and its polls.
+    geometry
+        Modes of the Gaussian blocks, from :func:`models.block_geometry.build_geometry`.
+    priors
+        Prior scales.
+    shared_lean
+        Whether polls may share an error; without it intervals for true support are far too narrow.
+
+    Raises
+    ------
+    ModelInputError
+        If the arrays contradict each other.
+    """
+    arrays.check()
+    with pm.Model(coords=_coords(arrays, geometry)) as model:
+        data = _add_data(arrays, geometry, priors)
+        # The count of houses is read off the data: a new house must not change the graph.
+        model.add_coord("house", arrays.rows.houses, length=data["house_number"].shape[0])
+        drift = add_party_scale(
+            "drift",
+            log_median=priors.drift_log_median,
+            log_sd=priors.drift_log_sd,
+            spread=priors.party_spread,
+            reference_share=data["reference_share"],
+        )
+        house_scale = add_party_scale(
+            "house_scale",
+            log_median=priors.house_log_median,
+            log_sd=priors.house_log_sd,
+            spread=priors.party_spread,
+            reference_share=data["reference_share"],
+        )
+        lean = _lean(data, house_scale, priors) if shared_lean else None
+        start, region_start = _start(arrays, data, lean, priors)
+        national = _national_swing(data, drift, lean, start)
+        region = _region_swing(geometry, data, drift, region_start, priors)
+        house = _house_effects(geometry, data, house_scale)
+        share = _row_shares(data, national, region, region_start, house)
+        kappa, rho = add_design_effect_parameters(priors=priors)
+        _answers(arrays, data, share, kappa, rho)
+    return model
+
+
+def _coords(arrays: ElectionArrays, geometry: Geometry) -> dict[str, Any]:
+    coords: dict[str, Any] = {
+        "party": arrays.country.parties,
+        "region": arrays.country.regions,
+        "free_party": [arrays.country.parties[i] for i in arrays.country.free_party],
+        "lean_end": ("last result", "towards polling day"),
+        "national_mode": np.arange(len(geometry.national.information)),
+    }
+    if geometry.region is not None:
+        coords["region_mode"] = np.arange(len(geometry.region.information))
+    if geometry.house is not None:
+        coords["house_mode"] = np.arange(len(geometry.house.information))
+    return coords
+
+
+def _add_data(arrays: ElectionArrays, geometry: Geometry, priors: Priors) -> dict[str, Array]:
+    """Every number of the contest and the week, by name."""
+    country, knots, rows = arrays.country, arrays.knots, arrays.rows
+    asked = (rows.region_mix > 0).sum(axis=1)
+    alone, several = np.flatnonzero(asked == 1), np.flatnonzero(asked > 1)
+    values: dict[str, Any] = {
+        "reference_share": country.reference_share,
+        "pilot_share": country.pilot_share,
+        "base": np.where(country.standing, country.last_log_share, ABSENT),
+        "free": np.eye(len(country.parties))[country.free_party],
+        "free_median": country.free_median,
+        "national_weight": rows.national_weight,
+        "house_number": np.arange(len(rows.houses)),
+        "house_of_row": rows.house_of_row,
+        "respondents": rows.respondents,
+        "poll_respondents": rows.poll_respondents,
+        "weighting_known": rows.weighting_known,
+        "partition": rows.partition,
+        "answers_published": rows.answers,
+        "used": rows.used,
+        "kept": kept_cells(rows),
+        "alone": alone,
+        "several": several,
+        "row_order": np.argsort(np.concatenate([alone, several])),
+        "region_alone": rows.region_mix[alone].argmax(axis=1) if len(alone) else alone,
+        "region_mix_several": rows.region_mix[several],
+        "lean_loadings": lean_loadings(knots.lean_clock, correlation=priors.lean_correlation),
+        "lean_loadings_reference": lean_loadings(
+            np.array([knots.lean_reference]), correlation=priors.lean_correlation
+        ),
+        "shared_lean_size": np.array(priors.shared_lean),
+        "national_basis": geometry.national.basis,
+        "national_information": geometry.national.information,
+        "national_crossing": geometry.national.crossing,
+        "national_pull": np.zeros((len(geometry.national.information), len(country.parties))),
+    }
+    if geometry.region is not None:
+        values |= {
+            "region_basis": geometry.region.basis,
+            "region_information": geometry.region.information,
+            "region_crossing": geometry.region.crossing,
+            "region_pull": np.zeros((len(geometry.region.information), len(country.parties))),
+            "region_contrast": geometry.region_contrast,
+            "region_weight_several": rows.region_weight[several][:, 1:],
+            "region_design_alone": (
+                rows.region_weight[alone][:, 1:, None]
+                * (rows.region_mix[alone] @ geometry.region_contrast)[:, None, :]
+            ).reshape(len(alone), len(geometry.region.basis)),
+        }
+    if geometry.house is not None:
+        values |= {
+            "house_basis": geometry.house_contrast @ geometry.house.basis,
+            "house_information": geometry.house.information,
+            "house_pull": np.zeros((len(geometry.house.information), len(country.parties))),
+        }
+    if len(rows.small_row):
+        small = small_counts(rows)
+        values |= {
+            "small_row": rows.small_row,
+            "small_cell": rows.small_cell,
+            "small_count": small.counts,
+            "small_log_weight": small.log_count_weight,
+        }
+    return {name: pm.Data(name, np.asarray(value, order="C")) for name, value in values.items()}
+
+
+def _lean(data: dict[str, Array], house_scale: Array, priors: Priors) -> dict[str, Array]:
+    scale = lean_scale(
+        shared_lean=data["shared_lean_size"],
+        reference_share=data["reference_share"],
+        house_scale=house_scale,
+        house_count=data["house_number"].shape[0],
+    )
+    at_knots = add_shared_lean(loadings=data["lean_loadings"], scale=scale)
+    ends = pm.modelcontext(None)["shared_lean_ends"]
+    return {"at_knots": at_knots, "at_reference": pt.dot(data["lean_loadings_reference"], ends * scale)[0]}
+
+
+def _start(
+    arrays: ElectionArrays, data: dict[str, Array], lean: dict[str, Array] | None, priors: Priors
+) -> tuple[Array | None, Array | None]:
+    """True start of the free parties: national dims (party), and by region dims (region, party)."""
+    if not len(arrays.country.free_party):
+        return None, None
+    start = add_free_baseline(free=data["free"], median=data["free_median"], log_sd=priors.free_log_sd)
+    if lean is not None:
+        start = start - lean["at_reference"] * data["free"].sum(axis=0)
+    if len(arrays.country.regions) == 1:
+        return start, None
+    return start, add_free_region_baseline(free=data["free"], log_sd=priors.free_region_log_sd)
+
+
+def _national_swing(
+    data: dict[str, Array], drift: Array, lean: dict[str, Array] | None, start: Array | None
+) -> Array:
+    """What polls see nationally beside the regions: walk, lean and free starts; dims (knot, party)."""
+    beside = 0.0
+    if lean is not None:
+        beside = beside + lean["at_knots"]
+    if start is not None:
+        beside = beside + start[None, :]
+    pull = data["national_pull"]
+    if lean is not None or start is not None:
+        beside = beside + pt.zeros_like(data["lean_loadings"][:, 0])[:, None]
+        # Polls see walk + lean + start: the walk's coordinates follow the others, or the sampler meets a ridge.
+        pull = pull - answer_information(pt.dot(data["national_crossing"], beside), share=data["pilot_share"])
+    modes = add_modes(
+        "national_modes",
+        scale=drift,
+        information=data["national_information"],
+        share=data["pilot_share"],
+        pull=pull,
+        dims=("national_mode", "party"),
+    )
+    walk = pt.dot(data["national_basis"], modes)
+    walk = pt.concatenate([pt.zeros_like(walk[:1]), walk], axis=0)
+    return walk + beside
+
+
+def _region_swing(
+    geometry: Geometry, data: dict[str, Array], drift: Array, region_start: Array | None, priors: Priors
+) -> Array | None:
+    """Each region's own swing as contrasts at the regional knots; dims ((knot − 1) · contrast, party)."""
+    if geometry.region is None:
+        return None
+    ratio = pm.Normal("region_ratio_log", priors.region_ratio_log_median, priors.region_ratio_log_sd)
+    pull = data["region_pull"]
+    if region_start is not None:
+        pull = pull - answer_information(pt.dot(data["region_crossing"], region_start), share=data["pilot_share"])
+    modes = add_modes(
+        "region_modes",
+        scale=drift * pt.exp(ratio),
+        information=data["region_information"],
+        share=data["pilot_share"],
+        pull=pull,
+        dims=("region_mode", "party"),
+    )
+    return pt.dot(data["region_basis"], modes)
+
+
+def _house_effects(geometry: Geometry, data: dict[str, Array], house_scale: Array) -> Array | None:
+    """House effects, dims (house, party), zero-sum over houses."""
+    if geometry.house is None:
+        return None
+    modes = add_modes(
+        "house_modes",
+        scale=house_scale,
+        information=data["house_information"],
+        share=data["pilot_share"],
+        pull=data["house_pull"],
+        dims=("house_mode", "party"),
+    )
+    return pt.dot(data["house_basis"], modes)
+
+
+def _row_shares(
+    data: dict[str, Array],
+    national: Array,
+    region: Array | None,
+    region_start: Array | None,
+    house: Array | None,
+) -> Array:
+    """Expected shares of all parties in each row, leans included; dims (row, party)."""
+    common = pt.dot(data["national_weight"], national)
+    if house is not None:
+        common = common + house[data["house_of_row"]]
+    base = data["base"] if region_start is None else data["base"] + region_start
+    alone, several = data["alone"], data["several"]
+    at_alone = common[alone] + base[data["region_alone"]]
+    at_several = common[several][:, None, :] + base[None, :, :]
+    if region is not None:
+        at_alone = at_alone + pt.dot(data["region_design_alone"], region)
+        contrast = data["region_contrast"]
+        by_knot = region.reshape((-1, contrast.shape[1] * region.shape[1]))
+        seen = pt.dot(data["region_weight_several"], by_knot).reshape((-1, contrast.shape[1], region.shape[1]))
+        at_several = at_several + pt.dot(seen.dimshuffle(0, 2, 1), contrast.T).dimshuffle(0, 2, 1)
+    several_share = (softmax(at_several) * data["region_mix_several"][:, :, None]).sum(axis=1)
+    return pt.concatenate([softmax(at_alone), several_share], axis=0)[data["row_order"]]
+
+
+def _answers(arrays: ElectionArrays, data: dict[str, Array], share: Array, kappa: Array, rho: Array) -> None:
+    cells = cell_shares(share, partition=data["partition"], used=data["used"])
+    deff = row_design_effect(
+        kappa=kappa,
+        rho=rho,
+        house_of_row=data["house_of_row"],
+        poll_respondents=data["poll_respondents"],
+        weighting_known=data["weighting_known"],
+    )
+    precision = answer_precision(respondents=data["respondents"], design_effect=deff, larger=pt.maximum)
+    add_answers(answers=data["answers_published"], cells=cells, precision=precision, kept=data["kept"])
+    if len(arrays.rows.small_row):
+        row, cell = data["small_row"], data["small_cell"]
+        add_small_cells(
+            counts=data["small_count"],
+            log_count_weight=data["small_log_weight"],
+            weight=precision[row] * cells[row, cell],
+            precision=precision[row],
+            respondents=data["respondents"][row],
+        )
