@@ -70,11 +70,6 @@ def count_seats(
     ValueError
         Where draws and last result do not fit each other: seats in a region without support, support for
         a party where it does not stand, rows without a seat.
-
-    Examples
-    --------
-    >>> seats = count_seats(draws, last_result=result, contest=contest, rng=rng)  # doctest: +SKIP
-    >>> seats["seat_chance"].sum("seat")  # expected seats on polling day        # doctest: +SKIP
     """
     rule = COUNTING_RULES.get(contest.counting.rule)
     if rule is None:

@@ -89,8 +89,32 @@ def chances_of_outcomes(seats: xr.DataArray, *, alliances: Iterable[Alliance], m
 
     Parameters
     ----------
+    seats, alliances, majority
+        As for `outcomes_in_draws`.
+
+    Returns
+    -------
+    pd.DataFrame
+        Columns ``outcome``, ``code``, ``probability``, ``mc_error``.
+    """
+    return pd.DataFrame(
+        [
+            (str(outcome), code, float(happens.mean()), monte_carlo_error(happens))
+            for outcome, code, happens in outcomes_in_draws(seats, alliances=alliances, majority=majority)
+        ],
+        columns=["outcome", "code", "probability", "mc_error"],
+    )
+
+
+def outcomes_in_draws(
+    seats: xr.DataArray, *, alliances: Iterable[Alliance], majority: int
+) -> list[tuple[Outcome, str, FloatArray]]:
+    """Whether each outcome happens, draw by draw.
+
+    Parameters
+    ----------
     seats
-        Seats won, dims (chain, draw, party).
+        Seats won on one day, dims (chain, draw, party), any order.
     alliances
         Alliances of the day.
     majority
@@ -98,30 +122,25 @@ def chances_of_outcomes(seats: xr.DataArray, *, alliances: Iterable[Alliance], m
 
     Returns
     -------
-    pd.DataFrame
-        Columns ``outcome``, ``code``, ``probability``, ``mc_error``.
+    list of (outcome, code, happens)
+        ``happens`` has dims (chain, draw): 1 where it happens, 0 where not, and for ``largest`` one part of
+        k where k parties tie. The code of ``no_majority`` is empty.
     """
     seats = seats.transpose(CHAIN, DRAW, PARTY)
     won = seats.sel({PARTY: seats[PARTY] != OTHERS})
+    parties = [str(code) for code in won[PARTY].values]
     most = won == won.max(PARTY)
     largest = most / most.sum(PARTY)
     alone = won >= majority
-    nobody_alone = ~alone.any(PARTY)
-    rows = [(Outcome.LARGEST, code, largest.sel({PARTY: code})) for code in won[PARTY].values]
-    rows += [(Outcome.MAJORITY_ALONE, code, alone.sel({PARTY: code})) for code in won[PARTY].values]
-    nobody = nobody_alone
+    nobody_alone = nobody = ~alone.any(PARTY)
+    outcomes = [(Outcome.LARGEST, code, largest.sel({PARTY: code})) for code in parties]
+    outcomes += [(Outcome.MAJORITY_ALONE, code, alone.sel({PARTY: code})) for code in parties]
     for alliance in alliances:
         together = seats.sel({PARTY: list(alliance.members)}).sum(PARTY) >= majority
-        rows.append((Outcome.MAJORITY_ONLY_AS_ALLIANCE, alliance.code, together & nobody_alone))
+        outcomes.append((Outcome.MAJORITY_ONLY_AS_ALLIANCE, alliance.code, together & nobody_alone))
         nobody = nobody & ~together
-    rows.append((Outcome.NO_MAJORITY, NO_CODE, nobody))
-    return pd.DataFrame(
-        [
-            (str(outcome), str(code), float(happens.mean()), monte_carlo_error(happens.to_numpy()))
-            for outcome, code, happens in rows
-        ],
-        columns=["outcome", "code", "probability", "mc_error"],
-    )
+    outcomes.append((Outcome.NO_MAJORITY, NO_CODE, nobody))
+    return [(outcome, code, happens.to_numpy().astype(np.float64)) for outcome, code, happens in outcomes]
 
 
 def monte_carlo_error(happens: npt.ArrayLike) -> float:
