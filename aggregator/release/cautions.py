@@ -26,8 +26,8 @@ CAUTIONS = (
     ),
     Caution(
         "What polls cannot see.",
-        "A late swing after the last fieldwork, an error that all houses share, and who in the end goes to vote "
-        "are not in the polls. The intervals allow for them by assumption, not by measurement.",
+        "A late swing after the last fieldwork, an error that all houses share, and who in the end goes to "
+        "vote are not in the polls. The intervals allow for them by assumption, not by measurement.",
     ),
     Caution(
         "A chance is not a share of the vote.",
@@ -35,21 +35,25 @@ CAUTIONS = (
     ),
     Caution(
         "No margin of error in the strict sense.",
-        "Most samples are not random. The intervals are statements of a model, conditional on its assumptions.",
+        "Most samples are not random. The intervals are statements of a model, and hold only if its "
+        "assumptions do.",
     ),
     Caution(
         "A lean is a difference between houses.",
-        "It says how a house's figures differ from the other houses' average. It proves neither fault nor intent; "
-        "the average itself can be off.",
+        "It says how a house's figures differ from the average of the houses. It proves neither fault nor "
+        "intent; the average itself can be off.",
     ),
     Caution(
         "The law comes first.",
-        "Many places ban or restrict publishing polls and estimates made from them before or during voting. Check "
-        "the electoral law and the professional codes that apply where this is published.",
+        "Many places ban or restrict publishing polls and estimates made from them before or during voting. "
+        "Check the electoral law and the professional codes that apply where this is published.",
     ),
 )
 
-CHART_CAUTION = "Estimates, not results: late swings, an error all houses share and turnout are beyond what polls can see."
+CHART_CAUTION = (
+    "Estimates, not results: late swings, an error all houses share and turnout "
+    "are beyond what polls can see."
+)
 """The caution inside every chart."""
 
 
@@ -113,7 +117,7 @@ def publication_status(
 
 
 def failed_checks_text(verdict: Verdict) -> str | None:
-    """What a release whose checks failed says in every table, chart and page; None where they passed."""
+    """Word what every table, chart and page says when checks failed; None where they passed."""
     if verdict.passed:
         return None
     failed = verdict.table.loc[~verdict.table["passed"].astype(bool), "check"].astype(str)
@@ -132,6 +136,6 @@ def _window_text(window: Silence, contest: Contest) -> str:
     )
     law = f" ({window.law})" if window.law else ""
     return (
-        f"no publication{where} from the start of {date_text(window.from_)} to the end of {date_text(window.until)}, "
-        f"{window.time_zone} time{law}."
+        f"no publication{where} from the start of {date_text(window.from_)} "
+        f"to the end of {date_text(window.until)}, {window.time_zone} time{law}."
     )

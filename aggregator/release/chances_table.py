@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from datetime import date
+from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -14,7 +14,7 @@ from aggregator.inputs.contest import Contest
 from aggregator.release.codes import Code
 from aggregator.release.draw_summaries import monte_carlo_error
 from aggregator.release.likelihood_words import likelihood_word
-from aggregator.release.rounding import CHANCE_DECIMALS, round_chance
+from aggregator.release.rounding import SMALLEST_CHANCE, round_chance
 from aggregator.release.seats_tables import majority_line, seats_in_chamber
 from aggregator.release.table_schemas import CHANCES, Kind, Level, Outcome
 from models.dimensions import CHAIN, DATE, DRAW, PARTY
@@ -44,32 +44,19 @@ def build_chances_table(
     pandas.DataFrame
         Columns of the schema ``CHANCES``.
     """
-    days = [pd.Timestamp(day).date() for day in draws[DATE].values]
-    dated: list[tuple[date, Kind, xr.DataArray, xr.DataArray | None]] = [
-        (
-            day,
-            Kind.ON_DATE,
-            draws["national_support"].isel({DATE: place}),
-            None if seats is None else seats["seats"].sel({DATE: draws[DATE].values[place]}),
-        )
-        for place, day in enumerate(days)
-    ]
-    dated.append(
-        (
-            contest.polling_day,
-            Kind.ON_POLLING_DAY,
-            draws["national_support_polling_day"],
-            None if seats is None else seats["seats_polling_day"],
-        )
-    )
+    parties = [code for code in codes if code.level is Level.PARTY]
+    support = _with_polling_day(draws, "national_support", parties)
+    won = None if seats is None else _with_polling_day(seats, "seats", parties)
     majority = None if seats is None else majority_line(contest, chamber=seats_in_chamber(seats))
+    days = [pd.Timestamp(day).date() for day in draws[DATE].values]
+    kinds = [Kind.ON_DATE] * len(days) + [Kind.ON_POLLING_DAY]
     labels: list[dict[str, object]] = []
     indicators: list[Indicator] = []
-    for day, kind, support, drawn in dated:
+    for place, (day, kind) in enumerate(zip([*days, contest.polling_day], kinds, strict=True)):
         there = [code for code in codes if code.exists_on(day)]
-        outcomes = _support_outcomes(support, there)
-        if drawn is not None and majority is not None:
-            outcomes += _seat_outcomes(drawn, there, majority)
+        outcomes = _leads(Outcome.MOST_SUPPORT, support[place], parties)
+        if won is not None and majority is not None:
+            outcomes += _seat_outcomes(won[place], parties, there, majority)
         for outcome, code, indicator in outcomes:
             labels.append(
                 {"date": np.datetime64(day, "s"), "kind": kind.value, "outcome": outcome.value, "code": code}
@@ -79,34 +66,35 @@ def build_chances_table(
     samples = occurred.shape[0] * occurred.shape[1]
     table = pd.DataFrame(labels)
     table["probability"] = round_chance(occurred.mean(axis=(0, 1)), samples=samples)
-    table["mc_error"] = np.maximum(monte_carlo_error(occurred), 10.0**-CHANCE_DECIMALS)
+    table["mc_error"] = np.maximum(monte_carlo_error(occurred), SMALLEST_CHANCE)
     table["likelihood"] = table["probability"].map(likelihood_word)
     return table[list(CHANCES.column_names)]
 
 
-def _support_outcomes(support: xr.DataArray, codes: Sequence[Code]) -> list[tuple[Outcome, str, Indicator]]:
-    parties = [code.code for code in codes if code.level is Level.PARTY]
-    return [(Outcome.MOST_SUPPORT, code, lead) for code, lead in _leads(_by_party(support, parties), parties)]
+def _with_polling_day(draws: xr.Dataset, name: str, parties: Sequence[Code]) -> NDArray[Any]:
+    """Values with shape (date, chain, draw, party), polling day as the last date; others left out."""
+    chosen = {PARTY: [code.code for code in parties]}
+    dated = draws[name].sel(chosen).transpose(DATE, CHAIN, DRAW, PARTY).values
+    final = draws[f"{name}_polling_day"].sel(chosen).transpose(CHAIN, DRAW, PARTY).values
+    return np.concatenate([dated, final[None]])
 
 
 def _seat_outcomes(
-    seats: xr.DataArray, codes: Sequence[Code], majority: int
+    won: NDArray[Any], parties: Sequence[Code], codes: Sequence[Code], majority: int
 ) -> list[tuple[Outcome, str, Indicator]]:
-    parties = [code.code for code in codes if code.level is Level.PARTY]
-    won = _by_party(seats, parties)
+    """Outcomes of one day from seats with shape (chain, draw, party)."""
+    place = {code.code: index for index, code in enumerate(parties)}
     alone = won >= majority
     reached = alone.any(axis=-1)
-    outcomes: list[tuple[Outcome, str, Indicator]] = [
-        (Outcome.LARGEST, code, lead) for code, lead in _leads(won, parties)
-    ]
+    outcomes = _leads(Outcome.LARGEST, won, parties)
     outcomes += [
-        (Outcome.MAJORITY_ALONE, code, alone[..., place].astype(np.float64))
-        for place, code in enumerate(parties)
+        (Outcome.MAJORITY_ALONE, code.code, alone[..., place[code.code]].astype(np.float64))
+        for code in parties
     ]
     for code in codes:
         if code.level is not Level.ALLIANCE:
             continue
-        members = [parties.index(member) for member in code.members if member in parties]
+        members = [place[member] for member in code.members if member in place]
         together = won[..., members].sum(axis=-1) >= majority
         only_together = together & ~alone[..., members].any(axis=-1)
         outcomes.append((Outcome.MAJORITY_ONLY_AS_ALLIANCE, code.code, only_together.astype(np.float64)))
@@ -115,13 +103,10 @@ def _seat_outcomes(
     return outcomes
 
 
-def _by_party(drawn: xr.DataArray, parties: Sequence[str]) -> NDArray[np.generic]:
-    """Values with shape (chain, draw, party)."""
-    return drawn.sel({PARTY: list(parties)}).transpose(CHAIN, DRAW, PARTY).values
-
-
-def _leads(values: NDArray[np.generic], parties: Sequence[str]) -> list[tuple[str, Indicator]]:
+def _leads(
+    outcome: Outcome, values: NDArray[Any], parties: Sequence[Code]
+) -> list[tuple[Outcome, str, Indicator]]:
     """Whether each party has the highest value in each draw; k parties tied there count 1/k each."""
     top = values == values.max(axis=-1, keepdims=True)
     parts = top / top.sum(axis=-1, keepdims=True)
-    return [(code, parts[..., place]) for place, code in enumerate(parties)]
+    return [(outcome, code.code, parts[..., place]) for place, code in enumerate(parties)]

@@ -74,10 +74,11 @@ def write_charts(folder: Path, *, charts: Sequence[ReleaseChart], frame: Frame) 
 
 
 def _accessible_svg(svg: str, chart: ReleaseChart, layout: Layout) -> str:
-    """The same picture, named and described for screen readers, and free to shrink to its container."""
+    """Name and describe the picture for screen readers, and keep its ids apart from those of others."""
     ends = "-".join(part for part in (chart.name, layout.name) if part)
     label = f'role="img" aria-labelledby="{ends}-title {ends}-desc"'
-    heading = f'<title id="{ends}-title">{escape(chart.title)}</title><desc id="{ends}-desc">{escape(chart.alt_text)}</desc>'
+    heading = f'<title id="{ends}-title">{escape(chart.title)}</title>'
+    heading += f'<desc id="{ends}-desc">{escape(chart.alt_text)}</desc>'
     # Ids of clip paths and gradients repeat between charts and would clash within one page.
     svg = re.sub(r'(id="|url\(#|href="#)(clip|gradient)', rf"\1{ends}-\2", svg)
     return re.sub(r"<svg ([^>]*)>", lambda m: f"<svg {m.group(1)} {label}>{heading}", svg, count=1)

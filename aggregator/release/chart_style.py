@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import re
 import textwrap
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import cycle
 from typing import Any
 
 import altair as alt
@@ -23,7 +25,10 @@ FONT = "Liberation Sans, Arial, Helvetica, sans-serif"
 # it is faint on paper.
 OKABE_ITO = ("#0072B2", "#D55E00", "#009E73", "#CC79A7", "#E69F00", "#56B4E9", "#000000", "#F0E442")
 OTHERS_GREY = "#8b9196"
-CHART_READING = "Line: median; dark band: 50 % interval; light band: 90 % interval."
+DASH_SHAPE = "M-1,-.35H1V.35H-1Z"
+"""A short bar, as a path: others are no party, and look like none."""
+CHART_READING = "Line and number: mean; dark band: 50 % interval; light band: 90 % interval."
+HEX_COLOUR = re.compile(r"#[0-9A-Fa-f]{6}")
 SHAPES = (
     "circle",
     "square",
@@ -33,6 +38,7 @@ SHAPES = (
     "triangle-down",
     "triangle-right",
     "triangle-left",
+    "wedge",
 )
 
 
@@ -74,18 +80,18 @@ class CodeLook:
 
 
 def code_looks(codes: Sequence[Code]) -> dict[str, CodeLook]:
-    """A look for every code: the contest's colour where it gives one, else the palette's next."""
+    """Give every code a look: the contest's colour where it gives one, else the palette's next."""
     looks: dict[str, CodeLook] = {}
-    taken = {code.colour.upper() for code in codes if code.colour}
-    palette = [colour for colour in OKABE_ITO if colour.upper() not in taken]
-    drawn = 0
+    given = {code.code: code.colour for code in codes if code.colour and HEX_COLOUR.fullmatch(code.colour)}
+    taken = {colour.upper() for colour in given.values()}
+    palette = cycle([colour for colour in OKABE_ITO if colour not in taken] or OKABE_ITO)
+    shapes = cycle(SHAPES)
     for code in codes:
         if code.level is Level.OTHERS:
-            looks[code.code] = CodeLook(code.code, code.name, code.colour or OTHERS_GREY, "stroke")
-            continue
-        colour = code.colour or palette[drawn % len(palette)]
-        drawn += 0 if code.colour else 1
-        looks[code.code] = CodeLook(code.code, code.name, colour, SHAPES[len(looks) % len(SHAPES)])
+            colour, shape = given.get(code.code, OTHERS_GREY), DASH_SHAPE
+        else:
+            colour, shape = given.get(code.code) or next(palette), next(shapes)
+        looks[code.code] = CodeLook(code.code, code.name, colour, shape)
     return looks
 
 
@@ -152,7 +158,7 @@ def frame_chart(
     # A long register has more points than the library's default limit, which guards notebooks.
     with alt.data_transformers.enable("default", max_rows=None, consolidate_datasets=True):
         inner = chart.to_dict(validate=False)
-    outer = {key: inner.pop(key) for key in ("$schema", "datasets") if key in inner}
+    outer: dict[str, Any] = {key: inner.pop(key) for key in ("$schema", "datasets") if key in inner}
     inner.pop("config", None)
     notes = [*_wrap(frame.source, layout, size - 1), *_wrap(frame.caution, layout, size - 1)]
     alarms = [line for alarm in frame.alarms for line in _wrap(alarm, layout, size + 1)]
@@ -213,5 +219,5 @@ def _config(layout: Layout) -> dict[str, Any]:
 
 
 def _wrap(text: str, layout: Layout, size: int) -> list[str]:
-    """Lines that fit the width: letters of the chart's font are about 0.5 of their height wide."""
-    return textwrap.wrap(text, width=int((layout.width - 10) / (0.5 * size))) or [""]
+    """Lines that fit the width: letters of the chart's font are about 0.475 of their height wide."""
+    return textwrap.wrap(text, width=int((layout.width - 10) / (0.475 * size))) or [""]

@@ -11,11 +11,13 @@ import pandas as pd
 
 from aggregator.release.chart_style import CHART_READING, CodeLook, Frame, Layout, code_looks, frame_chart
 from aggregator.release.contents import ReleaseContents
-from aggregator.release.headlines import POLL_SIZE, largest_code
+from aggregator.release.headlines import POLL_SIZE
 from aggregator.release.interval_charts import build_houses_chart, build_seats_chart
 from aggregator.release.over_time_chart import OverTime, build_over_time_chart
+from aggregator.release.page_tables import WORTH_AGES
 from aggregator.release.poll_points import build_poll_points
 from aggregator.release.rounding import date_text, points_text, share_interval_text, share_text, whole_text
+from aggregator.release.table_rows import largest_code, last_row
 from aggregator.release.table_schemas import Kind, Level
 from aggregator.release.worth_chart import build_worth_chart
 
@@ -41,7 +43,7 @@ class ReleaseChart:
     draw: Callable[[Layout], alt.TopLevelMixin]
 
     def framed(self, *, frame: Frame, layout: Layout) -> dict[str, Any]:
-        """The chart's specification, with title, source, caution and alarms around it."""
+        """Build the chart's specification, with title, source, caution and alarms around it."""
         return frame_chart(
             self.draw(layout),
             title=self.title,
@@ -110,7 +112,8 @@ def _support_over_time(
     return ReleaseChart(
         name=name,
         title=title,
-        reading=f"{CHART_READING} Points: published polls, at the middle of their fieldwork, the undecided set aside.",
+        reading=f"{CHART_READING} Points: published polls, at the middle of their fieldwork, the undecided "
+        "set aside.",
         alt_text=_shares_alt_text(title, rows, looks, contents),
         draw=lambda layout: build_over_time_chart(content, layout=layout),
     )
@@ -119,24 +122,20 @@ def _support_over_time(
 def _shares_alt_text(title: str, rows: pd.DataFrame, looks: list[CodeLook], contents: ReleaseContents) -> str:
     parts = []
     for look in looks:
-        now = _last(rows, look.code, Kind.ON_DATE)
-        then = _last(rows, look.code, Kind.ON_POLLING_DAY)
+        now = last_row(rows, code=look.code, kind=Kind.ON_DATE)
+        then = last_row(rows, code=look.code, kind=Kind.ON_POLLING_DAY)
         if now is None:
             continue
-        part = f"{look.name} {share_text(now['q50'])} ({share_interval_text(now['q05'], now['q95'])})"
+        part = f"{look.name} {share_text(now['mean'])} ({share_interval_text(now['q05'], now['q95'])})"
         if then is not None:
-            part += f", on polling day {share_text(then['q50'])} ({share_interval_text(then['q05'], then['q95'])})"
+            interval = share_interval_text(then["q05"], then["q95"])
+            part += f", on polling day {share_text(then['mean'])} ({interval})"
         parts.append(part)
     return _with_alarms(
-        f"{title}. Median and 90 % interval on {date_text(contents.run_date)} and on {date_text(contents.contest.polling_day)}: "
-        f"{'; '.join(parts)}.",
+        f"{title}. Mean and 90 % interval on {date_text(contents.run_date)} "
+        f"and on {date_text(contents.contest.polling_day)}: {'; '.join(parts)}.",
         contents,
     )
-
-
-def _last(rows: pd.DataFrame, code: str, kind: Kind) -> pd.Series | None:
-    found = rows[(rows["code"] == code) & (rows["kind"] == kind)]
-    return None if found.empty else found.loc[found["date"].idxmax()]
 
 
 def _houses_chart(contents: ReleaseContents, looks: dict[str, CodeLook]) -> ReleaseChart:
@@ -146,13 +145,14 @@ def _houses_chart(contents: ReleaseContents, looks: dict[str, CodeLook]) -> Rele
         houses["code"].isin([c.code for c in chosen]) & ((houses["q05"] > 0) | (houses["q95"] < 0))
     ]
     names = contents.names
-    listed = [f"{r.house}, {names[r.code]} {points_text(r.lean)}" for r in clear.itertuples()]
+    listed = [f"{r['house']}, {names[r['code']]} {points_text(r['lean'])}" for r in clear.to_dict("records")]
     title = "Which way each house leans"
     return ReleaseChart(
         name="house_leans",
         title=title,
-        reading="Reported share minus what the average of the houses would report, in percentage points. Dot: estimate; line: 90 % "
-        "interval; upright line: average of the houses. A lean is a difference, not an error. Houses in alphabetical order.",
+        reading="Reported share minus what the average of the houses would report, in percentage points. "
+        "Shape: estimate; line: 90 % interval; upright line: average of the houses. "
+        "A lean is a difference, not an error. Houses in alphabetical order.",
         alt_text=_with_alarms(
             f"{title}. {houses['house'].nunique()} houses. 90 % intervals that leave out zero, in points: "
             f"{'; '.join(listed) if listed else 'none'}.",
@@ -167,18 +167,20 @@ def _worth_chart(contents: ReleaseContents) -> ReleaseChart:
     rows = contents.tables.shelf_life[contents.tables.shelf_life["code"] == code]
     name = contents.names[code]
     title = f"What a poll of {whole_text(POLL_SIZE)} is still worth, by its age"
-    picked = rows.iloc[sorted({(rows["age_days"] - age).abs().argmin() for age in (0, 7, 14, 30, 60, 90)})]
+    picked = rows[rows["age_days"].isin(WORTH_AGES)]
     listed = [
-        f"at {int(r.age_days)} days {whole_text(r.worth_today)} and {whole_text(r.worth_polling_day)}"
-        for r in picked.itertuples()
+        f"at {whole_text(r['age_days'])} days {whole_text(r['worth_today'])} "
+        f"and {whole_text(r['worth_polling_day'])}"
+        for r in picked.to_dict("records")
     ]
     return ReleaseChart(
         name="poll_worth",
         title=title,
-        reading=f"For {name}. How many people asked on the day itself would tell as much about support on that day. Band: 90 % interval.",
+        reading=f"For {name}. How many people asked on the day itself would tell as much about support on "
+        "that day. Band: 90 % interval.",
         alt_text=_with_alarms(
-            f"{title}. For {name}; worth in people asked on the day of the run, and in people asked on polling day: "
-            f"{'; '.join(listed)}.",
+            f"{title}. For {name}; worth in people asked on the day of the run, and in people asked on "
+            f"polling day: {'; '.join(listed)}.",
             contents,
         ),
         draw=lambda layout: build_worth_chart(rows, layout=layout),
@@ -192,8 +194,8 @@ def _seats_chart(contents: ReleaseContents, looks: dict[str, CodeLook], seats: p
     return ReleaseChart(
         name="seats_on_polling_day",
         title=title,
-        reading="Shape: median; thick line: 50 % interval; thin line: 90 % interval. Numbers: mean and 90 % interval. "
-        "An alliance counts its members' seats again.",
+        reading="Shape: mean; thick line: 50 % interval; thin line: 90 % interval. "
+        "Numbers: mean and 90 % interval. An alliance counts its members' seats again.",
         alt_text=_seats_alt_text(f"{title}. Majority {majority} of {chamber}", seats, chosen, contents),
         draw=lambda layout: build_seats_chart(
             seats, looks=chosen, chamber=chamber, majority=majority, layout=layout
@@ -231,7 +233,7 @@ def _seats_over_time_chart(
 def _seats_alt_text(
     opening: str, seats: pd.DataFrame, looks: Iterable[CodeLook], contents: ReleaseContents
 ) -> str:
-    found = ((look, _last(seats, look.code, Kind.ON_POLLING_DAY)) for look in looks)
+    found = ((look, last_row(seats, code=look.code, kind=Kind.ON_POLLING_DAY)) for look in looks)
     parts = [
         f"{look.name} {whole_text(row['mean'])} ({whole_text(row['q05'])} to {whole_text(row['q95'])})"
         for look, row in found

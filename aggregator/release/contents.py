@@ -104,8 +104,9 @@ class ReleaseContents:
         first = polls["start"].fillna(polls["end"]).min().date()
         publisher = f"{self.contest.release.publisher}, " if self.contest.release.publisher else ""
         return (
-            f"{self.contest.title}. Source: {publisher}{_counted(self.poll_count, 'poll')} by {_counted(self.house_count, 'house')}, "
-            f"{whole_text(self.respondents)} respondents, fieldwork {date_text(first)} to {date_text(polls['end'].max().date())}; "
+            f"{self.contest.title}. Source: {publisher}{_counted(self.poll_count, 'poll')} "
+            f"by {_counted(self.house_count, 'house')}, {whole_text(self.respondents)} respondents, "
+            f"fieldwork {date_text(first)} to {date_text(polls['end'].max().date())}; "
             f"run of {date_text(self.run_date)}; polling day {date_text(self.contest.polling_day)}."
         )
 

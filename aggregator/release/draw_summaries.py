@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Hashable, Sequence
+from typing import Any
 
 import numpy as np
 import xarray as xr
@@ -14,7 +15,7 @@ from models.dimensions import CHAIN, DRAW
 QUANTILES = {"q05": 0.05, "q25": 0.25, "q50": 0.50, "q75": 0.75, "q95": 0.95}
 
 
-def stack_samples(draws: xr.DataArray, *, dims: Sequence[Hashable]) -> NDArray[np.generic]:
+def stack_samples(draws: xr.DataArray, *, dims: Sequence[Hashable]) -> NDArray[Any]:
     """Array with the given dims first and all draws of all chains, side by side in memory, last.
 
     Parameters
@@ -28,7 +29,7 @@ def stack_samples(draws: xr.DataArray, *, dims: Sequence[Hashable]) -> NDArray[n
     return np.ascontiguousarray(ordered.reshape(*ordered.shape[: len(dims)], -1))
 
 
-def summarise_samples(samples: NDArray[np.generic], *, whole: bool = False) -> dict[str, NDArray[np.float64]]:
+def summarise_samples(samples: NDArray[Any], *, whole: bool = False) -> dict[str, NDArray[np.float64]]:
     """Mean, standard deviation and the published quantiles over the last axis.
 
     Parameters
@@ -44,8 +45,9 @@ def summarise_samples(samples: NDArray[np.generic], *, whole: bool = False) -> d
     dict
         Keys ``mean``, ``sd``, ``q05``, ``q25``, ``q50``, ``q75``, ``q95``; each of shape (…).
     """
-    method = "inverted_cdf" if whole else "linear"
-    levels = np.quantile(samples, list(QUANTILES.values()), axis=-1, method=method)
+    levels = np.quantile(
+        samples, list(QUANTILES.values()), axis=-1, method="inverted_cdf" if whole else "linear"
+    )
     summary = {
         "mean": samples.mean(axis=-1, dtype=np.float64),
         "sd": samples.std(axis=-1, dtype=np.float64),
@@ -55,7 +57,7 @@ def summarise_samples(samples: NDArray[np.generic], *, whole: bool = False) -> d
 
 
 def monte_carlo_error(indicator: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Standard error of a mean over correlated draws, by effective sample size.
+    """Estimate the standard error of a mean over correlated draws, by effective sample size.
 
     Where all draws agree there is no spread to measure; the error is then that of the smallest chance the
     number of draws can show.

@@ -90,7 +90,7 @@ def write_folder(
 
 @contextmanager
 def _unfinished_folder(beside: Path) -> Iterator[Path]:
-    """A new hidden folder, gone again unless it was renamed."""
+    """Make a new hidden folder, gone again unless it was renamed."""
     folder = beside / f"{UNFINISHED}{secrets.token_hex(6)}"
     folder.mkdir()
     try:

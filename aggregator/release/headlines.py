@@ -11,9 +11,9 @@ from dataclasses import dataclass
 import pandas as pd
 
 from aggregator.inputs.contest import Contest
-from aggregator.release.codes import Code, contest_codes
 from aggregator.release.likelihood_words import NAMED_LEADER_FROM
 from aggregator.release.rounding import chance_text, date_text, share_interval_text, share_text, whole_text
+from aggregator.release.table_rows import largest_code, likeliest, national_parties
 from aggregator.release.table_schemas import Kind, Level, Outcome
 from aggregator.release.tables import ReleaseTables
 
@@ -62,116 +62,95 @@ def build_headlines(
     )
 
 
-def largest_code(support: pd.DataFrame, *, kind: Kind) -> str:
-    """Party with most support in the country, by its mean: on the day of the run, or on polling day."""
-    return str(national_parties(support, kind=kind)["code"].iloc[0])
-
-
-def national_parties(support: pd.DataFrame, *, kind: Kind) -> pd.DataFrame:
-    """Rows of the parties (not of others) in the country on the last date of a kind, most support first."""
-    rows = support[(support["region"] == "") & (support["kind"] == kind) & (support["level"] == Level.PARTY)]
-    return rows[rows["date"] == rows["date"].max()].sort_values("mean", ascending=False, kind="stable")
-
-
-def chance_of(chances: pd.DataFrame, outcome: Outcome, *, kind: Kind, code: str | None = None) -> pd.Series:
-    """The row of one chance on the last date of a kind; the likeliest code where none is named."""
-    rows = chances[(chances["outcome"] == outcome) & (chances["kind"] == kind)]
-    rows = rows[rows["date"] == rows["date"].max()]
-    if code is not None:
-        rows = rows[rows["code"] == code]
-    return rows.loc[rows["probability"].idxmax()]
-
-
 def _support_sentence(tables: ReleaseTables, contest: Contest) -> str:
     names = contest.party_names
     rows = national_parties(tables.support, kind=Kind.ON_POLLING_DAY)
-    lead = chance_of(tables.chances, Outcome.MOST_SUPPORT, kind=Kind.ON_POLLING_DAY)
+    lead = likeliest(tables.chances, Outcome.MOST_SUPPORT, kind=Kind.ON_POLLING_DAY)
     when = f"On polling day, {date_text(contest.polling_day)},"
     if lead["probability"] >= NAMED_LEADER_FROM:
         row = rows[rows["code"] == lead["code"]].iloc[0]
         return (
-            f"{when} {names[lead['code']]} is {lead['likelihood']} ({chance_text(lead['probability'])}) to have the most "
-            f"support: {_share_and_interval(row)}."
+            f"{when} {names[lead['code']]} is {_worded(lead)} to have the most support: "
+            f"{share_text(row['mean'])} of the vote (90 % interval {_shares(row)})."
         )
     first, second = rows.iloc[0], rows.iloc[1]
     return (
         f"{when} no party is likely to have the most support: {names[first['code']]} stands at "
-        f"{_share_and_interval(first)}, {names[second['code']]} at {_share_and_interval(second, named=False)}."
+        f"{share_text(first['mean'])} of the vote (90 % interval {_shares(first)}), "
+        f"{names[second['code']]} at {share_text(second['mean'])} ({_shares(second)})."
     )
-
-
-def _share_and_interval(row: pd.Series, *, named: bool = True) -> str:
-    label = "90 % interval " if named else ""
-    return f"{share_text(row['mean'])} of the vote ({label}{share_interval_text(row['q05'], row['q95'])})"
 
 
 def _lead_sentence(tables: ReleaseTables, contest: Contest) -> str:
     """For a contest without seats: who would lead if people voted on the day of the run."""
     names = contest.party_names
     rows = national_parties(tables.support, kind=Kind.ON_DATE)
-    day = date_text(rows["date"].iloc[0].date())
-    lead = chance_of(tables.chances, Outcome.MOST_SUPPORT, kind=Kind.ON_DATE)
-    first, second = rows.iloc[0], rows.iloc[1]
+    lead = likeliest(tables.chances, Outcome.MOST_SUPPORT, kind=Kind.ON_DATE)
+    opening = f"If people voted on {date_text(lead['date'].date())},"
     if lead["probability"] >= NAMED_LEADER_FROM:
+        row = rows[rows["code"] == lead["code"]].iloc[0]
         return (
-            f"If people voted on {day}, {names[lead['code']]} would be {lead['likelihood']} "
-            f"({chance_text(lead['probability'])}) to lead; next is {names[(second if lead['code'] == first['code'] else first)['code']]}."
+            f"{opening} {names[lead['code']]} would be {_worded(lead)} to lead, "
+            f"with {share_text(row['mean'])} of the vote (90 % interval {_shares(row)})."
         )
-    return f"If people voted on {day}, neither {names[first['code']]} nor {names[second['code']]} would be likely to lead."
+    first, second = (names[code] for code in rows["code"].iloc[:2])
+    return f"{opening} neither {first} nor {second} would be likely to lead."
 
 
 def _seats_sentence(
     tables: ReleaseTables, seats: pd.DataFrame, contest: Contest, chamber: int, majority: int
 ) -> str:
-    names = {code.code: code.name for code in contest_codes(contest)}
+    names = contest.party_names
     rows = seats[(seats["kind"] == Kind.ON_POLLING_DAY) & (seats["level"] == Level.PARTY)]
     rows = rows.sort_values("mean", ascending=False, kind="stable")
-    first, second = rows.iloc[0], rows.iloc[1]
-    largest = chance_of(tables.chances, Outcome.LARGEST, kind=Kind.ON_POLLING_DAY)
+    largest = likeliest(tables.chances, Outcome.LARGEST, kind=Kind.ON_POLLING_DAY)
     if largest["probability"] >= NAMED_LEADER_FROM:
         row = rows[rows["code"] == largest["code"]].iloc[0]
         opening = (
-            f"On polling day {names[largest['code']]} is {largest['likelihood']} ({chance_text(largest['probability'])}) to "
-            f"win the most seats: {_seats_and_interval(row)} of {whole_text(chamber)}"
+            f"On polling day {names[largest['code']]} is {_worded(largest)} to win the most seats: "
+            f"{whole_text(row['mean'])} of {whole_text(chamber)} (90 % interval {_seats(row)})"
         )
     else:
+        first, second = rows.iloc[0], rows.iloc[1]
         opening = (
-            f"On polling day no party is likely to win the most seats: {names[first['code']]} is expected to win "
-            f"{_seats_and_interval(first)} of {whole_text(chamber)}, {names[second['code']]} {_seats_and_interval(second, named=False)}"
+            "On polling day no party is likely to win the most seats: "
+            f"{names[first['code']]} is expected to win {whole_text(first['mean'])} of {whole_text(chamber)} "
+            f"(90 % interval {_seats(first)}), "
+            f"{names[second['code']]} {whole_text(second['mean'])} ({_seats(second)})"
         )
-    return f"{opening}; {_majority_clause(tables.chances, names, majority, contest_codes(contest))}."
+    return f"{opening}; {_majority_clause(tables.chances, contest, majority)}."
 
 
-def _majority_clause(
-    chances: pd.DataFrame, names: dict[str, str], majority: int, codes: tuple[Code, ...]
-) -> str:
-    alone = chance_of(chances, Outcome.MAJORITY_ALONE, kind=Kind.ON_POLLING_DAY)
-    clause = (
-        f"that {names[alone['code']]} alone has a majority ({whole_text(majority)}) is {alone['likelihood']} "
-        f"({chance_text(alone['probability'])})"
-    )
-    there = set(chances.loc[(chances["kind"] == Kind.ON_POLLING_DAY), "code"])
-    if any(code.level is Level.ALLIANCE and code.code in there for code in codes):
-        together = chance_of(chances, Outcome.MAJORITY_ONLY_AS_ALLIANCE, kind=Kind.ON_POLLING_DAY)
-        clause += (
-            f", and that only the {names[together['code']]} together has one is {together['likelihood']} "
-            f"({chance_text(together['probability'])})"
-        )
-    return clause
-
-
-def _seats_and_interval(row: pd.Series, *, named: bool = True) -> str:
-    label = "90 % interval " if named else ""
-    return f"{whole_text(row['mean'])} seats ({label}{whole_text(row['q05'])} to {whole_text(row['q95'])})"
+def _majority_clause(chances: pd.DataFrame, contest: Contest, majority: int) -> str:
+    alone = likeliest(chances, Outcome.MAJORITY_ALONE, kind=Kind.ON_POLLING_DAY)
+    party = contest.party_names[alone["code"]]
+    clause = f"a majority of {whole_text(majority)} for {party} alone is {_worded(alone)}"
+    alliances = {a.code: a.name for a in contest.alliances if a.active_on(contest.polling_day)}
+    if not alliances:
+        return clause
+    together = likeliest(chances, Outcome.MAJORITY_ONLY_AS_ALLIANCE, kind=Kind.ON_POLLING_DAY)
+    return f"{clause}, one that only {alliances[together['code']]} as a whole reaches is {_worded(together)}"
 
 
 def _worth_sentence(tables: ReleaseTables, contest: Contest) -> str:
     code = largest_code(tables.support, kind=Kind.ON_DATE)
     rows = tables.shelf_life[tables.shelf_life["code"] == code]
-    row = rows.loc[(rows["age_days"] - MONTH_DAYS).abs().idxmin()]
+    row = rows.iloc[int((rows["age_days"] - MONTH_DAYS).abs().argmin())]
     age = int(row["age_days"])
     ago = "a month ago" if 28 <= age <= 31 else f"{age} days ago"
     return (
-        f"On these polls, a poll of {whole_text(POLL_SIZE)} taken {ago} now tells as much about {contest.party_names[code]} as "
-        f"{whole_text(row['worth_today'])} people asked today."
+        f"On these polls, a poll of {whole_text(POLL_SIZE)} taken {ago} now tells as much about "
+        f"{contest.party_names[code]} as {whole_text(row['worth_today'])} people asked today."
     )
+
+
+def _worded(chance: pd.Series) -> str:
+    return f"{chance['likelihood']} ({chance_text(chance['probability'])})"
+
+
+def _shares(row: pd.Series) -> str:
+    return share_interval_text(row["q05"], row["q95"])
+
+
+def _seats(row: pd.Series) -> str:
+    return f"{whole_text(row['q05'])} to {whole_text(row['q95'])}"

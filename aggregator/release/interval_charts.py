@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Hashable, Sequence
+from typing import Any
 
 import altair as alt
 import numpy as np
@@ -58,7 +59,7 @@ def _house_panel(
     width: int,
     first: bool,
     layout: Layout,
-) -> alt.LayerChart:
+) -> alt.LayerChart | alt.FacetChart:
     rows = rows[["house", "code", "lean", "q05", "q95", "polls"]]
     y = alt.Y(
         "house:N",
@@ -89,7 +90,7 @@ def _house_panel(
     )
     base = alt.Chart(rows).encode(y=y, color=colour_of(looks))
     interval = base.mark_rule(strokeWidth=2).encode(x=alt.X("q05:Q", scale=scale, axis=x_axis), x2="q95:Q")
-    dot = base.mark_point(size=44, filled=True, opacity=1, stroke="white", strokeWidth=0.8).encode(
+    dot = base.mark_point(size=58, filled=True, opacity=1, stroke="white", strokeWidth=0.8).encode(
         x=alt.X("lean:Q", scale=scale, axis=x_axis), shape=shape_of(looks)
     )
     title = alt.TitleParams(
@@ -113,7 +114,7 @@ def _round_ticks(reach: float) -> list[float]:
 
 def build_seats_chart(
     seats: pd.DataFrame, *, looks: Sequence[CodeLook], chamber: int, majority: int, layout: Layout
-) -> alt.LayerChart:
+) -> alt.LayerChart | alt.FacetChart:
     """Seats on polling day: parties first, largest at the top, alliances below, with the majority line.
 
     Parameters
@@ -130,9 +131,7 @@ def build_seats_chart(
     rows = rows.assign(
         alliance=rows["level"] == Level.ALLIANCE,
         name=rows["code"].map(names),
-        label=[
-            f"{whole_text(r.mean)} ({whole_text(r.q05)} to {whole_text(r.q95)})" for r in rows.itertuples()
-        ],
+        label=[_mean_and_interval(row) for row in rows.to_dict("records")],
     ).sort_values(["alliance", "mean"], ascending=[True, False], kind="stable")
     number_room = 100 if layout.long_names else 84
     name_room = 180 if layout.long_names else 96
@@ -140,7 +139,7 @@ def build_seats_chart(
     top = max(float(rows["q95"].max()), majority * 1.05)
     scale = alt.Scale(domain=[0, min(top * 1.02, chamber)], nice=False)
     axis = alt.Axis(title="seats", grid=True, ticks=False, tickCount=6, domain=False)
-    base = alt.Chart(rows[["name", "code", "q05", "q25", "q50", "q75", "q95", "label"]]).encode(
+    base = alt.Chart(rows[["name", "code", "mean", "q05", "q25", "q75", "q95", "label"]]).encode(
         y=alt.Y(
             "name:N",
             sort=list(rows["name"]),
@@ -164,9 +163,13 @@ def build_seats_chart(
             x=alt.X("q25:Q", scale=scale, axis=axis), x2="q75:Q"
         ),
         base.mark_point(size=70, filled=True, opacity=1, stroke="white", strokeWidth=1).encode(
-            x=alt.X("q50:Q", scale=scale, axis=axis), shape=shape_of(looks)
+            x=alt.X("mean:Q", scale=scale, axis=axis), shape=shape_of(looks)
         ),
         base.mark_text(align="left", fontSize=layout.font_size).encode(
             x=alt.value(width + 10), text="label:N", color=alt.value(INK)
         ),
     ).properties(width=width, height=(ROW + 10) * len(rows))
+
+
+def _mean_and_interval(row: dict[Hashable, Any]) -> str:
+    return f"{whole_text(row['mean'])} ({whole_text(row['q05'])} to {whole_text(row['q95'])})"

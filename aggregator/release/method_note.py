@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+from collections import Counter
 from collections.abc import Iterator, Mapping
 from html import escape
 from pathlib import Path
@@ -29,7 +31,7 @@ def build_method_note(contents: ReleaseContents) -> str:
     )
     environment.filters |= {"md": inert_markdown, "day": date_text, "whole": whole_text}
     unused = contents.inputs.unused_polls
-    reasons = {} if unused.empty else unused["why_not"].astype(str).value_counts(sort=False).to_dict()
+    reasons = Counter(reason_without_days(reason) for reason in unused["why_not"].astype(str))
     return environment.get_template("method.md.j2").render(
         contents=contents,
         contest=contents.contest,
@@ -42,6 +44,11 @@ def build_method_note(contents: ReleaseContents) -> str:
     )
 
 
+def reason_without_days(reason: str) -> str:
+    """Drop the days from a reason, so that one reason on many days is one line of the note."""
+    return re.sub(r"\d{4}-\d{2}-\d{2}", "…", reason).rstrip(".")
+
+
 def inert_markdown(text: object) -> str:
     """Text that Markdown shows as it is: no markup, no table cell, no new line, no tag."""
     flat = " ".join(escape(str(text), quote=False).split())
@@ -51,7 +58,7 @@ def inert_markdown(text: object) -> str:
 
 
 def flat_settings(settings: Mapping[str, object], *, prefix: str = "") -> Iterator[tuple[str, str]]:
-    """Settings as name and value, a nested one named ``outer.inner``."""
+    """List settings as name and value, a nested one named ``outer.inner``."""
     for name, value in settings.items():
         if isinstance(value, Mapping):
             yield from flat_settings(value, prefix=f"{prefix}{name}.")

@@ -47,6 +47,7 @@ def build_page(contents: ReleaseContents, *, charts: Sequence[DrawnChart], metho
         trim_blocks=True,
         lstrip_blocks=True,
         autoescape=True,
+        finalize=keep_percent_together,
     )
     environment.filters |= {"day": date_text, "whole": whole_text}
     latest, older = polls_tables(contents)
@@ -73,21 +74,28 @@ def build_page(contents: ReleaseContents, *, charts: Sequence[DrawnChart], metho
             MarkdownIt("commonmark", {"html": False})
             .enable("table")
             .render(_below_page_headings(method_note))
-        ),  # noqa: S704
+        ),
+    )
+
+
+def keep_percent_together(value: object) -> object:
+    """Keep a number and its percent sign on one line."""
+    return (
+        value.replace(" %", "\u00a0%") if isinstance(value, str) and not isinstance(value, Markup) else value
     )
 
 
 def _markup(drawn: DrawnChart) -> dict[str, object]:
     return {
-        "wide": Markup(drawn.wide),  # noqa: S704
-        "narrow": Markup(drawn.narrow),  # noqa: S704
+        "wide": Markup(drawn.wide),
+        "narrow": Markup(drawn.narrow),
         "name": drawn.chart.name,
         "alt": drawn.chart.alt_text,
     }
 
 
 def public_warning(problem: Problem) -> str:
-    """A finding as a reader of the page may see it: the place and what was found, without what the desk is to do."""
+    """Word a finding for readers of the page: the place and what was found, not what the desk is to do."""
     place = problem.file
     if problem.row is not None:
         place += f", row {problem.row}"
@@ -97,6 +105,6 @@ def public_warning(problem: Problem) -> str:
 
 
 def _below_page_headings(note: str) -> str:
-    """The note one heading level down, without its title: the page has its own."""
+    """Move the note one heading level down and drop its title: the page has its own."""
     lines = [line for line in note.splitlines() if not line.startswith("# ")]
     return "\n".join(f"#{line}" if line.startswith("## ") else line for line in lines)

@@ -110,4 +110,5 @@ def build_polls_weighed_table(
 def _by_poll(polls_worth: pd.DataFrame, column: str) -> dict[str, float]:
     if column not in polls_worth.columns:
         return {}
-    return polls_worth.drop_duplicates("poll").set_index("poll")[column].to_dict()
+    first = polls_worth.drop_duplicates("poll")
+    return dict(zip(first["poll"].astype(str), first[column].astype(float), strict=True))

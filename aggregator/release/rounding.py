@@ -48,7 +48,7 @@ def round_chance(frequency: ArrayLike, *, samples: int) -> NDArray[np.float64]:
 
 
 def chance_text(probability: float) -> str:
-    """A chance in whole percent, ``<1 %`` and ``>99 %`` at the ends.
+    """Write a chance in whole percent, ``<1 %`` and ``>99 %`` at the ends.
 
     Rounding never carries a chance into the band of another likelihood word: 0.896 is "likely" and reads
     89 %, not 90 %, which would be "very likely".
@@ -64,27 +64,27 @@ def chance_text(probability: float) -> str:
 
 
 def share_text(percent: float, *, unit: bool = True) -> str:
-    """A share given in percent, with one decimal."""
+    """Write a share given in percent, with one decimal."""
     return f"{percent:.{SHARE_DECIMALS_TEXT}f}" + (" %" if unit else "")
 
 
 def share_interval_text(low: float, high: float) -> str:
-    """An interval of shares given in percent, such as ``27.9 to 35.0 %``."""
+    """Write an interval of shares given in percent, such as ``27.9 to 35.0 %``."""
     return f"{share_text(low, unit=False)} to {share_text(high)}"
 
 
 def points_text(points: float) -> str:
-    """A difference of shares in points, with its sign; a true minus sign, and no sign on zero."""
+    """Write a difference of shares in points, with its sign; a true minus sign, and no sign on zero."""
     rounded = round(points, SHARE_DECIMALS_TEXT)
     sign = "+" if rounded > 0 else "−" if rounded < 0 else ""
     return f"{sign}{abs(rounded):.{SHARE_DECIMALS_TEXT}f}"
 
 
 def whole_text(number: float) -> str:
-    """A count (seats, people) as a whole number with thousands commas."""
+    """Write a count (seats, people) as a whole number with thousands commas."""
     return f"{round(number):,}"
 
 
 def date_text(day: date) -> str:
-    """A day as read aloud: ``18 May 2031``."""
+    """Write a day as it is read aloud: ``18 May 2031``."""
     return f"{day.day} {day:%B %Y}"

@@ -9,8 +9,9 @@ import pandas as pd
 import xarray as xr
 
 from aggregator.inputs.contest import Contest
+from aggregator.release.code_summaries import summarise_codes
 from aggregator.release.codes import Code
-from aggregator.release.draw_summaries import stack_samples, summarise_samples
+from aggregator.release.draw_summaries import stack_samples
 from aggregator.release.rounding import round_chance
 from aggregator.release.table_schemas import SEAT_CHANCES, SEATS, Kind
 from models.dimensions import CHAIN, DATE, DRAW, PARTY, SEAT
@@ -43,29 +44,25 @@ def build_seats_table(seats: xr.Dataset, *, contest: Contest, codes: Sequence[Co
     pandas.DataFrame
         Columns of the schema ``SEATS``.
     """
-    dated = [
-        (pd.Timestamp(day).date(), Kind.ON_DATE, seats["seats"].sel({DATE: day}))
-        for day in seats[DATE].values
-    ]
-    dated.append((contest.polling_day, Kind.ON_POLLING_DAY, seats["seats_polling_day"]))
-    blocks = []
-    for day, kind, drawn in dated:
-        there = [code for code in codes if code.exists_on(day)]
-        samples = np.stack(
-            [stack_samples(drawn.sel({PARTY: list(code.members)}).sum(PARTY), dims=()) for code in there]
-        )
-        blocks.append(
-            pd.DataFrame(
-                {
-                    "date": np.datetime64(day, "s"),
-                    "code": [code.code for code in there],
-                    "level": [code.level.value for code in there],
-                    "kind": kind.value,
-                    **summarise_samples(samples, whole=True),
-                }
-            )
-        )
-    return pd.concat(blocks, ignore_index=True)[list(SEATS.column_names)]
+    parties = [str(code) for code in seats[PARTY].values]
+    days = [pd.Timestamp(day).date() for day in seats[DATE].values]
+    over_time = summarise_codes(
+        stack_samples(seats["seats"], dims=(DATE, PARTY)),
+        days=days,
+        parties=parties,
+        codes=codes,
+        kind=Kind.ON_DATE,
+        whole=True,
+    )
+    final = summarise_codes(
+        stack_samples(seats["seats_polling_day"], dims=(PARTY,))[None],
+        days=[contest.polling_day],
+        parties=parties,
+        codes=codes,
+        kind=Kind.ON_POLLING_DAY,
+        whole=True,
+    )
+    return pd.concat([over_time, final], ignore_index=True)[list(SEATS.column_names)]
 
 
 def build_seat_chances_table(seats: xr.Dataset) -> pd.DataFrame:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterator
 from pathlib import Path
 
 import numpy as np
@@ -46,28 +46,34 @@ def check_table(table: pd.DataFrame, *, schema: TableSchema) -> None:
         raise SchemaError(f"{schema.path}: " + "; ".join(faults))
 
 
-def _column_faults(cells: pd.Series, column: Column) -> Iterable[str]:
-    blank = cells.isna() | (cells.astype(str) == "")
-    if column.blank is None and bool(blank.any()):
-        yield f"column {column.name} has {int(blank.sum())} blank cell(s), the first in data row {int(np.argmax(blank)) + 1}"
+def _column_faults(cells: pd.Series, column: Column) -> Iterator[str]:
+    label = f"column {column.name}"
+    blank = cells.isna()
+    if not pd.api.types.is_numeric_dtype(cells) and column.type is not ColumnType.DATE:
+        blank |= cells.astype(str) == ""
     filled = cells[~blank]
-    if column.allowed and not set(filled.astype(str)) <= set(column.allowed):
-        yield f"column {column.name} holds {sorted(set(filled.astype(str)) - set(column.allowed))}, allowed are {list(column.allowed)}"
+    if column.blank is None and bool(blank.any()):
+        first = int(np.argmax(blank.to_numpy())) + 1
+        yield f"{label} has {int(blank.sum())} blank cell(s), the first in data row {first}"
+    if column.allowed:
+        strange = sorted(set(filled.astype(str)) - set(column.allowed))
+        if strange:
+            yield f"{label} holds {strange}, allowed are {list(column.allowed)}"
     if column.type is ColumnType.DATE and not pd.api.types.is_datetime64_any_dtype(cells):
-        yield f"column {column.name} holds {cells.dtype}, not dates"
+        yield f"{label} holds {cells.dtype}, not dates"
     if column.bounds is not None and len(filled):
-        values = filled.astype(float)
-        if values.min() < column.bounds.low or values.max() > column.bounds.high:
-            yield f"column {column.name} runs from {values.min()} to {values.max()}, outside {column.bounds.low} to {column.bounds.high}"
+        low, high = filled.astype(float).min(), filled.astype(float).max()
+        if low < column.bounds.low or high > column.bounds.high:
+            yield f"{label} runs from {low} to {high}, outside {column.bounds.low} to {column.bounds.high}"
 
 
 def inert_cell(text: str) -> str:
-    """Text that a spreadsheet shows as it is: an apostrophe goes before anything that would start a formula."""
+    """Put an apostrophe before a text that a spreadsheet would run as a formula."""
     return f"'{text}" if text.startswith(STARTS_A_FORMULA) else text
 
 
 def csv_text(table: pd.DataFrame, *, schema: TableSchema, caution: str | None) -> str:
-    """A checked table as CSV text.
+    """Write a checked table as CSV text.
 
     Parameters
     ----------
@@ -86,9 +92,11 @@ def csv_text(table: pd.DataFrame, *, schema: TableSchema, caution: str | None) -
 
 def _cells(cells: pd.Series, column: Column) -> list[str]:
     if column.type is ColumnType.DATE:
-        return ["" if pd.isna(day) else day.strftime("%Y-%m-%d") for day in cells]
+        return cells.dt.strftime("%Y-%m-%d").fillna("").tolist()
     if column.decimals is not None:
-        return ["" if np.isnan(value) else f"{value:.{column.decimals}f}" for value in cells.astype(float)]
+        return [
+            "" if np.isnan(value) else f"{value:.{column.decimals}f}" for value in cells.to_numpy(np.float64)
+        ]
     texts = ["" if pd.isna(cell) else str(cell) for cell in cells]
     return [inert_cell(text) for text in texts] if column.from_register else texts
 

@@ -145,7 +145,8 @@ _LEVEL = Column(
     "level",
     ColumnType.TEXT,
     "–",
-    "What `code` stands for. `party` and `others` together make the whole; an alliance counts its members again",
+    "What `code` stands for. `party` and `others` together make the whole; an alliance counts its members "
+    "again",
     allowed=tuple(Level),
 )
 _KIND = Column(
@@ -209,9 +210,9 @@ CHANCES = TableSchema(
             ColumnType.TEXT,
             "–",
             "`most_support`: more votes than any other party. `largest`: more seats than any other party. "
-            "`majority_alone`: reaches the majority line by itself. `majority_only_as_alliance`: the alliance reaches it and "
-            "no member does alone. `no_majority`: neither a party nor an alliance reaches it. `OTH` is not a party: it leads "
-            "nothing and has no majority",
+            "`majority_alone`: reaches the majority line by itself. `majority_only_as_alliance`: the "
+            "alliance reaches it and no member does alone. `no_majority`: neither a party nor an alliance "
+            "reaches it. `OTH` is not a party: it leads nothing and has no majority",
             allowed=tuple(Outcome),
         ),
         Column(
@@ -224,7 +225,8 @@ CHANCES = TableSchema(
         _number(
             "probability",
             "0 to 1",
-            "Chance of the outcome: (k + ½)/(S + 1) for k of S draws, so never 0 or 1. A tie for the lead counts in equal parts",
+            "Chance of the outcome: (k + ½)/(S + 1) for k of S draws, so never 0 or 1. A tie for the lead "
+            "counts in equal parts",
             decimals=CHANCE_DECIMALS,
             bounds=PROBABILITY,
         ),
@@ -279,7 +281,8 @@ HOUSES = TableSchema(
         _number(
             "lean",
             "percentage points",
-            "What the house reports minus what the average of the houses would report (posterior mean). A difference, not an error",
+            "What the house reports minus what the average of the houses would report (posterior mean). "
+            "A difference, not an error",
             bounds=Bounds(-100.0, 100.0),
         ),
         _number(
@@ -295,7 +298,8 @@ HOUSES = TableSchema(
         _number(
             "design_effect",
             "ratio",
-            "Posterior mean of the variance of a poll of the house's usual size, over that of a simple random sample of that size",
+            "Posterior mean of the variance of a poll of the house's usual size, over that of a simple "
+            "random sample of that size",
             bounds=ANY_COUNT,
         ),
         _whole("usual_sample", "respondents", "The house's usual sample size"),
@@ -303,8 +307,10 @@ HOUSES = TableSchema(
 )
 
 _WORTH = {
-    "worth_today": "Fresh respondents of the same house, asked on the day of the run, that would tell as much about support on that day",
-    "worth_polling_day": "Respondents interviewed on polling day that would tell as much about support on polling day",
+    "worth_today": "Fresh respondents of the same house, asked on the day of the run, that would tell as "
+    "much about support on that day",
+    "worth_polling_day": "Respondents interviewed on polling day that would tell as much about support "
+    "on polling day",
 }
 
 SHELF_LIFE = TableSchema(
@@ -314,7 +320,7 @@ SHELF_LIFE = TableSchema(
         _whole(
             "age_days",
             "days",
-            "Age of a poll of 1,000 respondents on the day of the run; for `expected_error`, days before polling day",
+            "Age of a poll of 1,000 respondents of a typical house, on the day of the run",
         ),
         _CODE,
         _LEVEL,
@@ -322,17 +328,17 @@ SHELF_LIFE = TableSchema(
             _number(
                 f"{name}{end}",
                 "respondents",
-                f"{meaning}: posterior {word}",
+                f"{meaning}: {word} over the draws",
                 decimals=0,
                 bounds=ANY_COUNT,
             )
             for name, meaning in _WORTH.items()
-            for end, word in (("", "mean"), ("_q05", "5 % quantile"), ("_q95", "95 % quantile"))
+            for end, word in (("", "median"), ("_q05", "5 % quantile"), ("_q95", "95 % quantile"))
         ),
         _number(
             "expected_error",
             "percentage points",
-            "Root mean square error to expect, on polling day, of a poll of this age",
+            "Root mean square error to expect of that poll's own figure against the result on polling day",
         ),
         _number(
             "error_sampling",
@@ -372,7 +378,8 @@ POLLS_USED = TableSchema(
         _number(
             "worth_today",
             "respondents",
-            "Fresh respondents of the same house that would tell as much today about the code with most support",
+            "Fresh respondents of the same house that would tell as much today about the party with most "
+            "support",
             decimals=0,
             bounds=ANY_COUNT,
             blank="not worked out",
@@ -409,7 +416,8 @@ POLLS_WEIGHED = TableSchema(
         _number(
             "pareto_k",
             "–",
-            "Pareto shape of the poll's importance weights: above 0.7 the model finds the poll hard to foresee; read it again",
+            "Pareto shape of the poll's importance weights: above 0.7 the model finds the poll hard to "
+            "foresee; read it again",
             bounds=Bounds(float("-inf"), float("inf")),
             blank="not worked out",
         ),
