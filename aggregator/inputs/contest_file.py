@@ -10,7 +10,7 @@ from typing import Any, get_args
 from pydantic import BaseModel, ValidationError
 from pydantic.fields import FieldInfo
 
-from aggregator.inputs.close_spelling import did_you_mean
+from aggregator.inputs.close_spelling import close_spelling, did_you_mean
 from aggregator.inputs.contest import FIRST_DAY, LAST_DAY, Contest
 from aggregator.inputs.reading_rules import Rule
 from aggregator.problems import Problem
@@ -49,8 +49,7 @@ def read_contest(data: bytes) -> tuple[Contest | None, list[Problem]]:
         return Contest.model_validate(raw), []
     except ValidationError as error:
         details = error.errors()
-    problems = [_as_problem(d) for d in details]
-    return _rough_contest(raw, details), problems
+    return _rough_contest(raw, details), _as_problems(details)
 
 
 def _not_toml(message: str) -> Problem:
@@ -96,6 +95,16 @@ def _field_at(location: tuple[str | int, ...]) -> tuple[type[BaseModel], FieldIn
             return table, field
         table = inner
     return table, field
+
+
+def _as_problems(details: list[Any]) -> list[Problem]:
+    """Make findings; a needed key that stands there misspelt is one finding, not two."""
+    misspelt = {
+        (*d["loc"][:-1], close_spelling(str(d["loc"][-1]), known_keys(_field_at(d["loc"])[0])))
+        for d in details
+        if d["type"] == "extra_forbidden"
+    }
+    return [_as_problem(d) for d in details if d["type"] != "missing" or tuple(d["loc"]) not in misspelt]
 
 
 def _as_problem(detail: Any) -> Problem:

@@ -16,7 +16,9 @@ from aggregator.inputs.contest_checks import check_contest
 from aggregator.inputs.contest_file import CONTEST_FILE, read_contest
 from aggregator.inputs.counting_checks import settle_counting
 from aggregator.inputs.desk_inputs import DeskInputs
+from aggregator.inputs.finding_causes import without_consequences
 from aggregator.inputs.fingerprints import Fingerprint, fingerprint
+from aggregator.inputs.gathered_findings import gather_habits
 from aggregator.inputs.last_result import read_last_result
 from aggregator.inputs.poll_breakdowns import check_breakdowns
 from aggregator.inputs.poll_register import read_poll_rows
@@ -91,12 +93,14 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
     problems += more
     last_result, more = _read_result(folder, read, contest)
     problems += more + _check_unread(folder, contest)
+    problems = without_consequences(problems)
     if contest is None or not sound or register is None:
         raise InputError(_in_order(problems, read))
     if last_result is not None or contest.last_result is None:
         contest, more = settle_counting(contest, last_result=last_result)
         problems += more
-    problems += [p for row in register.rows for p in check_span(row, contest=contest, file=register.file)]
+    if not any(p.rule is Rule.POLLING_DAYS and p.severity is Severity.ERROR for p in problems):
+        problems += [p for row in register.rows for p in check_span(row, contest=contest, file=register.file)]
     entering, unused = select_rows(register.rows, contest=contest, as_of=as_of)
     run_day = choose_run_day(register.rows, entering=entering, contest=contest, as_of=as_of, today=today)
     kept, more = check_windows(entering, file=register.file)
@@ -115,6 +119,7 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
         entering, shares=shares, contest=contest, last_result=last_result, file=register.file
     )
     out = {row.row for row, _ in unused}
+    problems = gather_habits(problems, house_of_row={row.row: row.house for row in register.rows})
     polls = build_polls(entering, shares=shares, kept=kept, contest=contest)
     return DeskInputs(
         folder=folder,

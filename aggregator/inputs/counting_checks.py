@@ -37,7 +37,8 @@ def settle_counting(contest: Contest, *, last_result: pd.DataFrame | None) -> tu
                 "Add the column seat to the last result, or count by another rule (none: votes only).",
             )
         )  # fmt: skip
-    elif rule is CountingRule.PLURALITY and counting.seats not in (None, listed):
+        return contest, problems
+    if rule is CountingRule.PLURALITY and counting.seats not in (None, listed):
         problems.append(
             _problem(
                 "counting.seats", str(counting.seats), f"{listed}, the seats listed in the last result",

@@ -42,7 +42,7 @@ def read_last_result(table: SheetTable, *, contest: Contest) -> tuple[pd.DataFra
     votes, found = read_numbers(table, kinds=dict.fromkeys(codes, NumberKind.COUNT))
     problems += found
     problems += _check_votes(table, votes)
-    if any(p.rule is Rule.COLUMN_NEEDED for p in problems):
+    if len(contest.regions) > 1 and "region" not in table.columns:
         return None, problems
     problems += _check_places(table, contest)
     rows = [

@@ -63,15 +63,15 @@ def _check_overlap(group: list[PollRow], file: str) -> Iterator[Problem]:
     for i, row in enumerate(votes):
         for earlier in votes[:i]:
             if earlier.national and row.national:
-                found, both = "a second row for the whole country", "the whole country once"
+                found, expected = "the whole country a second time", "one row of a poll for the whole country"
             elif row.national or earlier.national or not set(row.regions) & set(earlier.regions):
                 continue
             else:
                 twice = "+".join(r for r in row.regions if r in earlier.regions)
-                found, both = f"{twice} a second time", "each region in one row"
+                found, expected = f"{twice} a second time", "each region in one row of a poll"
             yield Problem(
                 file, row.row, "region", f"{found} (row {earlier.row} has it too; poll {row.poll})",
-                f"{both} of a poll", "Correct the region, or give the polls different identifiers in poll.",
+                expected, "Correct the region, or give the polls different identifiers in poll.",
                 Rule.BREAKDOWN_OVERLAP,
             )  # fmt: skip
 

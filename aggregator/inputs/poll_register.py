@@ -54,15 +54,15 @@ def read_poll_rows(
                 Rule.TABLE_EMPTY,
             )
         )  # fmt: skip
-    if any(p.rule in (Rule.COLUMN_NEEDED, Rule.TOO_FEW_CODES) for p in problems):
+    if any(c not in table.columns for c in REGISTER_NEEDED) or len(codes) < 2:
         return [], frozenset(), problems
     kinds = dict.fromkeys([*codes, "undecided"], NumberKind.PERCENT)
     kinds |= {"sample": NumberKind.COUNT, "effective": NumberKind.QUANTITY}
     numbers, number_problems = read_numbers(table, kinds=kinds)
     days, day_problems = read_dates(table, columns=REGISTER_DATES)
     problems += number_problems + day_problems
-    broken = {p.row for p in problems if p.row is not None and p.severity is Severity.ERROR}
     problems += _check_identical(table)
+    broken = {p.row for p in problems if p.row is not None and p.severity is Severity.ERROR}
     rows, broken_polls = [], set()
     for sheet_row in table.rows:
         row, found = _read_row(

@@ -58,7 +58,7 @@ def check_span(row: PollRow, *, contest: Contest, file: str) -> list[Problem]:
         problems.append(
             Problem(
                 file, row.row, "end", row.end.isoformat(), f"a day after the last election ({last.date})",
-                "The poll is left out; check the year.", Rule.EARLIER_CONTEST, Severity.WARNING,
+                "It is left out; check the year.", Rule.EARLIER_CONTEST, Severity.WARNING,
             )
         )  # fmt: skip
     elif last is not None and row.start <= last.date:

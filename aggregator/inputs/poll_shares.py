@@ -197,8 +197,8 @@ def _no_remainder(
             file, row.row, None, found, f"at most {base:.6g}", remedy, Rule.SUM_OFF, Severity.WARNING
         )
     return Problem(
-        file, row.row, None, f"{found} although {', '.join(sorted(not_asked))} have no figure",
-        "something left for them",
+        file, row.row, None, f"{found}, with no figure for {', '.join(sorted(not_asked))}",
+        "something left for that",
         "The row is read as shares among the codes given; fill in 0 where a code was offered and not chosen.",
         Rule.NO_REMAINDER, Severity.WARNING,
     )  # fmt: skip

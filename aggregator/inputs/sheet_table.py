@@ -6,7 +6,7 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import date
 
-from aggregator.inputs.close_spelling import did_you_mean
+from aggregator.inputs.close_spelling import close_spelling, did_you_mean
 from aggregator.inputs.reading_rules import Rule
 from aggregator.problems import Problem
 
@@ -84,8 +84,9 @@ def build_table(
         width = len(row)
         while width > len(header) and row[width - 1] == "":
             width -= 1
-        if width > len(header) or (check_width and len(row) < len(header)):
-            problems.append(_wrong_width(file, number, width=min(width, len(row)), expected=len(header)))
+        # A text row one cell too long may end in blanks and hide that its cells have moved by one.
+        if width > len(header) or (check_width and len(row) not in (len(header), len(header_cells))):
+            problems.append(_wrong_width(file, number, width=len(row), expected=len(header)))
             continue
         rows.append(
             SheetRow(number, {c: v for c, v in zip(header, row, strict=False) if c != "" and v != ""})
@@ -141,12 +142,13 @@ def check_columns(
         for column in table.columns
         if column not in known
     ]  # fmt: skip
+    meant = {close_spelling(c, known) for c in table.columns if c not in known}
     problems += [
         Problem(
             table.file, 1, column, "no such column", "a column of this name",
             f"Add the column {column} to the header and fill it in.", Rule.COLUMN_NEEDED,
         )
         for column in needed
-        if column not in table.columns
+        if column not in table.columns and column not in meant
     ]  # fmt: skip
     return problems

@@ -88,6 +88,8 @@ def _read_text_cells(data: bytes, *, file: str) -> tuple[list[list[Cell]] | None
     # Spreadsheet programs may write a first line "sep=;": it counts as a row but is no header.
     declared = text[4] if text[:4].casefold() == "sep=" and text[4:5] in SEPARATORS else None
     skipped = 1 if declared else 0
+    if not text.strip(_INVISIBLE + " ,;\t\n"):
+        return [], problems
     separator = declared or _separator(text)
     if separator is None:
         problems.append(

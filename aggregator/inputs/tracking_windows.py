@@ -55,8 +55,8 @@ def _days(row: PollRow) -> list[date]:
 
 def _overlap(row: PollRow, earlier: PollRow, shared: int, days: int, file: str) -> Problem:
     found = (
-        f"{row.poll} ({row.start} to {row.end}) shares {shared} of {days} day(s) of fieldwork "
-        f"with {earlier.poll} of the same house (row {earlier.row}, {earlier.start} to {earlier.end})"
+        f"{shared} of {days} day(s) of {row.poll} ({row.start} to {row.end}) already in {earlier.poll} "
+        f"(row {earlier.row}, {earlier.start} to {earlier.end}) of the same house"
     )
     if shared == days:
         return Problem(
@@ -66,6 +66,6 @@ def _overlap(row: PollRow, earlier: PollRow, shared: int, days: int, file: str) 
         )  # fmt: skip
     return Problem(
         file, row.row, None, found, "interviews that are counted once",
-        f"Only {days - shared} of {days} parts of its respondents are counted.",
+        "The respondents of the shared days are counted in the earlier poll only.",
         Rule.WINDOWS_OVERLAP, Severity.WARNING,
     )  # fmt: skip

@@ -74,10 +74,11 @@ def _check_lost_values(data: bytes, *, file: str, sheet: str) -> list[Problem]:
         for _, element in ElementTree.iterparse(part):
             if element.tag != _MAIN + "c":
                 continue
-            value = element.findtext(_MAIN + "v")
-            if element.get("t") == "e":
+            value, kind = element.findtext(_MAIN + "v"), element.get("t")
+            if kind == "e":
                 found = f"the error {value}"
-            elif element.find(_MAIN + "f") is not None and value is None:
+            # A formula may well come to an empty text (t="str"); no value at all was never computed.
+            elif element.find(_MAIN + "f") is not None and not value and kind != "str":
                 found = "a formula without a computed value"
             else:
                 continue
