@@ -16,14 +16,23 @@ def write_contest_folder(election: MadeUpElection, folder: Path) -> None:
     folder.mkdir(parents=True, exist_ok=True)
     (folder / "contest.toml").write_text(contest_text(election.scenery), encoding="utf-8")
     write_table(election.polls.dropna(axis="columns", how="all"), folder / "polls.csv")
-    write_table(election.result_last, folder / "result_last.csv")
-    write_table(election.outcome, folder / "result_outcome.csv")
+    write_table(_slate_only(election.result_last, scenery=election.scenery), folder / "result_last.csv")
+    write_table(_slate_only(election.outcome, scenery=election.scenery), folder / "result_outcome.csv")
     (folder / "truth").mkdir(exist_ok=True)
     first_day = str(election.scenery.first_fieldwork)
     for name, table in election.truth.tables().items():
         # Before the first poll the path is of no use to anyone, and most of the file.
         kept = table[table["date"] >= first_day] if "date" in table else table
         write_table(kept, folder / "truth" / f"{name}.csv")
+
+
+def _slate_only(votes: pd.DataFrame, *, scenery: Scenery) -> pd.DataFrame:
+    """Blank the cells of parties where they do not stand: nobody could vote for them there."""
+    table = votes.copy()
+    for party in scenery.parties:
+        if party.regions is not None:
+            table[party.code] = table[party.code].astype("Int64").where(table["region"].isin(party.regions))
+    return table
 
 
 def write_table(table: pd.DataFrame, path: Path) -> None:
