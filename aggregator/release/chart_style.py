@@ -38,7 +38,6 @@ SHAPES = (
     "triangle-down",
     "triangle-right",
     "triangle-left",
-    "wedge",
 )
 
 
@@ -85,12 +84,12 @@ def code_looks(codes: Sequence[Code]) -> dict[str, CodeLook]:
     given = {code.code: code.colour for code in codes if code.colour and HEX_COLOUR.fullmatch(code.colour)}
     taken = {colour.upper() for colour in given.values()}
     palette = cycle([colour for colour in OKABE_ITO if colour not in taken] or OKABE_ITO)
-    shapes = cycle(SHAPES)
+    shapes = {level: cycle(SHAPES) for level in Level}
     for code in codes:
         if code.level is Level.OTHERS:
             colour, shape = given.get(code.code, OTHERS_GREY), DASH_SHAPE
         else:
-            colour, shape = given.get(code.code) or next(palette), next(shapes)
+            colour, shape = given.get(code.code) or next(palette), next(shapes[code.level])
         looks[code.code] = CodeLook(code.code, code.name, colour, shape)
     return looks
 

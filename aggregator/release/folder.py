@@ -1,8 +1,11 @@
 """One release, one folder: whole, or not there at all.
 
 A release is built in a hidden folder beside ``releases/`` and then renamed. Renaming a folder onto one that
-holds files fails on every system, so the rename is at the same time the claim of the name: of two runs that
-end together one gets ``2031-04-02``, the other ``2031-04-02-02``, and no reader ever sees half a release.
+holds files fails, so the rename is at the same time the claim of the name: of two runs that end together
+one gets ``2031-04-02``, the other ``2031-04-02-02``, and no reader ever sees half a release.
+
+Whoever builds holds a lock on the hidden folder. The system drops the lock of a process that was killed, so
+the next run knows what was abandoned, and sweeps it away.
 """
 
 from __future__ import annotations
@@ -12,12 +15,17 @@ import os
 import secrets
 import shutil
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from datetime import date
 from itertools import count
 from pathlib import Path
 
 from aggregator.errors import MachineError, UsageError
+
+try:
+    import fcntl
+except ImportError:  # Windows: nothing is swept away there.
+    fcntl = None  # type: ignore[assignment]
 
 RELEASES = "releases"
 FAILED = "failed"
@@ -34,7 +42,7 @@ def check_place_is_free(out: Path) -> None:
     Raises
     ------
     UsageError
-        If ``out`` is a file, or a folder with anything in it.
+        If ``out`` is a file or a link, or a folder with anything in it.
     """
     if out.is_symlink() or (out.exists() and (not out.is_dir() or any(out.iterdir()))):
         raise UsageError(
@@ -75,55 +83,92 @@ def write_folder(
     """
     if out is not None:
         check_place_is_free(out)
-        shelf = out.parent
+        shelf = beside = out.absolute().parent
     else:
-        shelf = contest_folder / RELEASES / FAILED if not passed else contest_folder / RELEASES
-    beside = out.parent if out is not None else contest_folder
+        beside = contest_folder
+        shelf = contest_folder / RELEASES if passed else contest_folder / RELEASES / FAILED
     with _writing_to(shelf):
         shelf.mkdir(parents=True, exist_ok=True)
+        _sweep_abandoned(beside)
         with _unfinished_folder(beside) as unfinished:
             fill(unfinished)
-            if out is None:
-                return _claim_name(unfinished, shelf, run_date)
-            return _claim_place(unfinished, out)
+            return _claim_name(unfinished, shelf, run_date) if out is None else _claim_place(unfinished, out)
 
 
 @contextmanager
 def _unfinished_folder(beside: Path) -> Iterator[Path]:
-    """Make a new hidden folder, gone again unless it was renamed."""
-    folder = beside / f"{UNFINISHED}{secrets.token_hex(6)}"
-    folder.mkdir()
+    """Make a new hidden folder, locked while in use, and gone again unless it was renamed."""
+    folder, lock = _make_locked(beside)
     try:
         yield folder
     finally:
         # Also on Ctrl-C. After a rename there is nothing here any more.
         shutil.rmtree(folder, ignore_errors=True)
+        if lock is not None:
+            os.close(lock)
+
+
+def _make_locked(beside: Path) -> tuple[Path, int | None]:
+    """Make a folder and lock it; again under another name if a sweep got hold of it in between."""
+    while True:
+        folder = beside / f"{UNFINISHED}{secrets.token_hex(6)}"
+        folder.mkdir()
+        lock = _lock(folder)
+        if fcntl is None or (lock is not None and folder.exists()):
+            return folder, lock
+        if lock is not None:
+            os.close(lock)
+
+
+def _sweep_abandoned(beside: Path) -> None:
+    """Remove unfinished releases that no living process holds."""
+    for folder in beside.glob(f"{UNFINISHED}*"):
+        with suppress(OSError):
+            lock = _lock(folder)
+            if lock is not None:
+                shutil.rmtree(folder, ignore_errors=True)
+                os.close(lock)
+
+
+def _lock(folder: Path) -> int | None:
+    """Lock a folder for this process; None if another holds it, or where locks do not exist."""
+    if fcntl is None:
+        return None
+    try:
+        handle = os.open(folder, os.O_RDONLY)
+    except FileNotFoundError:
+        return None
+    try:
+        fcntl.flock(handle, fcntl.LOCK_EX | fcntl.LOCK_NB)
+    except OSError:
+        os.close(handle)
+        return None
+    return handle
 
 
 def _claim_name(unfinished: Path, shelf: Path, run_date: date) -> Path:
     for number in count(1):
-        suffix = "" if number == 1 else f"-{number:02d}"
-        place = shelf / f"{run_date.isoformat()}{suffix}"
-        try:
-            os.rename(unfinished, place)
-        except OSError as problem:
-            if problem.errno not in _NAME_TAKEN:
-                raise
-        else:
+        place = shelf / (run_date.isoformat() if number == 1 else f"{run_date.isoformat()}-{number:02d}")
+        if _rename(unfinished, place):
             return place
-    raise AssertionError("unreachable: the count of names has no end")
+    raise AssertionError("unreachable: there is always another number")
 
 
 def _claim_place(unfinished: Path, out: Path) -> Path:
+    if not _rename(unfinished, out):
+        raise UsageError(f"{out} was filled by someone else while this release was being made")
+    return out
+
+
+def _rename(unfinished: Path, place: Path) -> bool:
+    """Rename a folder; False if the name is taken."""
     try:
-        os.rename(unfinished, out)
+        os.rename(unfinished, place)
     except OSError as problem:
         if problem.errno in _NAME_TAKEN:
-            raise UsageError(
-                f"{out} was filled by someone else while this release was being made"
-            ) from problem
+            return False
         raise
-    return out
+    return True
 
 
 @contextmanager
