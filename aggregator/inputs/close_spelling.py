@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from difflib import SequenceMatcher, get_close_matches
 
 # Two names count as nearly the same from this similarity on (difflib's ratio). At 0.9 one letter in
@@ -17,10 +17,18 @@ def close_spelling(word: str, known: Iterable[str]) -> str | None:
     return by_folded[found[0]] if found else None
 
 
-def did_you_mean(word: str, known: Iterable[str]) -> str:
-    """Say ``Did you mean "HU"?`` or, where nothing is near, the known words (the first twelve)."""
+def did_you_mean(word: str, known: Iterable[str], *, names: Mapping[str, str] | None = None) -> str:
+    """Say ``Did you mean "HU"?`` or, where nothing is near, the known words (the first twelve).
+
+    Parameters
+    ----------
+    names
+        Full names of known words, by word: whoever wrote "Harbour Union" meant "HU".
+    """
     words = list(known)
-    near = close_spelling(word, words)
+    by_name = {name: code for code, name in (names or {}).items()}
+    named = close_spelling(word, by_name)
+    near = by_name[named] if named is not None else close_spelling(word, words)
     if near is not None:
         return f'Did you mean "{near}"?'
     if not words:

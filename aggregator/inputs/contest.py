@@ -164,6 +164,11 @@ class Contest(_Frozen):
         return names
 
     @property
+    def column_names(self) -> dict[str, str]:
+        """Name of each party and alliance by code, others included."""
+        return self.party_names | {a.code: a.name for a in self.alliances}
+
+    @property
     def region_codes(self) -> tuple[str, ...]:
         """Codes of all regions in file order; one nameless region, ``ALL``, where there are none."""
         return tuple(r.code for r in self.regions) or (WHOLE_COUNTRY,)

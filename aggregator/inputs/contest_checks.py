@@ -85,8 +85,8 @@ def _check_references(
         place = f"{key}[{i}]"
         if code not in known:
             yield _problem(
-                place, f'"{code}"', f"the code of a {what} of this contest", did_you_mean(code, known),
-                Rule.CODE_UNKNOWN,
+                place, f'"{code}"', f"the code of a {what} of this contest",
+                did_you_mean(code, known) or f"Add the {what} first, or delete the list.", Rule.CODE_UNKNOWN,
             )  # fmt: skip
         elif code in codes[: i - 1]:
             yield _problem(

@@ -34,6 +34,7 @@ def read_last_result(table: SheetTable, *, contest: Contest) -> tuple[pd.DataFra
     codes = [c for c in table.columns if c in contest.party_codes or c in donors]
     problems = check_columns(
         table,
+        names=contest.party_names,
         known=(*RESULT_COLUMNS, *contest.party_codes, *donors),
         needed=("region",) if len(contest.regions) > 1 else (),
         unknown_remedy="A column of votes bears a party's code, OTH, or a code that a party inherits from.",
@@ -104,7 +105,8 @@ def _check_votes(table: SheetTable, votes: dict[tuple[int, str], float]) -> Iter
 def _check_places(table: SheetTable, contest: Contest) -> Iterator[Problem]:
     by_seat = "seat" in table.columns
     column = "seat" if by_seat else "region"
-    known = [r.code for r in contest.regions]
+    names = {r.code: r.name for r in contest.regions}
+    known = list(names)
     first: dict[str, int] = {}
     met = set()
     for row in table.rows:
@@ -133,7 +135,7 @@ def _check_places(table: SheetTable, contest: Contest) -> Iterator[Problem]:
         elif known and region not in known:
             yield Problem(
                 table.file, row.number, "region", quoted(row.cells["region"]), "the code of one region",
-                did_you_mean(region, known), Rule.ROW_REGION,
+                did_you_mean(region, known, names=names), Rule.ROW_REGION,
             )  # fmt: skip
         elif not known and region not in ("", WHOLE_COUNTRY):
             yield Problem(

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections import defaultdict
 from collections.abc import Iterator, Sequence
 
-from aggregator.inputs.contest import Contest
+from aggregator.inputs.contest import OTHERS, Contest
 from aggregator.inputs.poll_row import PollRow
 from aggregator.inputs.reading_rules import Rule
 from aggregator.inputs.register_columns import Question
@@ -143,12 +143,16 @@ def choose_rows(
 
 
 def _codes_missing(parts: Sequence[PollRow], national: PollRow, contest: Contest) -> str:
-    """Name the codes that the national row names and some regional row, where they stand, does not."""
-    missing = [
-        code
-        for code in national.shares
-        for row in parts
-        if code not in row.shares
-        and any(contest.stands_in(m, r) for m in contest.members_of(code) for r in row.regions)
-    ]
+    """Name the codes that the national row names and some regional row, where they stand, does not.
+
+    An alliance's members, each with a figure, say more than the alliance; others are what is missing to 100.
+    """
+    missing = []
+    for code in national.shares:
+        for row in parts:
+            members = [
+                m for m in contest.members_of(code) if any(contest.stands_in(m, r) for r in row.regions)
+            ]
+            if code not in row.shares and not all(m in row.shares or m == OTHERS for m in members):
+                missing.append(code)
     return ", ".join(dict.fromkeys(missing))

@@ -43,6 +43,7 @@ def read_poll_rows(
         table,
         known=(*REGISTER_COLUMNS, *contest.column_codes),
         needed=REGISTER_NEEDED,
+        names=contest.column_names,
         unknown_remedy="A party's or alliance's column bears its code; remarks belong in note.",
     )
     if len(codes) < 2:
@@ -200,7 +201,8 @@ def _read_regions(
     """Read a row's region codes in the contest's order; all of them where the cell is blank."""
     if not text:
         return contest.region_codes, []
-    known = [r.code for r in contest.regions]
+    names = {r.code: r.name for r in contest.regions}
+    known = list(names)
     named = [part.strip() for part in text.split("+")]
     problems = []
     for i, code in enumerate(named):
@@ -215,7 +217,7 @@ def _read_regions(
             problems.append(
                 Problem(
                     file, row, "region", f'"{code}"', "region codes of the contest, joined by +, or blank",
-                    f"{did_you_mean(code, known)} Blank is the whole country.", Rule.ROW_REGION,
+                    f"{did_you_mean(code, known, names=names)} Blank is the whole country.", Rule.ROW_REGION,
                 )
             )  # fmt: skip
         elif code in named[:i]:

@@ -92,3 +92,5 @@ class Rule(StrEnum):
     VOTES_NOT_STANDING = "R74"
     PARTY_WITHOUT_VOTES = "R75"
     SEAT_UNUSUAL = "R76"
+
+    PUBLISHED_LATE = "R77"

@@ -24,6 +24,9 @@ SMALLEST_USUAL_SAMPLE, LARGEST_USUAL_SAMPLE = 100, 30_000
 # Fieldwork longer than this mixes opinion of different times, and is often a wrong month.
 LONGEST_USUAL_WINDOW = timedelta(days=35)
 
+# Later than this after fieldwork, a publication is often a wrong year: the poll would seem under embargo.
+LATEST_USUAL_PUBLICATION = timedelta(days=60)
+
 # Two polls that agree in every figure are remarkable from this many figures on, within this time.
 _FIGURES_TO_COMPARE, _TIME_TO_COMPARE = 4, timedelta(days=21)
 
@@ -44,6 +47,7 @@ def check_doubts(
         *_check_blanks(rows, file),
         *_check_samples(rows, file),
         *_check_windows(rows, file),
+        *_check_publication(rows, file),
         *_check_provisional(rows, file),
         *_check_spellings(rows, file),
         *_check_same_figures(rows, file),
@@ -100,6 +104,17 @@ def _check_windows(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
                 file, row.row, "start", f"{row.start} for fieldwork that ended on {row.end}",
                 f"at most {LONGEST_USUAL_WINDOW.days} days of fieldwork", "Check month and year.",
                 Rule.LONG_WINDOW,
+            )  # fmt: skip
+
+
+def _check_publication(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:
+    for group in rows_by_poll(rows).values():
+        row = group[0]
+        if row.published - row.end > LATEST_USUAL_PUBLICATION:
+            yield _warning(
+                file, row.row, "published", f"{row.published} for fieldwork that ended on {row.end}",
+                f"at most {LATEST_USUAL_PUBLICATION.days} days after fieldwork", "Check month and year.",
+                Rule.PUBLISHED_LATE,
             )  # fmt: skip
 
 

@@ -130,14 +130,25 @@ def _wrong_width(file: str, row: int, *, width: int, expected: int) -> Problem:
 
 
 def check_columns(
-    table: SheetTable, *, known: Iterable[str], needed: Iterable[str], unknown_remedy: str
+    table: SheetTable,
+    *,
+    known: Iterable[str],
+    needed: Iterable[str],
+    names: Mapping[str, str],
+    unknown_remedy: str,
 ) -> list[Problem]:
-    """Report columns no one knows and needed ones that are missing."""
+    """Report columns no one knows and needed ones that are missing.
+
+    Parameters
+    ----------
+    names
+        Full names of known columns, by column.
+    """
     known = list(known)
     problems = [
         Problem(
             table.file, 1, column, "a column of this name", "a known column",
-            f"{did_you_mean(column, known)} {unknown_remedy}".strip(), Rule.COLUMN_UNKNOWN,
+            f"{did_you_mean(column, known, names=names)} {unknown_remedy}".strip(), Rule.COLUMN_UNKNOWN,
         )
         for column in table.columns
         if column not in known

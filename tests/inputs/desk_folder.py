@@ -96,9 +96,7 @@ def spoilt(name: str, *changes: tuple[str, str]) -> str:
 def write_folder(folder: Path, **files: str | bytes | None) -> Path:
     """Write the sound contest, some files exchanged (``polls_csv=…``) or left out (None)."""
     wanted: dict[str, str | bytes | None] = dict(FILES)
-    wanted |= {
-        name if "." in name else ".".join(name.rsplit("_", 1)): text for name, text in files.items()
-    }
+    wanted |= {name if "." in name else ".".join(name.rsplit("_", 1)): text for name, text in files.items()}
     folder.mkdir(exist_ok=True)
     for name, content in wanted.items():
         if isinstance(content, str):
