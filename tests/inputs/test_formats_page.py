@@ -1,0 +1,95 @@
+"""The page on formats says what the code reads, no more and no less."""
+
+from __future__ import annotations
+
+import re
+from datetime import date
+from pathlib import Path
+
+import pytest
+
+from aggregator.inputs.contest import (
+    Alliance,
+    Contest,
+    Counting,
+    CountingRule,
+    LastResult,
+    ModelOverrides,
+    Party,
+    Region,
+    ReleaseRules,
+    Silence,
+)
+from aggregator.inputs.contest_file import known_keys
+from aggregator.inputs.contest_folder import read_contest_folder
+from aggregator.inputs.register_columns import (
+    REGISTER_COLUMNS,
+    REGISTER_NEEDED,
+    RESULT_COLUMNS,
+    Question,
+    Status,
+    Use,
+)
+
+PAGE = (Path(__file__).parents[2] / "docs" / "formats.md").read_text(encoding="utf-8")
+INPUT_HALF = PAGE.split("## What a release holds")[0]
+
+TABLES = {
+    "Top level": Contest,
+    "`[[party]]`": Party,
+    "`[[alliance]]`": Alliance,
+    "`[[region]]`": Region,
+    "`[last_result]`": LastResult,
+    "`[counting]`": Counting,
+    "`[release]`": ReleaseRules,
+    "`[[release.silence]]`": Silence,
+    "`[model]`": ModelOverrides,
+}
+
+
+def schema_under(heading: str) -> dict[str, str]:
+    """Name and ``needed`` of each line of the table that follows a line."""
+    after = INPUT_HALF.split(f"\n{heading}\n", 1)[1]
+    rows: dict[str, str] = {}
+    for line in after.splitlines():
+        if match := re.match(r"\| [`*](\w+)[`*] \| ([^|]+) \|", line):
+            rows[match[1]] = match[2].strip()
+        elif rows and not line.startswith("|"):
+            break
+    return rows
+
+
+@pytest.mark.parametrize("heading", TABLES)
+def test_every_key_of_the_contest_is_in_its_table(heading):
+    documented = schema_under(f"{heading}:")
+    keys = known_keys(TABLES[heading])
+    assert set(documented) == set(keys)
+    assert {k for k, needed in documented.items() if needed == "yes"} == {
+        k for k, field in keys.items() if field.is_required()
+    }
+
+
+def test_every_column_of_the_register_is_in_its_table():
+    documented = schema_under("### polls.csv or polls.xlsx")
+    assert [c for c in documented if c != "code"] == list(REGISTER_COLUMNS)
+    assert {c for c, needed in documented.items() if needed == "yes"} == set(REGISTER_NEEDED)
+
+
+def test_every_column_of_the_last_result_is_in_its_table():
+    assert [c for c in schema_under("### result_last.csv") if c != "code"] == list(RESULT_COLUMNS)
+
+
+@pytest.mark.parametrize("words", [Question, Status, Use, CountingRule])
+def test_every_word_a_cell_may_hold_is_named(words):
+    for word in words:
+        assert f"`{word}`" in INPUT_HALF
+
+
+def test_the_examples_are_read_without_a_finding(tmp_path):
+    for name, text in re.findall(r"^```\w+ (\S+)\n(.*?)^```$", INPUT_HALF, re.MULTILINE | re.DOTALL):
+        (tmp_path / name).write_text(text, encoding="utf-8")
+    assert sorted(p.name for p in tmp_path.iterdir()) == ["contest.toml", "polls.csv", "result_last.csv"]
+    inputs = read_contest_folder(tmp_path, today=date(2031, 3, 20))
+    assert inputs.warnings == ()
+    assert list(inputs.polls["poll"]) == ["T-1", "K-1", "M-1", "M-1", "K-2b"]
+    assert len(inputs.unused_polls) == 4
