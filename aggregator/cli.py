@@ -9,6 +9,8 @@ import errno
 import json
 import sys
 import traceback
+from collections.abc import Callable
+from dataclasses import replace
 from datetime import date, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
@@ -19,11 +21,14 @@ from rich.text import Text
 
 from aggregator.errors import FieldfoldError, InputError, UsageError
 from aggregator.problem_display import count_of, print_problems, problem_records
-from aggregator.progress import Progress, no_progress
+from aggregator.settings import RunSettings
 
 if TYPE_CHECKING:
     from aggregator.inputs.desk_inputs import DeskInputs
     from aggregator.weekly_run import RefreshOutcome
+
+# Called with what is being done and the finished part of it, 0–1.
+type Progress = Callable[[str, float], None]
 
 EXIT_CHECKS_FAILED = 3
 EXIT_MACHINE = 5
@@ -197,6 +202,11 @@ def refresh(
     """Make this week's release: check, fit, count seats, write."""
     if as_of is not None and out is None:
         raise UsageError("--as-of needs --out: a look back is no release of the week.")
+    settings = RunSettings()
+    if seed is not None:
+        settings = replace(settings, seed=seed)
+    if draws is not None:
+        settings = replace(settings, draws=draws)
     from aggregator.weekly_run import refresh as refresh_contest
 
     def run(progress: Progress) -> RefreshOutcome:
@@ -204,14 +214,13 @@ def refresh(
             folder,
             as_of=_day(as_of),
             out=out,
-            seed=seed,
-            draws=draws,
+            settings=settings,
             today=date.today(),
             progress=progress,
         )
 
     try:
-        outcome = run(no_progress) if quiet or as_json else _with_progress_bar(run)
+        outcome = run(_no_progress) if quiet or as_json else _with_progress_bar(run)
     except InputError as error:
         if not as_json:
             raise
@@ -229,7 +238,11 @@ def _day(moment: datetime | None) -> date | None:
     return moment.date() if moment is not None else None
 
 
-def _with_progress_bar(run: Any) -> RefreshOutcome:
+def _no_progress(stage: str, part: float) -> None:
+    """Tell nobody."""
+
+
+def _with_progress_bar(run: Callable[[Progress], RefreshOutcome]) -> RefreshOutcome:
     from rich.progress import BarColumn, SpinnerColumn, TextColumn, TimeElapsedColumn
     from rich.progress import Progress as ProgressBar
 
@@ -237,9 +250,9 @@ def _with_progress_bar(run: Any) -> RefreshOutcome:
     with ProgressBar(*columns, console=Console(stderr=True), transient=True) as bar:
         task = bar.add_task("", total=None)
 
-        def progress(stage: str, part: float | None) -> None:
-            total = None if part is None else 1.0
-            bar.update(task, description=stage, total=total, completed=part or 0.0)
+        def progress(stage: str, part: float) -> None:
+            # A stage that cannot say how far it is stays at 0, and the bar then only shows that it is alive.
+            bar.update(task, description=stage, total=1.0 if part > 0 else None, completed=part)
 
         return run(progress)
 
@@ -260,19 +273,17 @@ def _print_inputs(inputs: DeskInputs) -> None:
 
 def _summary(inputs: DeskInputs) -> list[str]:
     polls, contest = inputs.polls, inputs.contest
-    counted = contest.counting.seats
-    lines = [
-        contest.title,
-        f"  polling day  {contest.last_polling_day}",
-        f"  run stands on  {inputs.run_date}",
-        f"  polls used  {polls['poll'].nunique()} of {polls['house'].nunique()} house(s), "
-        f"last fieldwork {polls['end'].max():%Y-%m-%d}",
-        f"  rows left out  {len(inputs.unused_polls)}",
-        f"  seats  {counted if counted is not None else 'not counted'}",
-    ]
+    facts = {
+        "polling day": contest.last_polling_day,
+        "run stands on": inputs.run_date,
+        "polls used": f"{polls['poll'].nunique()}, of {polls['house'].nunique()} house(s)",
+        "last fieldwork": f"{polls['end'].max():%Y-%m-%d}",
+        "rows left out": len(inputs.unused_polls),
+        "seats": "not counted" if contest.counting.seats is None else contest.counting.seats,
+    }
     if inputs.unpublished:
-        lines.append(f"  not yet published  {', '.join(inputs.unpublished)}")
-    return lines
+        facts["under embargo"] = ", ".join(inputs.unpublished)
+    return [contest.title, *(f"  {name:<14}  {fact}" for name, fact in facts.items()), ""]
 
 
 def _error_record(error: InputError, folder: Path) -> dict[str, Any]:
@@ -296,9 +307,10 @@ def _inputs_record(inputs: DeskInputs) -> dict[str, Any]:
 def _outcome_record(outcome: RefreshOutcome) -> dict[str, Any]:
     return {
         "release": str(outcome.release),
-        "page": None if outcome.page is None else str(outcome.page),
+        "page": str(outcome.page),
         "passed": outcome.passed,
         "headlines": list(outcome.headlines),
+        "notices": list(outcome.notices),
         "warnings": problem_records(outcome.warnings),
     }
 
@@ -309,6 +321,6 @@ def _print_outcome(outcome: RefreshOutcome) -> None:
         console.print(Text(headline), soft_wrap=True)
     if outcome.warnings:
         console.print(Text(f"\n{count_of(outcome.warnings)} (fieldfold check shows them)."), soft_wrap=True)
-    console.print(Text(f"\n{outcome.page or outcome.release}"), soft_wrap=True)
-    if not outcome.passed:
-        _say("The checks of the fit failed: do not publish this release.")
+    console.print(Text(f"\n{outcome.page}"), soft_wrap=True)
+    for notice in outcome.notices:
+        _say(notice)

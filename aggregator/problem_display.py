@@ -7,7 +7,6 @@ from dataclasses import asdict
 from typing import Any
 
 from rich.console import Console
-from rich.padding import Padding
 from rich.text import Text
 
 from aggregator.problems import Problem, Severity
@@ -51,14 +50,20 @@ def _print_problem(problem: Problem, console: Console) -> None:
         "  " + (", ".join(place) or "the file"),
     )
     parts = (("found", problem.found), ("expected", problem.expected), ("to do", problem.remedy))
-    lines = [Text.assemble((f"{name:<9}", "dim"), text) for name, text in parts if text]
-    if console.is_terminal:
-        console.print(Padding(head, (0, 0, 0, 2)))
-        for line in lines:
-            wrapped = line.wrap(console, console.width - 15)
-            for i, piece in enumerate(wrapped):
-                console.print(Padding(piece, (0, 0, 0, 4 if i == 0 else 13)))
-        return
     console.print(Text("  ") + head, soft_wrap=True)
-    for line in lines:
-        console.print(Text("    ") + line, soft_wrap=True)
+    for name, text in parts:
+        if text:
+            _print_part(name, text, console)
+
+
+def _print_part(name: str, text: str, console: Console) -> None:
+    line = Text.assemble("    ", (f"{name:<9}", "dim"), text)
+    if not console.is_terminal:
+        console.print(line, soft_wrap=True)
+        return
+    margin = Text(" " * 13)
+    first, *others = Text(text).wrap(console, max(console.width - len(margin), 20))
+    console.print(line[:13] + first)
+    for piece in others:
+        piece.rstrip()
+        console.print(margin + piece)

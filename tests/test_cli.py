@@ -15,6 +15,7 @@ import pytest
 
 from aggregator import cli
 from aggregator.problems import Problem
+from aggregator.settings import RunSettings
 from tests.inputs.desk_folder import spoilt, write_folder
 
 
@@ -30,10 +31,11 @@ def run(*arguments: object) -> int:
 @dataclass(frozen=True)
 class Outcome:
     release: Path
-    page: Path | None
+    page: Path
     passed: bool = True
     headlines: tuple[str, ...] = ("HU leads UP, 38 to 35 percent.",)
     warnings: tuple[Problem, ...] = ()
+    notices: tuple[str, ...] = ()
 
 
 @dataclass
@@ -174,7 +176,7 @@ def test_refresh_hands_its_options_on_and_prints_the_page(weekly_run, capsys):
     assert out == "HU leads UP, 38 to 35 percent.\n\nout/public/index.html\n"
     asked = {k: v for k, v in stub.asked.items() if k != "progress"}
     assert asked == {
-        "folder": Path("lakes"), "as_of": date(2031, 4, 1), "out": Path("out"), "seed": 7, "draws": 500,
+        "folder": Path("lakes"), "as_of": date(2031, 4, 1), "out": Path("out"), "settings": RunSettings(seed=7, draws=500),
         "today": date.today(),
     }  # fmt: skip
 
@@ -186,16 +188,17 @@ def test_refresh_keeps_progress_off_standard_output(weekly_run, capsys):
 
 
 def test_refresh_as_json_owns_standard_output(weekly_run, capsys):
-    weekly_run(Outcome(Path("out"), None))
+    weekly_run(Outcome(Path("out"), Path("out/index.html")))
     assert run("refresh", "lakes", "--json") == 0
     record = json.loads(capsys.readouterr().out)
-    assert (record["release"], record["page"], record["passed"]) == ("out", None, True)
+    assert (record["release"], record["page"], record["passed"]) == ("out", "out/index.html", True)
 
 
 def test_failed_checks_leave_with_3(weekly_run, capsys):
-    weekly_run(Outcome(Path("out"), Path("out/index.html"), passed=False))
-    assert run("refresh", "lakes") == 3
-    assert "do not publish" in capsys.readouterr().err
+    notice = "The checks of the fit failed."
+    weekly_run(Outcome(Path("out"), Path("out/index.html"), passed=False, notices=(notice,)))
+    assert run("refresh", "lakes", "--quiet") == 3
+    assert capsys.readouterr().err == notice + "\n"
 
 
 @pytest.mark.parametrize(
