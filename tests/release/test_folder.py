@@ -29,7 +29,8 @@ def fill(folder):
     time.sleep(float(sys.argv[2]))
     (folder / "whole.csv").write_text("whole")
 
-print(write_folder(fill, contest_folder=Path(sys.argv[1]), run_date=date(2031, 4, 2), passed=True, out=None).name)
+contest = Path(sys.argv[1])
+print(write_folder(fill, contest_folder=contest, run_date=date(2031, 4, 2), passed=True, out=None).name)
 """
 
 

@@ -64,7 +64,8 @@ def test_the_numbers_of_the_support_sentence_are_those_of_the_table(tables, inpu
     row = last_row(tables.support[tables.support["region"] == ""], code="FER", kind=Kind.ON_POLLING_DAY)
     assert told == (
         "On polling day, 15 May 2033, Ferry Party is likely (84 %) to have the most support: "
-        f"{share_text(row['mean'])} of the vote (90 % interval {share_interval_text(row['q05'], row['q95'])})."
+        f"{share_text(row['mean'])} of the vote "
+        f"(90 % interval {share_interval_text(row['q05'], row['q95'])})."
     )
 
 
@@ -74,9 +75,12 @@ def test_the_numbers_of_the_seats_sentence_are_those_of_the_tables(tables, input
     alone = likeliest(tables.chances, Outcome.MAJORITY_ALONE, kind=Kind.ON_POLLING_DAY)
     together = likeliest(tables.chances, Outcome.MAJORITY_ONLY_AS_ALLIANCE, kind=Kind.ON_POLLING_DAY)
     assert told == (
-        f"On polling day Ferry Party is very likely (91 %) to win the most seats: {whole_text(row['mean'])} of 24 "
-        f"(90 % interval {whole_text(row['q05'])} to {whole_text(row['q95'])}); a majority of 13 for Ferry Party alone is "
-        f"{alone['likelihood']} ({chance_text(alone['probability'])}), one that only Glow Pact as a whole reaches is "
+        "On polling day Ferry Party is very likely (91 %) to win the most seats: "
+        f"{whole_text(row['mean'])} of 24 "
+        f"(90 % interval {whole_text(row['q05'])} to {whole_text(row['q95'])}); "
+        "a majority of 13 for Ferry Party alone is "
+        f"{alone['likelihood']} ({chance_text(alone['probability'])}), "
+        "one that only Glow Pact as a whole reaches is "
         f"{together['likelihood']} ({chance_text(together['probability'])})."
     )
 
