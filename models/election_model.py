@@ -1,6 +1,7 @@
 """The election model: one hierarchical model of several polls over time, as a ``pm.Model``.
 
-θ_{r,t} = softmax(b_r + a_t + d_{r,t}): the last result, the national swing, the region's own swing. Polls see θ
+Support is θ_{r,t} ∝ exp(a_t) · E_{r,t} with E_{r,t} = exp(b_r + d_{r,t}): the national swing, and a region's own support from
+its last result and its own swing. Between knots a moves in straight lines in log support, E in straight lines. Polls see θ
 through the shared lean and their house's lean, with their design effect.
 """
 
@@ -12,7 +13,7 @@ import numpy as np
 import pymc as pm
 import pytensor.tensor as pt
 
-from models.arrays import ElectionArrays
+from models.arrays import ElectionArrays, Floats, Indices
 from models.block_geometry import Geometry
 from models.conditional_laplace import add_modes, answer_information
 from models.design_effect import add_design_effect_parameters, row_design_effect
@@ -25,15 +26,11 @@ from models.poll_answers import (
     cell_shares,
     kept_cells,
     small_counts,
-    softmax,
 )
 from models.priors import Priors
 from models.shared_lean import add_shared_lean, lean_loadings, lean_scale
 
 Array = Any
-
-# Log support of a party that does not stand: small enough to vanish, large enough to stay finite.
-ABSENT = -40.0
 
 
 def build_election_model(
@@ -82,9 +79,9 @@ def build_election_model(
         lean = _lean(data, house_scale, priors) if shared_lean else None
         start, region_start = _start(arrays, data, lean, priors)
         national = _national_swing(data, drift, lean, start)
-        region = _region_swing(geometry, data, drift, region_start, priors)
+        region = _region_support(geometry, data, drift, region_start, priors)
         house = _house_effects(geometry, data, house_scale)
-        share = _row_shares(data, national, region, region_start, house)
+        share = _row_shares(data, national, region, house)
         kappa, rho = add_design_effect_parameters(priors=priors)
         _answers(arrays, data, share, kappa, rho)
     return model
@@ -110,10 +107,14 @@ def _add_data(arrays: ElectionArrays, geometry: Geometry, priors: Priors) -> dic
     country, knots, rows = arrays.country, arrays.knots, arrays.rows
     asked = (rows.region_mix > 0).sum(axis=1)
     alone, several = np.flatnonzero(asked == 1), np.flatnonzero(asked > 1)
+    region_knot, region_knot_weight = _nearest_knots(
+        rows.region_weight if geometry.region is not None else np.ones((len(asked), 1))
+    )
     values: dict[str, Any] = {
         "reference_share": country.reference_share,
         "pilot_share": country.pilot_share,
-        "base": np.where(country.standing, country.last_log_share, ABSENT),
+        "last_log_share": country.last_log_share,
+        "standing": country.standing.astype(float),
         "free": np.eye(len(country.parties))[country.free_party],
         "free_median": country.free_median,
         "national_weight": rows.national_weight,
@@ -131,6 +132,8 @@ def _add_data(arrays: ElectionArrays, geometry: Geometry, priors: Priors) -> dic
         "row_order": np.argsort(np.concatenate([alone, several])),
         "region_alone": rows.region_mix[alone].argmax(axis=1) if len(alone) else alone,
         "region_mix_several": rows.region_mix[several],
+        "region_knot": region_knot,
+        "region_knot_weight": region_knot_weight,
         "lean_loadings": lean_loadings(knots.lean_clock, correlation=priors.lean_correlation),
         "lean_loadings_reference": lean_loadings(
             np.array([knots.lean_reference]), correlation=priors.lean_correlation
@@ -148,11 +151,6 @@ def _add_data(arrays: ElectionArrays, geometry: Geometry, priors: Priors) -> dic
             "region_crossing": geometry.region.crossing,
             "region_pull": np.zeros((len(geometry.region.information), len(country.parties))),
             "region_contrast": geometry.region_contrast,
-            "region_weight_several": rows.region_weight[several][:, 1:],
-            "region_design_alone": (
-                rows.region_weight[alone][:, 1:, None]
-                * (rows.region_mix[alone] @ geometry.region_contrast)[:, None, :]
-            ).reshape(len(alone), len(geometry.region.basis)),
         }
     if geometry.house is not None:
         values |= {
@@ -169,6 +167,13 @@ def _add_data(arrays: ElectionArrays, geometry: Geometry, priors: Priors) -> dic
             "small_log_weight": small.log_count_weight,
         }
     return {name: pm.Data(name, np.asarray(value, order="C")) for name, value in values.items()}
+
+
+def _nearest_knots(weight: Floats) -> tuple[Indices, Floats]:
+    """The few knots each row weighs, and their weights; dims (row, near knot)."""
+    width = int((weight > 0).sum(axis=1).max())
+    knot = np.argsort(-weight, axis=1, kind="stable")[:, :width]
+    return knot, np.take_along_axis(weight, knot, axis=1)
 
 
 def _lean(data: dict[str, Array], house_scale: Array, priors: Priors) -> dict[str, Array]:
@@ -224,12 +229,13 @@ def _national_swing(
     return walk + beside
 
 
-def _region_swing(
+def _region_support(
     geometry: Geometry, data: dict[str, Array], drift: Array, region_start: Array | None, priors: Priors
-) -> Array | None:
-    """Each region's own swing as contrasts at the regional knots; dims ((knot − 1) · contrast, party)."""
+) -> Array:
+    """Each region's own support E at the regional knots, zero for absent parties; dims (knot, region, party)."""
+    base = data["last_log_share"] if region_start is None else data["last_log_share"] + region_start
     if geometry.region is None:
-        return None
+        return (data["standing"] * pt.exp(base))[None]
     ratio = pm.Normal("region_ratio_log", priors.region_ratio_log_median, priors.region_ratio_log_sd)
     pull = data["region_pull"]
     if region_start is not None:
@@ -242,7 +248,11 @@ def _region_swing(
         pull=pull,
         dims=("region_mode", "party"),
     )
-    return pt.dot(data["region_basis"], modes)
+    contrast = data["region_contrast"]
+    walk = pt.dot(data["region_basis"], modes).reshape((-1, contrast.shape[1], modes.shape[1]))
+    own = pt.dot(walk.dimshuffle(0, 2, 1), contrast.T).dimshuffle(0, 2, 1)
+    own = pt.concatenate([pt.zeros_like(own[:1]), own], axis=0)
+    return data["standing"] * pt.exp(base + own)
 
 
 def _house_effects(geometry: Geometry, data: dict[str, Array], house_scale: Array) -> Array | None:
@@ -260,29 +270,27 @@ def _house_effects(geometry: Geometry, data: dict[str, Array], house_scale: Arra
     return pt.dot(data["house_basis"], modes)
 
 
-def _row_shares(
-    data: dict[str, Array],
-    national: Array,
-    region: Array | None,
-    region_start: Array | None,
-    house: Array | None,
-) -> Array:
+def _row_shares(data: dict[str, Array], national: Array, region: Array, house: Array | None) -> Array:
     """Expected shares of all parties in each row, leans included; dims (row, party)."""
     common = pt.dot(data["national_weight"], national)
     if house is not None:
         common = common + house[data["house_of_row"]]
-    base = data["base"] if region_start is None else data["base"] + region_start
+    common = pt.exp(common)
+    knot, weight = data["region_knot"], data["region_knot_weight"]
+    knots, regions, parties = region.shape
     alone, several = data["alone"], data["several"]
-    at_alone = common[alone] + base[data["region_alone"]]
-    at_several = common[several][:, None, :] + base[None, :, :]
-    if region is not None:
-        at_alone = at_alone + pt.dot(data["region_design_alone"], region)
-        contrast = data["region_contrast"]
-        by_knot = region.reshape((-1, contrast.shape[1] * region.shape[1]))
-        seen = pt.dot(data["region_weight_several"], by_knot).reshape((-1, contrast.shape[1], region.shape[1]))
-        at_several = at_several + pt.dot(seen.dimshuffle(0, 2, 1), contrast.T).dimshuffle(0, 2, 1)
-    several_share = (softmax(at_several) * data["region_mix_several"][:, :, None]).sum(axis=1)
-    return pt.concatenate([softmax(at_alone), several_share], axis=0)[data["row_order"]]
+
+    at = knot[alone] * regions + data["region_alone"][:, None]
+    near = region.reshape((knots * regions, parties))[at.ravel()].reshape((*at.shape, parties))
+    one = common[alone] * (near * weight[alone][:, :, None]).sum(axis=1)
+    one = one / one.sum(axis=-1, keepdims=True)
+
+    at = knot[several]
+    near = region.reshape((knots, regions * parties))[at.ravel()].reshape((*at.shape, regions * parties))
+    own = (near * weight[several][:, :, None]).sum(axis=1).reshape((-1, regions, parties))
+    many = common[several][:, None, :] * own
+    many = (many * (data["region_mix_several"] / many.sum(axis=-1))[:, :, None]).sum(axis=1)
+    return pt.concatenate([one, many], axis=0)[data["row_order"]]
 
 
 def _answers(arrays: ElectionArrays, data: dict[str, Array], share: Array, kappa: Array, rho: Array) -> None:

@@ -27,13 +27,7 @@ Array = Any
 # A sample so small that its design effect would exceed it still tells this part of its respondents.
 SMALLEST_EXCESS = 0.05
 # Points at which the probability of an interval of counts is summed; wider intervals are sampled evenly.
-MOST_COUNTS = 24
-
-
-def softmax(log_support: Array) -> Array:
-    """Shares from log support over the last dim; for numpy arrays and tensors alike."""
-    raised = np.exp(log_support) if isinstance(log_support, np.ndarray) else pt.exp(log_support)
-    return raised / raised.sum(axis=-1, keepdims=True)
+MOST_COUNTS = 12
 
 
 def cell_shares(share: Array, *, partition: Array, used: Array) -> Array:

@@ -8,6 +8,7 @@ import xarray as xr
 from scipy.special import gammaln
 
 from aggregator.estimate.parameters import Parameters
+from aggregator.estimate.support import region_support
 from models.arrays import ElectionArrays, Floats
 from models.design_effect import row_design_effect
 from models.dimensions import CHAIN, DRAW, POLL
@@ -18,7 +19,6 @@ from models.poll_answers import (
     kept_cells,
     small_cells_log_density,
     small_counts,
-    softmax,
 )
 
 # Draws in all that Pareto-k is estimated from: enough for a warning, at a quarter of the time.
@@ -28,13 +28,11 @@ DRAWS_AT_ONCE = 100
 
 def expected_shares(parameters: Parameters, *, arrays: ElectionArrays, samples: np.ndarray) -> Floats:
     """Shares each row is expected to find, leans included; dims (sample, row, party)."""
-    country, rows = arrays.country, arrays.rows
+    rows = arrays.rows
     seen = rows.national_weight @ (parameters.walk[samples] + parameters.lean[samples])
     seen += parameters.house[samples][:, rows.house_of_row]
-    region = parameters.region[samples]
-    flat = region.reshape(len(samples), region.shape[1], -1)
-    deviation = (rows.region_weight @ flat).reshape(len(samples), -1, *country.standing.shape)
-    share = softmax(country.last_log_share + seen[:, :, None, :] + deviation) * country.standing
+    own = region_support(parameters.region[samples], country=arrays.country, weight=rows.region_weight)
+    share = np.exp(seen)[:, :, None, :] * own
     share /= share.sum(axis=-1, keepdims=True)
     return np.einsum("nr,snrp->snp", rows.region_mix, share)
 

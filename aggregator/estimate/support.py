@@ -10,9 +10,8 @@ import xarray as xr
 
 from aggregator.estimate.knots import knot_weights
 from aggregator.estimate.parameters import Parameters
-from models.arrays import ElectionArrays, Floats
+from models.arrays import CountryArrays, ElectionArrays, Floats
 from models.dimensions import CHAIN, DATE, DRAW, HOUSE, PARTY, REGION
-from models.poll_answers import softmax
 
 # Turnout: how far a region's share of the votes may move between two elections, log units (common practice).
 TURNOUT_LOG_SD = 0.04
@@ -111,17 +110,33 @@ def _support(
     knots, country = arrays.knots, arrays.country
     national = knot_weights(knots.national_day, first_day=moments, last_day=moments)
     regional = knot_weights(knots.region_day, first_day=moments, last_day=moments)
-    base = country.last_log_share + region_lean
+    lean = np.exp(region_lean)
     out = np.empty((len(parameters.walk), len(moments), *country.standing.shape), dtype=np.float32)
     # In slices, so that no array of double precision holds all draws, dates and regions at once.
     for part in np.array_split(np.arange(len(out)), max(1, len(out) // 250)):
-        walk = national @ parameters.walk[part]
-        flat = parameters.region[part].reshape(len(part), len(knots.region_day), -1)
-        deviation = (regional @ flat).reshape(len(part), len(moments), *country.standing.shape)
-        share = softmax(walk[:, :, None, :] + deviation + base[part][:, None])
-        share *= country.standing
+        share = region_support(parameters.region[part], country=country, weight=regional)
+        share *= np.exp(national @ parameters.walk[part])[:, :, None, :] * lean[part][:, None]
         out[part] = share / share.sum(axis=-1, keepdims=True)
     return out
+
+
+def region_support(region: Floats, *, country: CountryArrays, weight: Floats) -> Floats:
+    """Each region's own support E at some moments, zero for absent parties.
+
+    Parameters
+    ----------
+    region
+        Log deviations at the regional knots, dims (sample, knot, region, party).
+    weight
+        Weights of the knots, dims (moment, knot).
+
+    Returns
+    -------
+    dims (sample, moment, region, party).
+    """
+    own = country.standing * np.exp(country.last_log_share + region)
+    flat = own.reshape(*own.shape[:2], -1)
+    return (weight @ flat).reshape(len(own), len(weight), *country.standing.shape)
 
 
 def _draw_turnout(samples: int, turnout: Floats, rng: np.random.Generator) -> Floats:
@@ -141,7 +156,8 @@ def _draw_region_lean(
 
 def _house_lean(parameters: Parameters, national: Floats) -> Floats:
     """What each house would report at today's national support less the mean over houses; share units."""
-    reported = softmax(np.log(np.maximum(national, 1e-12))[:, None, :] + parameters.house)
+    reported = national[:, None, :] * np.exp(parameters.house)
+    reported /= reported.sum(axis=-1, keepdims=True)
     return reported - reported.mean(axis=1, keepdims=True)
 
 
