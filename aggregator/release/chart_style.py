@@ -175,25 +175,27 @@ def frame_chart(
         "offset": 14,
     }
     foot = {
-        "text": alarms or [""],
+        # A title without text is not drawn at all, subtitle included; a blank line is.
+        "text": [""],
         "subtitle": notes,
         "orient": "bottom",
         "anchor": "start",
         "frame": "bounds",
-        "fontSize": size,
-        "fontWeight": 700,
-        "color": ALARM,
         "subtitleFontSize": size - 1,
         "subtitleColor": MUTED,
-        "offset": 8 if alarms else 0,
+        "offset": 0,
     }
+    framed: dict[str, Any] = {"title": head, "vconcat": [inner]}
+    if alarms:
+        alarm = {"text": alarms, "anchor": "start", "frame": "bounds", "fontSize": size + 1, "color": ALARM}
+        framed = {"title": alarm | {"fontWeight": 700, "offset": 10}, "vconcat": [framed]}
     return {
         **outer,
         "description": description,
         "background": PAPER,
         "padding": 14,
         "title": foot,
-        "vconcat": [{"title": head, "vconcat": [inner]}],
+        "vconcat": [framed],
         "config": _config(layout),
     }
 
@@ -201,6 +203,8 @@ def frame_chart(
 def _config(layout: Layout) -> dict[str, Any]:
     size = layout.font_size
     return {
+        # One description per picture, not one per mark: a reader would have to step through thousands.
+        "aria": False,
         "font": FONT,
         "view": {"stroke": None},
         "axis": {

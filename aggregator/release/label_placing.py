@@ -8,10 +8,10 @@ from scipy.optimize import isotonic_regression
 
 
 def spread_labels(wanted: ArrayLike, *, gap: float, low: float, high: float) -> NDArray[np.float64]:
-    """Places at least ``gap`` apart, as near as possible to where the labels are wanted.
+    """Place labels at least ``gap`` apart, as near as possible to where they are wanted.
 
     With the labels in order, the i-th place minus i gaps must not fall: a least-squares fit under that
-    constraint is isotonic regression.
+    constraint is isotonic regression. Of labels wanted at one place, the first comes out on top.
 
     Parameters
     ----------
@@ -30,7 +30,7 @@ def spread_labels(wanted: ArrayLike, *, gap: float, low: float, high: float) -> 
     values = np.asarray(wanted, dtype=np.float64)
     if values.size == 0:
         return values
-    order = np.argsort(values, kind="stable")
+    order = np.lexsort((-np.arange(values.size), values))
     steps = gap * np.arange(values.size)
     placed = isotonic_regression(values[order] - steps).x + steps
     # Pushed in from both ends, the lower end last: the lowest label stays in sight.

@@ -276,12 +276,21 @@ def _label_layers(content: OverTime, canvas: _Canvas, final: pd.DataFrame, layou
     gap = (canvas.size + 3) * (canvas.top - canvas.low) / canvas.height
     labels["placed"] = spread_labels(labels["mean"], gap=gap, low=canvas.low + 0.4 * gap, high=canvas.top)
     beyond = canvas.width + 14
-    leader = alt.Chart(labels).mark_rule(strokeWidth=0.7, opacity=0.8)
     text = alt.Chart(labels).mark_text(align="left", baseline="middle", fontSize=canvas.size, color=INK)
-    looks = [*content.looks, CodeLook("", "", INK, "circle")]
-    return [
-        leader.encode(
-            x=canvas.x, x2=canvas.x2(beyond - 3), y=canvas.y("mean"), y2="placed:Q", color=colour_of(looks)
-        ),
-        text.encode(x=alt.value(beyond), y=canvas.y("placed"), text="label:N"),
-    ]
+    leaders = []
+    for chosen, colour in (
+        (labels[labels["code"] != ""], colour_of(content.looks)),
+        (labels[labels["code"] == ""], alt.value(INK)),
+    ):
+        if len(chosen):
+            leader = alt.Chart(chosen).mark_rule(strokeWidth=0.7, opacity=0.8)
+            leaders.append(
+                leader.encode(
+                    x=canvas.x,
+                    x2=canvas.x2(beyond - 3),
+                    y=canvas.y("mean"),
+                    y2="placed:Q",
+                    color=colour,
+                )
+            )
+    return [*leaders, text.encode(x=alt.value(beyond), y=canvas.y("placed"), text="label:N")]
