@@ -318,7 +318,7 @@ def _outcome_record(outcome: RefreshOutcome) -> dict[str, Any]:
 def _print_outcome(outcome: RefreshOutcome) -> None:
     console = Console(highlight=False)
     for headline in outcome.headlines:
-        console.print(Text(headline), soft_wrap=True)
+        console.print(Text(headline), soft_wrap=not console.is_terminal)
     if outcome.warnings:
         console.print(Text(f"\n{count_of(outcome.warnings)} (fieldfold check shows them)."), soft_wrap=True)
     console.print(Text(f"\n{outcome.page}"), soft_wrap=True)

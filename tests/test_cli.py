@@ -176,8 +176,8 @@ def test_refresh_hands_its_options_on_and_prints_the_page(weekly_run, capsys):
     assert out == "HU leads UP, 38 to 35 percent.\n\nout/public/index.html\n"
     asked = {k: v for k, v in stub.asked.items() if k != "progress"}
     assert asked == {
-        "folder": Path("lakes"), "as_of": date(2031, 4, 1), "out": Path("out"), "settings": RunSettings(seed=7, draws=500),
-        "today": date.today(),
+        "folder": Path("lakes"), "as_of": date(2031, 4, 1), "out": Path("out"),
+        "settings": RunSettings(seed=7, draws=500), "today": date.today(),
     }  # fmt: skip
 
 

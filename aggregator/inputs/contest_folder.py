@@ -27,6 +27,7 @@ from aggregator.inputs.poll_row_checks import check_poll_row
 from aggregator.inputs.poll_selection import check_span, select_rows
 from aggregator.inputs.poll_shares import SharesOfRow, read_shares, rounding_steps
 from aggregator.inputs.reading_rules import Rule
+from aggregator.inputs.register_columns import REGISTER_COLUMNS, RESULT_COLUMNS
 from aggregator.inputs.register_doubts import check_doubts
 from aggregator.inputs.register_frames import build_polls, build_unused
 from aggregator.inputs.register_history import check_history
@@ -167,7 +168,7 @@ def _read_bytes(folder: Path, name: str, read: dict[str, bytes]) -> bytes | None
 
 def _missing(folder: Path, name: str, needed: str) -> Problem:
     near = close_spelling(name, (p.name for p in folder.iterdir() if p.is_file()))
-    remedy = f'Rename "{near}" if that is it, or add the file.' if near else "Add the file."
+    remedy = f'If "{near}" is meant, save it as {name}; else add the file.' if near else "Add the file."
     return Problem(name, None, None, "no such file", needed, remedy, Rule.FILE_THERE)
 
 
@@ -195,7 +196,8 @@ def _read_register(
             "Move one of the two out of the folder.", Rule.FILE_THERE,
         )  # fmt: skip
         return None, [found]
-    table, problems = read_table(data, file=file, sheet="polls")
+    codes = contest.column_codes if contest is not None else ()
+    table, problems = read_table(data, file=file, sheet="polls", columns=(*REGISTER_COLUMNS, *codes))
     if table is None or contest is None:
         return None, problems
     rows, broken, more = read_poll_rows(table, contest=contest)
@@ -245,7 +247,8 @@ def _read_result(
             "Add it, or move the file out of the folder.", Rule.FILE_UNREAD,
         )  # fmt: skip
         return None, [found]
-    table, problems = read_table(data, file=file, sheet="result")
+    codes = contest.party_codes if contest is not None else ()
+    table, problems = read_table(data, file=file, sheet="result", columns=(*RESULT_COLUMNS, *codes))
     if table is None or contest is None:
         return None, problems
     last_result, found_more = read_last_result(table, contest=contest)

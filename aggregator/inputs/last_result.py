@@ -51,6 +51,7 @@ def read_last_result(table: SheetTable, *, contest: Contest) -> tuple[pd.DataFra
         for row in table.rows
     ]
     problems += _check_totals(table, rows, broken={p.row for p in problems if p.rule is not Rule.PLACE_TWICE})
+    problems += _check_kind(table, rows)
     problems += _check_standing(table, rows, contest)
     if any(p.severity is Severity.ERROR for p in problems):
         return None, problems
@@ -171,6 +172,48 @@ def _check_totals(table: SheetTable, rows: list[_Votes], *, broken: set[int | No
                 f"a total nearer to the median seat's ({median:.0f})",
                 "Look for a digit too many or too few.", Rule.SEAT_UNUSUAL, Severity.WARNING,
             )  # fmt: skip
+
+
+# Whole percentages of a row sum to 100, give or take their rounding.
+_PERCENT_TOTAL = range(98, 103)
+
+
+def _check_kind(table: SheetTable, rows: list[_Votes]) -> Iterator[Problem]:
+    """Look for tables that are not votes by place: percentages, a row of totals."""
+    totals = [sum(v for v in votes.values() if not math.isnan(v)) for votes in rows]
+    if len(rows) > 2 and all(total in _PERCENT_TOTAL for total in totals):
+        yield Problem(
+            table.file, None, None, "rows that all sum to about 100", "votes, not percentages",
+            "Enter the number of votes.", Rule.VOTES,
+        )  # fmt: skip
+        return
+    regions: dict[str, list[int]] = {}
+    for place, row in enumerate(table.rows):
+        regions.setdefault(as_text(row.cells.get("region", "")), []).append(place)
+    groups = [*regions.values(), list(range(len(rows)))]
+    found = {place: group for group in groups.values() for place in _sums_of_others(rows, totals, group)}
+    for place, group in sorted(found.items()):
+        yield Problem(
+            table.file, table.rows[place].number, None, f"the sum of {len(group) - 1} other rows",
+            "a seat or a region", "Delete rows of totals.", Rule.TOTAL_ROW,
+        )  # fmt: skip
+
+
+def _sums_of_others(rows: list[_Votes], totals: list[float], group: list[int]) -> list[int]:
+    """Find rows that hold, party by party, what the rest of their group holds together."""
+    if len(group) < 3:
+        return []
+    whole = sum(totals[i] for i in group)
+    return [
+        place
+        for place in group
+        if 2 * totals[place] == whole
+        and all(
+            2 * value == sum(rows[i][code] for i in group if not math.isnan(rows[i][code]))
+            for code, value in rows[place].items()
+            if not math.isnan(value)
+        )
+    ]
 
 
 def _check_standing(table: SheetTable, rows: list[_Votes], contest: Contest) -> Iterator[Problem]:

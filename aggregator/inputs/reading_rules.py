@@ -94,3 +94,5 @@ class Rule(StrEnum):
     SEAT_UNUSUAL = "R76"
 
     PUBLISHED_LATE = "R77"
+    TOTAL_ROW = "R78"
+    NEVER_ASKED = "R79"

@@ -44,6 +44,7 @@ def check_doubts(
 ) -> list[Problem]:
     """Find all doubts about the rows that enter."""
     return [
+        *_check_asked(rows, contest, file),
         *_check_blanks(rows, file),
         *_check_samples(rows, file),
         *_check_windows(rows, file),
@@ -68,6 +69,17 @@ def _listed(rows: Sequence[PollRow]) -> str:
         return f"row {numbers[0]}"
     text = ", ".join(str(n) for n in numbers[:5])
     return f"rows {text}" + (f", … ({len(numbers)} in total)" if len(numbers) > 5 else "")
+
+
+def _check_asked(rows: Sequence[PollRow], contest: Contest, file: str) -> Iterator[Problem]:
+    asked = {m for row in rows for code in row.shares for m in contest.members_of(code)}
+    for party in contest.parties:
+        if party.code not in asked:
+            yield _warning(
+                file, 1, party.code, f"no figure for {party.name} in any poll that enters",
+                "a figure in one poll or more", "Its support can only be guessed; add its column.",
+                Rule.NEVER_ASKED,
+            )  # fmt: skip
 
 
 def _check_blanks(rows: Sequence[PollRow], file: str) -> Iterator[Problem]:

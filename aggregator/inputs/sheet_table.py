@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import date
 
@@ -49,7 +49,7 @@ def quoted(cell: Cell) -> str:
 
 
 def build_table(
-    cells: Sequence[Sequence[Cell]], *, file: str, check_width: bool
+    cells: Sequence[Sequence[Cell]], *, file: str, check_width: bool, columns: Collection[str]
 ) -> tuple[SheetTable | None, list[Problem]]:
     """Make a table of raw rows, blank ones included.
 
@@ -60,6 +60,8 @@ def build_table(
     check_width
         Whether a row must have as many cells as the header (a text file), or is padded by its
         program (a workbook).
+    columns
+        Names of known columns.
 
     Returns
     -------
@@ -76,6 +78,9 @@ def build_table(
     header = [as_text(c) for c in header_cells]
     while header and header[-1] == "":
         header.pop()
+    below = None if any(c in columns for c in header) else _header_below(body, columns)
+    if below is not None:
+        return None, [_title_above(file, header_row, header[0], below)]
     problems = _check_header(header, body=body, file=file, row=header_row)
     if problems:
         return None, problems
@@ -92,6 +97,22 @@ def build_table(
             SheetRow(number, {c: v for c, v in zip(header, row, strict=False) if c != "" and v != ""})
         )
     return SheetTable(file, tuple(c for c in header if c), tuple(rows)), problems
+
+
+# A title and a remark or two stand above a header, not a screenful.
+_TITLE_ROWS = 20
+
+
+def _header_below(body: list[tuple[int, Sequence[Cell]]], columns: Collection[str]) -> int | None:
+    """Find the row that looks like a header where the first one does not."""
+    return next((n for n, row in body[:_TITLE_ROWS] if sum(c in columns for c in row) >= 2), None)
+
+
+def _title_above(file: str, row: int, title: str, header_row: int) -> Problem:
+    return Problem(
+        file, row, None, f"{quoted(title)} above the header, which is row {header_row}",
+        "the header in the first row", "Delete the rows above it.", Rule.HEADER,
+    )  # fmt: skip
 
 
 def _check_header(

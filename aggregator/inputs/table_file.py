@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+from collections.abc import Collection
 
 from aggregator.inputs.reading_rules import Rule
 from aggregator.inputs.sheet_table import Cell, SheetTable, build_table
@@ -16,7 +17,9 @@ SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
 _INVISIBLE = "\ufeff\u200b"
 
 
-def read_table(data: bytes, *, file: str, sheet: str) -> tuple[SheetTable | None, list[Problem]]:
+def read_table(
+    data: bytes, *, file: str, sheet: str, columns: Collection[str]
+) -> tuple[SheetTable | None, list[Problem]]:
     """Read a table from the bytes of a file.
 
     Parameters
@@ -27,6 +30,8 @@ def read_table(data: bytes, *, file: str, sheet: str) -> tuple[SheetTable | None
         Its name; the ending says whether it is a workbook (``.xlsx``) or text (``.csv``).
     sheet
         The sheet to take where a workbook has several.
+    columns
+        Names of known columns, by which a header below a title is recognised.
 
     Returns
     -------
@@ -40,7 +45,7 @@ def read_table(data: bytes, *, file: str, sheet: str) -> tuple[SheetTable | None
         check_width = True
     if cells is None:
         return None, problems
-    table, more = build_table(cells, file=file, check_width=check_width)
+    table, more = build_table(cells, file=file, check_width=check_width, columns=columns)
     return table, problems + more
 
 

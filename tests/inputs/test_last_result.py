@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 
 from aggregator.inputs.contest import CountingRule
 from aggregator.inputs.last_result import inherit
-from tests.inputs.desk_folder import CONTEST, RESULT, read, write_folder
+from tests.inputs.desk_folder import CONTEST, RESULT, findings, read, write_folder
 
 
 def result_of(tmp_path, **files: str):
@@ -92,3 +92,13 @@ def test_without_a_last_result_a_contest_of_one_region_can_be_read(tmp_path):
     assert inputs.warnings == ()
     assert list(inputs.polls[["YES", "NO"]].iloc[0]) == pytest.approx([43 / 0.9, 47 / 0.9])
     assert [f.name for f in inputs.files] == ["contest.toml", "polls.csv"]
+
+
+def test_a_total_is_found_where_the_country_has_no_regions(tmp_path):
+    head, tail = CONTEST.split("[[region]]", 1)
+    contest = head.replace('regions = ["MERE"]\n', "") + "[last_result]" + tail.split("[last_result]")[1]
+    polls = "house,start,end,published,sample,HU,UP,OL,OTH\n"
+    polls += "Tarrow Research,2031-02-01,2031-02-05,2031-02-06,1000,40,38,17,5\n"
+    result = "seat,HU,UP,OL,RF,OTH\nN1,110,20,50,5,1\nN2,20,110,50,5,1\nAll,130,130,100,10,2\n"
+    folder = write_folder(tmp_path / "c", contest_toml=contest, polls_csv=polls, result_last_csv=result)
+    assert [(p.row, p.rule.value) for p in findings(folder)] == [(4, "R78")]
