@@ -191,7 +191,7 @@ def _check_kind(table: SheetTable, rows: list[_Votes]) -> Iterator[Problem]:
     for place, row in enumerate(table.rows):
         regions.setdefault(as_text(row.cells.get("region", "")), []).append(place)
     groups = [*regions.values(), list(range(len(rows)))]
-    found = {place: group for group in groups.values() for place in _sums_of_others(rows, totals, group)}
+    found = {place: group for group in groups for place in _sums_of_others(rows, totals, group)}
     for place, group in sorted(found.items()):
         yield Problem(
             table.file, table.rows[place].number, None, f"the sum of {len(group) - 1} other rows",
