@@ -16,7 +16,8 @@ from aggregator.release.draw_summaries import monte_carlo_error
 from aggregator.release.likelihood_words import likelihood_word
 from aggregator.release.rounding import SMALLEST_CHANCE, round_chance
 from aggregator.release.seats_tables import majority_line, seats_in_chamber
-from aggregator.release.table_schemas import CHANCES, Kind, Level, Outcome
+from aggregator.release.table_schemas import CHANCES
+from aggregator.release.table_words import Kind, Level, Outcome
 from models.dimensions import CHAIN, DATE, DRAW, PARTY
 
 Indicator = NDArray[np.float64]

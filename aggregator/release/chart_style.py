@@ -12,7 +12,7 @@ from typing import Any
 import altair as alt
 
 from aggregator.release.codes import Code
-from aggregator.release.table_schemas import Level
+from aggregator.release.table_words import Level
 
 INK = "#1c2a30"
 MUTED = "#5a6a70"

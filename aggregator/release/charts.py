@@ -18,7 +18,7 @@ from aggregator.release.page_tables import WORTH_AGES
 from aggregator.release.poll_points import build_poll_points
 from aggregator.release.rounding import date_text, points_text, share_interval_text, share_text, whole_text
 from aggregator.release.table_rows import largest_code, last_row
-from aggregator.release.table_schemas import Kind, Level
+from aggregator.release.table_words import Kind, Level
 from aggregator.release.worth_chart import build_worth_chart
 
 

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from aggregator.release.codes import Code
 from aggregator.release.draw_summaries import summarise_samples
-from aggregator.release.table_schemas import Kind
+from aggregator.release.table_words import Kind
 
 
 def summarise_codes(

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from datetime import date
 
 from aggregator.inputs.contest import OTHERS, Alliance, Contest
-from aggregator.release.table_schemas import Level
+from aggregator.release.table_words import Level
 
 
 @dataclass(frozen=True)

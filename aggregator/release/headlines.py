@@ -14,7 +14,7 @@ from aggregator.inputs.contest import Contest
 from aggregator.release.likelihood_words import NAMED_LEADER_FROM
 from aggregator.release.rounding import chance_text, date_text, share_interval_text, share_text, whole_text
 from aggregator.release.table_rows import largest_code, likeliest, national_parties
-from aggregator.release.table_schemas import Kind, Level, Outcome
+from aggregator.release.table_words import Kind, Level, Outcome
 from aggregator.release.tables import ReleaseTables
 
 MONTH_DAYS = 30
@@ -129,7 +129,8 @@ def _majority_clause(chances: pd.DataFrame, contest: Contest, majority: int) -> 
     if not alliances:
         return clause
     together = likeliest(chances, Outcome.MAJORITY_ONLY_AS_ALLIANCE, kind=Kind.ON_POLLING_DAY)
-    return f"{clause}, one that only {alliances[together['code']]} as a whole reaches is {_worded(together)}"
+    name = alliances[together["code"]]
+    return f"{clause}; that it takes {name} as a whole to reach one is {_worded(together)}"
 
 
 def _worth_sentence(tables: ReleaseTables, contest: Contest) -> str:

@@ -11,7 +11,7 @@ import pandas as pd
 
 from aggregator.release.chart_style import INK, MUTED, CodeLook, Layout, colour_of, shape_of
 from aggregator.release.rounding import whole_text
-from aggregator.release.table_schemas import Kind, Level
+from aggregator.release.table_words import Kind, Level
 
 ROW = 24
 """Pixels from one row to the next."""

@@ -13,7 +13,7 @@ import pandas as pd
 from aggregator.inputs.contest import Silence
 from aggregator.release.chart_style import GRID, INK, MUTED, CodeLook, Layout, colour_of, shape_of
 from aggregator.release.label_placing import spread_labels
-from aggregator.release.table_schemas import Kind
+from aggregator.release.table_words import Kind
 
 
 @dataclass(frozen=True)
@@ -70,6 +70,7 @@ class _Canvas:
     last_day: pd.Timestamp
     slot: pd.Timedelta
     size: int
+    label_room: int
     labelled_silence: bool
 
     def y(self, field: str) -> alt.Y:
@@ -139,6 +140,7 @@ def _canvas(content: OverTime, dated: pd.DataFrame, final: pd.DataFrame, layout:
         last_day=last_day,
         slot=slot,
         size=layout.font_size,
+        label_room=label_room,
         labelled_silence=layout.long_names,
     )
 
@@ -276,7 +278,9 @@ def _label_layers(content: OverTime, canvas: _Canvas, final: pd.DataFrame, layou
     gap = (canvas.size + 3) * (canvas.top - canvas.low) / canvas.height
     labels["placed"] = spread_labels(labels["mean"], gap=gap, low=canvas.low + 0.4 * gap, high=canvas.top)
     beyond = canvas.width + 14
-    text = alt.Chart(labels).mark_text(align="left", baseline="middle", fontSize=canvas.size, color=INK)
+    text = alt.Chart(labels).mark_text(
+        align="left", baseline="middle", fontSize=canvas.size, color=INK, limit=canvas.label_room
+    )
     leaders = []
     for chosen, colour in (
         (labels[labels["code"] != ""], colour_of(content.looks)),

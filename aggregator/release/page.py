@@ -11,6 +11,7 @@ from markupsafe import Markup
 from aggregator.problems import Problem
 from aggregator.release.cautions import CAUTIONS
 from aggregator.release.chart_files import DrawnChart
+from aggregator.release.chart_style import code_looks
 from aggregator.release.contents import ReleaseContents
 from aggregator.release.method_note import TEMPLATES
 from aggregator.release.page_tables import (
@@ -55,6 +56,7 @@ def build_page(contents: ReleaseContents, *, charts: Sequence[DrawnChart], metho
         contents=contents,
         contest=contents.contest,
         cautions=CAUTIONS,
+        colours={look.name: look.colour for look in code_looks(contents.codes).values()},
         charts={drawn.chart.name: _markup(drawn) for drawn in charts},
         support=support_table(contents),
         regions=regions_table(contents),

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from aggregator.release.table_schemas import Column, TableSchema
+from aggregator.release.table_columns import Column, TableSchema
 
 
 def describe_schema(schema: TableSchema) -> str:

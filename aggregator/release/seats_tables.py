@@ -13,7 +13,8 @@ from aggregator.release.code_summaries import summarise_codes
 from aggregator.release.codes import Code
 from aggregator.release.draw_summaries import stack_samples
 from aggregator.release.rounding import round_chance
-from aggregator.release.table_schemas import SEAT_CHANCES, SEATS, Kind
+from aggregator.release.table_schemas import SEAT_CHANCES, SEATS
+from aggregator.release.table_words import Kind
 from models.dimensions import CHAIN, DATE, DRAW, PARTY, SEAT
 
 

@@ -11,7 +11,8 @@ from aggregator.inputs.contest import Contest
 from aggregator.release.code_summaries import summarise_codes
 from aggregator.release.codes import Code
 from aggregator.release.draw_summaries import stack_samples
-from aggregator.release.table_schemas import SUPPORT, Kind
+from aggregator.release.table_schemas import SUPPORT
+from aggregator.release.table_words import Kind
 from models.dimensions import DATE, PARTY, REGION
 
 COUNTRY = ""

@@ -9,7 +9,8 @@ import numpy as np
 import pandas as pd
 
 from aggregator.errors import FieldfoldError
-from aggregator.release.table_schemas import CAUTION, Column, ColumnType, TableSchema
+from aggregator.release.table_columns import Column, ColumnType, TableSchema
+from aggregator.release.table_schemas import CAUTION
 
 STARTS_A_FORMULA = ("=", "+", "-", "@", "\t", "\r")
 """What makes a spreadsheet run a cell instead of showing it (OWASP, CSV Injection)."""

@@ -6,105 +6,22 @@ them by a test, so that neither can drift away.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-from enum import StrEnum
-from typing import NamedTuple
-
 from aggregator.release.likelihood_words import LIKELIHOOD_WORDS
 from aggregator.release.rounding import CHANCE_DECIMALS, SHARE_DECIMALS_TABLE
-
-
-class ColumnType(StrEnum):
-    """How a column is written and what may stand in it."""
-
-    DATE = "date"
-    CODE = "code"
-    TEXT = "text"
-    WHOLE = "whole number"
-    NUMBER = "number"
-    YES_NO = "yes or no"
-
-
-class Level(StrEnum):
-    """What a code stands for, so that no sum counts anyone twice."""
-
-    PARTY = "party"
-    ALLIANCE = "alliance"
-    OTHERS = "others"
-
-
-class Kind(StrEnum):
-    """Which of two statements a row makes: they are never confused."""
-
-    ON_DATE = "on_date"
-    ON_POLLING_DAY = "on_polling_day"
-
-
-class Outcome(StrEnum):
-    """What a chance is the chance of."""
-
-    MOST_SUPPORT = "most_support"
-    LARGEST = "largest"
-    MAJORITY_ALONE = "majority_alone"
-    MAJORITY_ONLY_AS_ALLIANCE = "majority_only_as_alliance"
-    NO_MAJORITY = "no_majority"
-
-
-class Bounds(NamedTuple):
-    """Smallest and largest value a column may hold."""
-
-    low: float
-    high: float
-
-
-@dataclass(frozen=True)
-class Column:
-    """One column of a table.
-
-    Attributes
-    ----------
-    name, type, unit, meaning
-        As a reader of the table needs them.
-    allowed
-        The only words that may stand in it; empty where any may.
-    bounds
-        Smallest and largest value; None where there is none.
-    decimals
-        Digits after the point; None except for numbers.
-    blank
-        What a blank cell means; None where no cell may be blank.
-    from_register
-        Whether the text comes from the desk's files as typed, and so must be made inert in a spreadsheet.
-    """
-
-    name: str
-    type: ColumnType
-    unit: str
-    meaning: str
-    allowed: tuple[str, ...] = ()
-    bounds: Bounds | None = None
-    decimals: int | None = None
-    blank: str | None = None
-    from_register: bool = False
-
-
-@dataclass(frozen=True)
-class TableSchema:
-    """One table: where it lies in the release, what a row is, its columns in order."""
-
-    path: str
-    one_row_per: str
-    columns: tuple[Column, ...]
-
-    @property
-    def column_names(self) -> tuple[str, ...]:
-        """Names of the columns, in order."""
-        return tuple(column.name for column in self.columns)
-
-
-PERCENT = Bounds(0.0, 100.0)
-PROBABILITY = Bounds(0.0, 1.0)
-ANY_COUNT = Bounds(0.0, float("inf"))
+from aggregator.release.table_columns import (
+    ANY_COUNT,
+    PERCENT,
+    PROBABILITY,
+    Bounds,
+    Column,
+    ColumnType,
+    TableSchema,
+    date_column,
+    number_column,
+    typed_column,
+    whole_column,
+)
+from aggregator.release.table_words import Kind, Level, Outcome
 
 CAUTION = Column(
     "caution",
@@ -115,31 +32,7 @@ CAUTION = Column(
 """The last column of every table of a release whose checks failed."""
 
 
-def _number(
-    name: str,
-    unit: str,
-    meaning: str,
-    *,
-    decimals: int = SHARE_DECIMALS_TABLE,
-    bounds: Bounds | None = PERCENT,
-    blank: str | None = None,
-) -> Column:
-    return Column(name, ColumnType.NUMBER, unit, meaning, bounds=bounds, decimals=decimals, blank=blank)
-
-
-def _whole(name: str, unit: str, meaning: str, *, blank: str | None = None) -> Column:
-    return Column(name, ColumnType.WHOLE, unit, meaning, bounds=ANY_COUNT, decimals=0, blank=blank)
-
-
-def _typed(name: str, meaning: str, *, blank: str | None = None) -> Column:
-    return Column(name, ColumnType.TEXT, "–", meaning, blank=blank, from_register=True)
-
-
-def _date(name: str, meaning: str, *, blank: str | None = None) -> Column:
-    return Column(name, ColumnType.DATE, "ISO 8601", meaning, blank=blank)
-
-
-_DATE = _date("date", "The day the estimate is for; for `on_polling_day` the polling day of the region")
+_DATE = date_column("date", "The day the estimate is for; for `on_polling_day` the polling day of the region")
 _CODE = Column("code", ColumnType.CODE, "–", "Party, alliance or `OTH`, as in `contest.toml`")
 _LEVEL = Column(
     "level",
@@ -159,12 +52,12 @@ _KIND = Column(
 
 
 def _quantiles(unit: str, *, of: str, bounds: Bounds, decimals: int, whole: bool) -> tuple[Column, ...]:
-    quantile = _whole if whole else _number
+    quantile = whole_column if whole else number_column
     options = {} if whole else {"bounds": bounds, "decimals": decimals}
     words = {"q05": "5 %", "q25": "25 %", "q50": "50 % (the median)", "q75": "75 %", "q95": "95 %"}
     return (
-        _number("mean", unit, f"Mean of {of} over the draws", bounds=bounds, decimals=decimals),
-        _number("sd", unit, "Standard deviation over the draws", bounds=bounds, decimals=decimals),
+        number_column("mean", unit, f"Mean of {of} over the draws", bounds=bounds, decimals=decimals),
+        number_column("sd", unit, "Standard deviation over the draws", bounds=bounds, decimals=decimals),
         *(
             quantile(name, unit, f"{of[0].upper()}{of[1:]} is below this with chance {word}", **options)  # type: ignore[arg-type]
             for name, word in words.items()
@@ -222,7 +115,7 @@ CHANCES = TableSchema(
             "Party, or alliance for `majority_only_as_alliance`",
             blank="`no_majority`, which has no code",
         ),
-        _number(
+        number_column(
             "probability",
             "0 to 1",
             "Chance of the outcome: (k + ½)/(S + 1) for k of S draws, so never 0 or 1. A tie for the lead "
@@ -230,7 +123,7 @@ CHANCES = TableSchema(
             decimals=CHANCE_DECIMALS,
             bounds=PROBABILITY,
         ),
-        _number(
+        number_column(
             "mc_error",
             "0 to 1",
             "Monte Carlo standard error of the probability: what another seed may change",
@@ -252,14 +145,14 @@ SEAT_CHANCES = TableSchema(
     "seat and code",
     (
         Column("seat", ColumnType.CODE, "–", "Seat code, as in `result_last.csv`", from_register=True),
-        _typed("name", "Name of the seat", blank="not given"),
+        typed_column("name", "Name of the seat", blank="not given"),
         Column("region", ColumnType.CODE, "–", "Region of the seat"),
         _CODE,
-        _number(
+        number_column(
             "last_share", "percent of the vote", "Share at the last election", blank="did not stand there"
         ),
-        _number("expected_share", "percent of the vote", "Mean share on polling day"),
-        _number(
+        number_column("expected_share", "percent of the vote", "Mean share on polling day"),
+        number_column(
             "chance",
             "0 to 1",
             "Chance of winning the seat on polling day, never 0 or 1",
@@ -273,36 +166,36 @@ HOUSES = TableSchema(
     "public/houses.csv",
     "house, method and code",
     (
-        _typed("house", "The polling organisation"),
-        _typed(
+        typed_column("house", "The polling organisation"),
+        typed_column(
             "method", "The house's label for its way of working", blank="one way of working, or none given"
         ),
         _CODE,
-        _number(
+        number_column(
             "lean",
             "percentage points",
             "What the house reports minus what the average of the houses would report (posterior mean). "
             "A difference, not an error",
             bounds=Bounds(-100.0, 100.0),
         ),
-        _number(
+        number_column(
             "q05", "percentage points", "The lean is below this with chance 5 %", bounds=Bounds(-100.0, 100.0)
         ),
-        _number(
+        number_column(
             "q95",
             "percentage points",
             "The lean is below this with chance 95 %",
             bounds=Bounds(-100.0, 100.0),
         ),
-        _whole("polls", "polls", "Polls of the house in the fit"),
-        _number(
+        whole_column("polls", "polls", "Polls of the house in the fit"),
+        number_column(
             "design_effect",
             "ratio",
             "Posterior mean of the variance of a poll of the house's usual size, over that of a simple "
             "random sample of that size",
             bounds=ANY_COUNT,
         ),
-        _whole("usual_sample", "respondents", "The house's usual sample size"),
+        whole_column("usual_sample", "respondents", "The house's usual sample size"),
     ),
 )
 
@@ -317,7 +210,7 @@ SHELF_LIFE = TableSchema(
     "public/shelf_life.csv",
     "age in days and code",
     (
-        _whole(
+        whole_column(
             "age_days",
             "days",
             "Age of a poll of 1,000 respondents of a typical house, on the day of the run",
@@ -325,7 +218,7 @@ SHELF_LIFE = TableSchema(
         _CODE,
         _LEVEL,
         *(
-            _number(
+            number_column(
                 f"{name}{end}",
                 "respondents",
                 f"{meaning}: {word} over the draws",
@@ -335,19 +228,19 @@ SHELF_LIFE = TableSchema(
             for name, meaning in _WORTH.items()
             for end, word in (("", "median"), ("_q05", "5 % quantile"), ("_q95", "95 % quantile"))
         ),
-        _number(
+        number_column(
             "expected_error",
             "percentage points",
             "Root mean square error to expect of that poll's own figure against the result on polling day",
         ),
-        _number(
+        number_column(
             "error_sampling",
             "percentage points",
             "The part of `expected_error` from sampling and weighting; parts add up in squares",
         ),
-        _number("error_house", "percentage points", "The part from the house's lean"),
-        _number("error_shared_lean", "percentage points", "The part from a lean shared by all houses"),
-        _number("error_drift", "percentage points", "The part from opinion moving until polling day"),
+        number_column("error_house", "percentage points", "The part from the house's lean"),
+        number_column("error_shared_lean", "percentage points", "The part from a lean shared by all houses"),
+        number_column("error_drift", "percentage points", "The part from opinion moving until polling day"),
     ),
 )
 
@@ -355,27 +248,29 @@ POLLS_USED = TableSchema(
     "public/polls_used.csv",
     "poll in the fit",
     (
-        _typed("poll", "Identifier of the poll"),
-        _typed("house", "Who did the fieldwork"),
-        _typed("sponsor", "Who paid for it", blank="not given"),
-        _date("start", "First day of fieldwork", blank="not given"),
-        _date("end", "Last day of fieldwork"),
-        _date("published", "Day of publication", blank="not given; the last day of fieldwork is assumed"),
+        typed_column("poll", "Identifier of the poll"),
+        typed_column("house", "Who did the fieldwork"),
+        typed_column("sponsor", "Who paid for it", blank="not given"),
+        date_column("start", "First day of fieldwork", blank="not given"),
+        date_column("end", "Last day of fieldwork"),
+        date_column(
+            "published", "Day of publication", blank="not given; the last day of fieldwork is assumed"
+        ),
         Column("regions", ColumnType.TEXT, "–", "Regions asked, joined by `+`", blank="the whole country"),
-        _whole("sample", "respondents", "Sample size as reported", blank="not given"),
-        _whole(
+        whole_column("sample", "respondents", "Sample size as reported", blank="not given"),
+        whole_column(
             "respondents", "respondents", "Respondents counted, once each, after the undecided were set aside"
         ),
-        _typed("mode", "How people were asked", blank="not given"),
-        _typed("population", "Who was asked", blank="not given"),
-        _typed("method", "The house's label for its way of working", blank="not given"),
-        _number(
+        typed_column("mode", "How people were asked", blank="not given"),
+        typed_column("population", "Who was asked", blank="not given"),
+        typed_column("method", "The house's label for its way of working", blank="not given"),
+        number_column(
             "undecided",
             "percent",
             "Undecided, set aside before the fit",
             blank="already left out by the house, or not given",
         ),
-        _number(
+        number_column(
             "worth_today",
             "respondents",
             "Fresh respondents of the same house that would tell as much today about the party with most "
@@ -384,7 +279,7 @@ POLLS_USED = TableSchema(
             bounds=ANY_COUNT,
             blank="not worked out",
         ),
-        _typed("source", "Where the poll was published", blank="not given"),
+        typed_column("source", "Where the poll was published", blank="not given"),
     ),
 )
 
@@ -392,20 +287,20 @@ POLLS_WEIGHED = TableSchema(
     "desk/polls_weighed.csv",
     "row of the register",
     (
-        _typed("poll", "Identifier of the poll", blank="not given"),
-        _whole("row", "row", "Row of the register as a spreadsheet counts it (the header is row 1)"),
-        _typed("house", "Who did the fieldwork", blank="not given"),
-        _date("start", "First day of fieldwork", blank="not given"),
-        _date("end", "Last day of fieldwork", blank="not given"),
+        typed_column("poll", "Identifier of the poll", blank="not given"),
+        whole_column("row", "row", "Row of the register as a spreadsheet counts it (the header is row 1)"),
+        typed_column("house", "Who did the fieldwork", blank="not given"),
+        date_column("start", "First day of fieldwork", blank="not given"),
+        date_column("end", "Last day of fieldwork", blank="not given"),
         Column("used", ColumnType.YES_NO, "–", "Whether the row is in the fit", allowed=("yes", "no")),
-        _typed("why_not", "Why the row is not in the fit", blank="it is"),
-        _whole(
+        typed_column("why_not", "Why the row is not in the fit", blank="it is"),
+        whole_column(
             "respondents",
             "respondents",
             "Respondents of this row, after the undecided were set aside",
             blank="not in the fit",
         ),
-        _number(
+        number_column(
             "worth_today",
             "respondents",
             "As in `polls_used.csv`",
@@ -413,7 +308,7 @@ POLLS_WEIGHED = TableSchema(
             bounds=ANY_COUNT,
             blank="not in the fit, or not worked out",
         ),
-        _number(
+        number_column(
             "pareto_k",
             "–",
             "Pareto shape of the poll's importance weights: above 0.7 the model finds the poll hard to "
@@ -421,7 +316,7 @@ POLLS_WEIGHED = TableSchema(
             bounds=Bounds(float("-inf"), float("inf")),
             blank="not worked out",
         ),
-        _typed("warnings", "What was doubtful about the row when it was read", blank="nothing"),
+        typed_column("warnings", "What was doubtful about the row when it was read", blank="nothing"),
     ),
 )
 

@@ -15,6 +15,7 @@ from aggregator.release.houses_table import build_houses_table
 from aggregator.release.poll_tables import build_polls_used_table, build_polls_weighed_table
 from aggregator.release.seats_tables import build_seat_chances_table, build_seats_table
 from aggregator.release.support_table import build_support_table
+from aggregator.release.table_columns import TableSchema
 from aggregator.release.table_schemas import (
     CHANCES,
     HOUSES,
@@ -24,7 +25,6 @@ from aggregator.release.table_schemas import (
     SEATS,
     SHELF_LIFE,
     SUPPORT,
-    TableSchema,
 )
 
 

@@ -10,7 +10,7 @@ from aggregator.release.headlines import build_headlines
 from aggregator.release.rounding import chance_text, share_interval_text, share_text, whole_text
 from aggregator.release.table_files import round_table
 from aggregator.release.table_rows import last_row, likeliest, national_parties
-from aggregator.release.table_schemas import Kind, Outcome
+from aggregator.release.table_words import Kind, Outcome
 from aggregator.release.tables import ReleaseTables, build_tables
 from tests.made_up_draws import made_up_draws
 from tests.release.made_up_desk import (
@@ -79,8 +79,8 @@ def test_the_numbers_of_the_seats_sentence_are_those_of_the_tables(tables, input
         f"{whole_text(row['mean'])} of 24 "
         f"(90 % interval {whole_text(row['q05'])} to {whole_text(row['q95'])}); "
         "a majority of 13 for Ferry Party alone is "
-        f"{alone['likelihood']} ({chance_text(alone['probability'])}), "
-        "one that only Glow Pact as a whole reaches is "
+        f"{alone['likelihood']} ({chance_text(alone['probability'])}); "
+        "that it takes Glow Pact as a whole to reach one is "
         f"{together['likelihood']} ({chance_text(together['probability'])})."
     )
 

@@ -12,7 +12,8 @@ from aggregator.release.codes import contest_codes
 from aggregator.release.poll_tables import build_polls_used_table, build_polls_weighed_table
 from aggregator.release.seats_tables import majority_line
 from aggregator.release.table_files import SchemaError, check_table, csv_text, inert_cell, round_table
-from aggregator.release.table_schemas import ALL_SCHEMAS, SUPPORT, Kind, Level, Outcome
+from aggregator.release.table_schemas import ALL_SCHEMAS, SUPPORT
+from aggregator.release.table_words import Kind, Level, Outcome
 from aggregator.release.tables import build_tables
 from tests.made_up_draws import made_up_contest, made_up_draws
 from tests.release.made_up_desk import (

@@ -1,0 +1,30 @@
+"""The closed lists of words that tables of a release use."""
+
+from __future__ import annotations
+
+from enum import StrEnum
+
+
+class Level(StrEnum):
+    """What a code stands for, so that no sum counts anyone twice."""
+
+    PARTY = "party"
+    ALLIANCE = "alliance"
+    OTHERS = "others"
+
+
+class Kind(StrEnum):
+    """Which of two statements a row makes: they are never confused."""
+
+    ON_DATE = "on_date"
+    ON_POLLING_DAY = "on_polling_day"
+
+
+class Outcome(StrEnum):
+    """What a chance is the chance of."""
+
+    MOST_SUPPORT = "most_support"
+    LARGEST = "largest"
+    MAJORITY_ALONE = "majority_alone"
+    MAJORITY_ONLY_AS_ALLIANCE = "majority_only_as_alliance"
+    NO_MAJORITY = "no_majority"
