@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import re
 from collections.abc import Collection
 
 from aggregator.inputs.reading_rules import Rule
@@ -12,6 +13,9 @@ from aggregator.inputs.workbook_cells import read_workbook_cells
 from aggregator.problems import Problem, Severity
 
 SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
+
+# A word with a letter beyond ASCII, by which a reader sees whether the encoding was guessed right.
+_FOREIGN_WORD = re.compile(r"[\w.-]*[^\x00-\x7f][\w.-]*")
 
 # str.strip() already takes no-break spaces; these two are invisible and are left behind by copying.
 _INVISIBLE = "\ufeff\u200b"
@@ -69,8 +73,8 @@ def decode_text(data: bytes, *, file: str) -> tuple[str | None, list[Problem]]:
         text = data.decode("cp1252")
     except UnicodeDecodeError:
         return None, [_not_text(file)]
-    row, line = next((i, s) for i, s in enumerate(text.splitlines(), start=1) if not s.isascii())
-    word = next(w for w in line.replace(",", " ").replace(";", " ").split() if not w.isascii())
+    row, line = next((i, s) for i, s in enumerate(re.split("\r\n|\r|\n", text), start=1) if not s.isascii())
+    word = _FOREIGN_WORD.findall(line)[0]
     warning = Problem(
         file, row, None, f'text that is not UTF-8; read as Windows-1252 ("{word}")', "UTF-8",
         "Check that the word is right, and save the file as CSV UTF-8.", Rule.FILE_ENCODING, Severity.WARNING,

@@ -212,7 +212,7 @@ def test_merged_cells_are_reported(tmp_path):
     assert [(p.row, p.rule.value) for p in findings(folder)] == [(4, "R05"), (5, "R24")]
 
 
-@settings(max_examples=40, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=20, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(order=st.permutations(range(1, 6)))
 def test_the_order_of_rows_never_matters(order, tmp_path):
     header, *rows = POLLS.splitlines()
@@ -227,7 +227,7 @@ def test_the_order_of_rows_never_matters(order, tmp_path):
     assert (other.run_date, other.unpublished) == (plain.run_date, plain.unpublished)
 
 
-@settings(max_examples=25, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=12, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(seed=st.randoms(use_true_random=False))
 def test_the_order_of_columns_never_matters(seed, tmp_path):
     frame = pd.read_csv(io.StringIO(POLLS), dtype=str, keep_default_na=False)

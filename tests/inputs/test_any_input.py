@@ -1,0 +1,85 @@
+"""Whatever stands in a cell or behind a key, the desk gets a report, never an internal error."""
+
+from __future__ import annotations
+
+import csv
+import io
+
+import pytest
+from hypothesis import HealthCheck, example, given, settings
+from hypothesis import strategies as st
+
+from tests.inputs.desk_folder import CONTEST, POLLS, RESULT, findings, write_folder
+
+ODD_CELLS = st.one_of(
+    st.text(max_size=12).filter(lambda t: "\x00" not in t),
+    st.sampled_from(
+        ["0", "-1", "1e9", "nan", "inf", "1,024", "1.024", "34,5", "34.5%", "<1", "99999999999999999999", "٣",
+         "2031-02-29", "0000-00-00", "31/12/9999", "04/05/2031", "23/04/2031", "+", "NORTH+", "OTH", "ALL",
+         "K-1", "M-1", "yes", "no", "withdrawn", "vote", "exit", "seats_only", "TRUE", '"', "\ufeff", "  "]
+    ),
+)  # fmt: skip
+
+ODD_VALUES = st.sampled_from(
+    ["0", "-1", "1e400", "nan", "true", '""', '"x"', '"HU"', "[]", '["HU"]', '[["HU"]]', "{}", "{ HU = 1 }",
+     "2031-05-18", "2031-05-18T10:00:00", "0001-01-01", "9999-12-31", '"2031-05-18"', "10:00:00", "[{}]"]
+)  # fmt: skip
+
+SLOW_SETUP = [HealthCheck.function_scoped_fixture]
+
+
+def with_cells(text: str, changes: list[tuple[int, int, str]]) -> str:
+    rows = list(csv.reader(io.StringIO(text)))
+    for row, column, cell in changes:
+        rows[row % len(rows)][column % len(rows[0])] = cell
+    stream = io.StringIO()
+    csv.writer(stream).writerows(rows)
+    return stream.getvalue()
+
+
+CHANGES = st.lists(st.tuples(st.integers(0, 50), st.integers(0, 50), ODD_CELLS), min_size=1, max_size=3)
+
+
+@settings(max_examples=60, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(changes=CHANGES)
+def test_any_cells_in_the_register(changes, tmp_path):
+    findings(write_folder(tmp_path / "c", polls_csv=with_cells(POLLS, changes).encode("utf-8", "replace")))
+
+
+@settings(max_examples=40, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(changes=CHANGES)
+def test_any_cells_in_the_last_result(changes, tmp_path):
+    text = with_cells(RESULT, changes).encode("utf-8", "replace")
+    findings(write_folder(tmp_path / "c", result_last_csv=text))
+
+
+@settings(max_examples=60, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(line=st.integers(0, 60), value=ODD_VALUES)
+def test_any_value_in_the_contest(line, value, tmp_path):
+    lines = CONTEST.splitlines()
+    keyed = [i for i, text in enumerate(lines) if "=" in text]
+    place = keyed[line % len(keyed)]
+    lines[place] = f"{lines[place].split('=')[0]}= {value}"
+    findings(write_folder(tmp_path / "c", contest_toml="\n".join(lines)))
+
+
+@settings(max_examples=30, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(start=st.integers(0, 600), length=st.integers(1, 300))
+def test_any_torn_file(start, length, tmp_path):
+    findings(
+        write_folder(
+            tmp_path / "c",
+            contest_toml=CONTEST[:start] + CONTEST[start + length :],
+            polls_csv=POLLS[:start] + POLLS[start + length :],
+            result_last_csv=RESULT[:start] + RESULT[start + length :],
+        )
+    )
+
+
+@pytest.mark.parametrize("name", ["contest.toml", "polls.csv", "polls.xlsx", "result_last.csv"])
+@settings(max_examples=15, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(data=st.binary(max_size=200))
+@example(data=b"\xa0")
+def test_any_bytes_at_all(name, data, tmp_path):
+    files: dict[str, str | bytes | None] = {"polls.csv": None} if name == "polls.xlsx" else {}
+    assert findings(write_folder(tmp_path / "c", **(files | {name: data})))
