@@ -3,13 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import asdict, dataclass, replace
+from dataclasses import asdict, dataclass
 from datetime import date
 from pathlib import Path
 
 import numpy as np
 import pandas as pd
-import xarray as xr
 
 from aggregator.estimate.fit import Fit, fit_contest
 from aggregator.inputs.contest import CountingRule

@@ -174,6 +174,6 @@ class ElectionArrays:
         )
 
 
-def _require(holds: bool, message: str) -> None:
+def _require(holds: bool | np.bool_, message: str) -> None:
     if not holds:
         raise ModelInputError(message)

@@ -74,7 +74,7 @@ def build_geometry(arrays: ElectionArrays) -> Geometry:
         ),
         region=_block(
             design=region_design,
-            precision_root=np.kron(_walk_root(knots.region_step), np.eye(region_contrast.shape[1])),
+            precision_root=_per_contrast(_walk_root(knots.region_step), region_contrast.shape[1]),
             weight=weight,
             grid=rows.region_mix,
         )
@@ -109,6 +109,11 @@ def _walk_root(step: Floats) -> Floats:
     """Rows of L turn a random walk without its first knot into independent unit steps."""
     size = len(step)
     return (np.eye(size) - np.eye(size, k=-1)) / np.sqrt(step)[:, None]
+
+
+def _per_contrast(walk_root: Floats, contrasts: int) -> Floats:
+    """Give every contrast the same walk, independent of the others'."""
+    return np.asarray(np.kron(walk_root, np.eye(contrasts)), dtype=np.float64)
 
 
 def _region_design(rows: RowArrays, contrast: Floats) -> Floats:

@@ -9,8 +9,8 @@ then close to a normal with precision
 .. math:: \Lambda_j = \mathrm{diag}(1/\sigma^2) + e_j(\mathrm{diag}\,m - m m^\top)
 
 and mean :math:`\Lambda_j^{-1} r_j`. The sampler moves in g, with c = S g + S Sᵀ r and S Sᵀ = Λ⁻¹.
-Λ is a diagonal minus a matrix of rank one, so its root has a closed form and costs no factorisation. The model
-itself does not change: c stays normal with scale σ, and only the coordinates of the sampler do.
+Λ is a diagonal minus a matrix of rank one, so its root has a closed form and costs no factorisation. The
+model itself does not change: c stays normal with scale σ, and only the coordinates of the sampler do.
 
 All functions below work on numpy arrays and on pytensor tensors alike, with leading dims of any
 number in numpy: the sampler and the code that turns its draws into support share one formula.
@@ -69,7 +69,9 @@ def modes_from_coordinates(
     return diagonal * outward(coordinates + outward(diagonal * pull))
 
 
-def coordinates_from_modes(modes: Array, *, scale: Array, information: Array, share: Array, pull: Array) -> Array:
+def coordinates_from_modes(
+    modes: Array, *, scale: Array, information: Array, share: Array, pull: Array
+) -> Array:
     """Turn modes c into sampling coordinates g; the inverse of :func:`modes_from_coordinates`."""
     diagonal, outward, inward = _root(scale, information, share)
     return inward(modes / diagonal) - outward(diagonal * pull)
@@ -115,7 +117,9 @@ def _log_density(modes: Array, scale: Array, information: Array, share: Array, p
     return (-0.5 * (modes / scale) ** 2 - pt.log(scale) - 0.5 * np.log(2 * np.pi)).sum(axis=(-1, -2))
 
 
-def _draw(scale: Array, information: Array, share: Array, pull: Array, rng: Any = None, size: Any = None) -> Array:
+def _draw(
+    scale: Array, information: Array, share: Array, pull: Array, rng: Any = None, size: Any = None
+) -> Array:
     return rng.normal(size=np.shape(pull)) * scale
 
 

@@ -1,7 +1,7 @@
 """How much less a poll tells than a simple random sample of its size.
 
-deff = κ + (N − 1) ρ, with κ ≥ 1 what weighting costs (Kish 1965, *Survey Sampling*), ρ a floor of error that no sample
-size removes, and N the size of the whole poll, so that entering a poll as its regional rows counts
+deff = κ + (N − 1) ρ, with κ ≥ 1 what weighting costs (Kish 1965, *Survey Sampling*), ρ a floor of error that
+no sample size removes, and N the size of the whole poll, so that entering a poll as its regional rows counts
 nobody twice. Polls tell deff at a house's usual size well, κ and ρ apart hardly at all.
 """
 

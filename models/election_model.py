@@ -1,8 +1,8 @@
 """The election model: one hierarchical model of several polls over time, as a ``pm.Model``.
 
-Support is θ_{r,t} ∝ exp(a_t) · E_{r,t} with E_{r,t} = exp(b_r + d_{r,t}): the national swing, and a region's own support from
-its last result and its own swing. Between knots a moves in straight lines in log support, E in straight lines. Polls see θ
-through the shared lean and their house's lean, with their design effect.
+Support is θ_{r,t} ∝ exp(a_t) · E_{r,t} with E_{r,t} = exp(b_r + d_{r,t}): the national swing, and a region's
+own support from its last result and its own swing. Between knots a and E move in straight lines. Polls see
+θ through the shared lean and their house's lean, with their design effect.
 """
 
 from __future__ import annotations
@@ -214,7 +214,7 @@ def _national_swing(
     pull = data["national_pull"]
     if lean is not None or start is not None:
         beside = beside + pt.zeros_like(data["lean_loadings"][:, 0])[:, None]
-        # Polls see walk + lean + start: the walk's coordinates follow the others, or the sampler meets a ridge.
+        # Polls see walk + lean + start: the walk's coordinates follow the others, or there is a ridge.
         pull = pull - answer_information(pt.dot(data["national_crossing"], beside), share=data["pilot_share"])
     modes = add_modes(
         "national_modes",
@@ -232,14 +232,16 @@ def _national_swing(
 def _region_support(
     geometry: Geometry, data: dict[str, Array], drift: Array, region_start: Array | None, priors: Priors
 ) -> Array:
-    """Each region's own support E at the regional knots, zero for absent parties; dims (knot, region, party)."""
+    """Each region's own support E at the regional knots, zero where absent; dims (knot, region, party)."""
     base = data["last_log_share"] if region_start is None else data["last_log_share"] + region_start
     if geometry.region is None:
         return (data["standing"] * pt.exp(base))[None]
     ratio = pm.Normal("region_ratio_log", priors.region_ratio_log_median, priors.region_ratio_log_sd)
     pull = data["region_pull"]
     if region_start is not None:
-        pull = pull - answer_information(pt.dot(data["region_crossing"], region_start), share=data["pilot_share"])
+        pull = pull - answer_information(
+            pt.dot(data["region_crossing"], region_start), share=data["pilot_share"]
+        )
     modes = add_modes(
         "region_modes",
         scale=drift * pt.exp(ratio),

@@ -1,10 +1,10 @@
 r"""From opinion to published figures.
 
 A row asks in a mix W of regions and reports a partition A of the parties. Its expected shares are
-q = A Σ_r W_r softmax(opinion_r + leans), rescaled over the cells it has, and its answers are Dirichlet-multinomial with
-precision α = (n − deff)/(deff − 1), whose variance is q(1 − q)·deff/n. Written with log-gamma functions, weighted
-percentages × n need not be whole, and merging cells is exact. The multinomial coefficient, which no
-parameter enters, is left out.
+q = A Σ_r W_r softmax(opinion_r + leans), rescaled over the cells it has, and its answers are
+Dirichlet-multinomial with precision α = (n − deff)/(deff − 1), whose variance is q(1 − q)·deff/n. Written
+with log-gamma functions, weighted percentages × n need not be whole, and merging cells is exact. The
+multinomial coefficient, which no parameter enters, is left out.
 
 A figure below two of its house's rounding steps is only known to lie between two counts: the
 beta-binomial probability of that interval takes its place ("0 %" means "below half a step").
@@ -19,6 +19,7 @@ from typing import Any
 import numpy as np
 import pymc as pm
 import pytensor.tensor as pt
+from scipy.special import gammaln
 
 from models.arrays import Floats, RowArrays
 
@@ -31,7 +32,7 @@ MOST_COUNTS = 12
 
 
 def cell_shares(share: Array, *, partition: Array, used: Array) -> Array:
-    """Expected share of each cell, rescaled over the cells of the row; dims (…, row, cell), one in unused cells."""
+    """Expected share of each cell, rescaled over the row's cells; one if unused; dims (…, row, cell)."""
     cells = (partition * share[..., None, :]).sum(axis=-1) * used
     return cells / cells.sum(axis=-1, keepdims=True) + (1 - used)
 
@@ -44,7 +45,7 @@ def answer_precision(*, respondents: Array, design_effect: Array, larger: Callab
 def answers_log_density(
     answers: Array, *, cells: Array, precision: Array, kept: Array, log_gamma: Callable
 ) -> Array:
-    """Dirichlet-multinomial log density of each row over its kept cells, without its coefficient; dims (…, row)."""
+    """Dirichlet-multinomial log density of each row's kept cells, without its coefficient; dims (…, row)."""
     weight = precision[..., None] * cells
     kept_weight = (weight * kept).sum(axis=-1)
     kept_answers = (answers * kept).sum(axis=-1)
@@ -70,7 +71,8 @@ def small_cells_log_density(
     counts
         Counts inside the interval, dims (small, count).
     log_count_weight
-        Log of the coefficient and of the number of counts each stands for, dims (small, count); very negative for padding.
+        Log of the coefficient and of the number of counts each stands for, dims (small, count); very
+        negative for padding.
     weight, precision, respondents
         α q of the cell, α and n of its row, dims (…, small).
     """
@@ -98,8 +100,6 @@ class SmallCounts:
 
 def small_counts(rows: RowArrays) -> SmallCounts:
     """Counts inside each interval and the log of their coefficients."""
-    from scipy.special import gammaln
-
     size = len(rows.small_row)
     counts = np.zeros((size, MOST_COUNTS))
     log_weight = np.full((size, MOST_COUNTS), -1e10)
@@ -136,7 +136,9 @@ def add_answers(*, answers: Array, cells: Array, precision: Array, kept: Array) 
         gamma = rng.gamma(np.maximum(weight, 1e-12)) * (kept > 0)
         share = gamma / np.maximum(gamma.sum(axis=-1, keepdims=True), 1e-300)
         total = np.round((answers.get_value() * kept).sum(axis=-1)).astype(int)
-        return np.stack([rng.multinomial(n, p / p.sum()) for n, p in zip(total, share, strict=True)]).astype(float)
+        return np.stack([rng.multinomial(n, p / p.sum()) for n, p in zip(total, share, strict=True)]).astype(
+            float
+        )
 
     return pm.CustomDist(
         "answers",
@@ -155,7 +157,9 @@ def add_small_cells(
 ) -> Array:
     """Put the interval cells into the current model."""
 
-    def log_density(value: Array, weight: Array, precision: Array, respondents: Array, log_count_weight: Array) -> Array:
+    def log_density(
+        value: Array, weight: Array, precision: Array, respondents: Array, log_count_weight: Array
+    ) -> Array:
         return small_cells_log_density(
             value,
             log_count_weight=log_count_weight,
@@ -168,7 +172,12 @@ def add_small_cells(
         )
 
     def draw(
-        weight: Array, precision: Array, respondents: Array, log_count_weight: Array, rng: Any = None, size: Any = None
+        weight: Array,
+        precision: Array,
+        respondents: Array,
+        log_count_weight: Array,
+        rng: Any = None,
+        size: Any = None,
     ) -> Array:
         chance = rng.beta(weight, np.maximum(precision - weight, 1e-9))
         count = rng.binomial(np.round(respondents).astype(int), chance).astype(float)

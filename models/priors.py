@@ -19,10 +19,9 @@ class Priors:
     Attributes
     ----------
     drift_log_median, drift_log_sd
-        National drift per √week. .035 at 15 % is .45 points a week, the order that daily tracking of
-        large parties shows (the exact fit of the Australian 2004–07 register gives .32–.42 points per √day for a
-        party at 44 %, about .9–1.1 points a week; at 44 % this prior's median is .5 and its 90 %
-        interval .19–1.3).
+        National drift per √week. .035 at 15 % is half a point a week, the order that tracking of large
+        parties shows: an exact fit of a local-level model to an open register of 2004–07 gives .9–1.1
+        points a week for a party at 44 %, where this prior has median .7 and 90 % interval .25–1.8.
     region_ratio_log_median, region_ratio_log_sd
         A region's own drift over the national one: about half, with a wide range.
     house_log_median, house_log_sd

@@ -3,8 +3,9 @@ r"""The error that all polls share, which polls alone cannot see.
 .. math:: \psi(t) = l_p\,(\cos(f\Omega)\,u + \sin(f\Omega)\,v), \quad u, v \sim N(0, I)
 
 with f running from 0 at the last result to 1 on polling day and Ω the arc cosine of the assumed correlation
-between the two. The variance is l_p² at every time. l_p goes as 1/√p in log units, hence as √(p(1−p)) in share, for a
-party and for any sum of parties. With few houses their unseen common mean is a shared error too: τ_p²/H is added to the variance.
+between the two. The variance is l_p² at every time. l_p goes as 1/√p in log units, hence as √(p(1−p)) in
+share, for a party and for any sum of parties. With few houses their unseen common mean is a shared error too:
+τ_p²/H is added to the variance.
 """
 
 from __future__ import annotations
@@ -26,7 +27,9 @@ def lean_loadings(clock: Floats, *, correlation: float) -> Floats:
     return np.stack([np.cos(clock * angle), np.sin(clock * angle)], axis=-1)
 
 
-def lean_scale(*, shared_lean: Array, reference_share: Array, house_scale: Array, house_count: Array) -> Array:
+def lean_scale(
+    *, shared_lean: Array, reference_share: Array, house_scale: Array, house_count: Array
+) -> Array:
     """Standard deviation l_p of the shared lean, dims (party), unit: log support."""
     return (shared_lean**2 / reference_share + house_scale**2 / house_count) ** 0.5
 

@@ -1,0 +1,1 @@
+"""From checked desk inputs to posterior draws: arrays, fit, checks."""

@@ -6,14 +6,12 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
-import pymc as pm
 import xarray as xr
 from threadpoolctl import threadpool_limits
 
-from aggregator.estimate.log_density import LogDensity, compile_log_density
+from aggregator.estimate.compiled_election import CompiledElection, compile_election
 from aggregator.estimate.model_arrays import build_arrays
-from aggregator.estimate.parameters import Parameters, read_parameters
-from aggregator.estimate.pilot import centre_on_pilot
+from aggregator.estimate.parameters import Parameters
 from aggregator.estimate.poll_fit import pareto_k_by_poll
 from aggregator.estimate.sampler_checks import (
     Convergence,
@@ -22,15 +20,13 @@ from aggregator.estimate.sampler_checks import (
     judge_fit,
     only_needs_more_draws,
 )
-from aggregator.estimate.sampling import ChainPlan, sample_chains
+from aggregator.estimate.sampling import ChainPlan
 from aggregator.estimate.support import series_dates, summarise_support
 from aggregator.inputs.contest import ModelOverrides
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.settings import RunSettings
 from aggregator.verdict import Verdict
-from models.arrays import ElectionArrays, Floats
-from models.block_geometry import Geometry, build_geometry
-from models.election_model import build_election_model
+from models.arrays import ElectionArrays
 from models.priors import Priors, shared_lean_scale
 
 Progress = Callable[[str, float], None]
@@ -76,11 +72,13 @@ def fit_contest(
     *,
     settings: RunSettings,
     limits: Limits | None = None,
+    continue_short_fits: bool = True,
     progress: Progress = lambda _stage, _part: None,
 ) -> Fit:
     """Fit one contest.
 
-    A fit that misses nothing but R-hat or effective sample size is continued once: the same chains, twice as long.
+    A fit that misses nothing but R-hat or effective sample size is continued once: the same chains, twice
+    as long.
 
     Parameters
     ----------
@@ -90,6 +88,8 @@ def fit_contest(
         Length and seed.
     limits
         What the fit must meet.
+    continue_short_fits
+        Whether to run such a fit on; a study that only needs rough draws does not.
     progress
         Called with the stage's name and its finished part, 0–1.
 
@@ -99,95 +99,69 @@ def fit_contest(
         If a sampling process died.
     """
     limits = limits or Limits()
-    # One thread for linear algebra: sums in another order would change the last digit, and the chains with it.
+    # One thread for linear algebra: sums in another order would change the last digit, then the chains.
     with threadpool_limits(1):
         progress("building the model", 0.0)
-        arrays = build_arrays(inputs)
-        priors = _priors(inputs.contest.model)
-        geometry = build_geometry(arrays)
-        model = build_election_model(
-            arrays, geometry=geometry, priors=priors, shared_lean=inputs.contest.model.shared_lean
+        election = compile_election(
+            build_arrays(inputs),
+            priors=_priors(inputs.contest.model),
+            shared_lean=inputs.contest.model.shared_lean,
         )
-        density = compile_log_density(model)
-        start = centre_on_pilot(model, density, arrays=arrays, geometry=geometry, priors=priors)
-        run = _Run(inputs, arrays, geometry, priors, model, density, start, progress)
-        fit = run.sample(settings, limits=limits)
-        if only_needs_more_draws(fit.convergence, limits=limits):
-            fit = run.sample(replace(settings, draws=2 * settings.draws), limits=limits)
+        fit = _sample(inputs, election, settings=settings, limits=limits, progress=progress)
+        if continue_short_fits and only_needs_more_draws(fit.convergence, limits=limits):
+            longer = replace(settings, draws=2 * settings.draws)
+            fit = _sample(inputs, election, settings=longer, limits=limits, progress=progress)
     return fit
 
 
-@dataclass(frozen=True)
-class _Run:
-    """A built and compiled contest, ready to be sampled at any length."""
-
-    inputs: DeskInputs
-    arrays: ElectionArrays
-    geometry: Geometry
-    priors: Priors
-    model: pm.Model
-    density: LogDensity
-    start: Floats
-    progress: Progress
-
-    def sample(self, settings: RunSettings, *, limits: Limits) -> Fit:
-        streams = np.random.SeedSequence(settings.seed).spawn(2)
-        chains = sample_chains(
-            self.density,
-            start=self.start,
-            plan=ChainPlan(
-                chains=settings.chains,
-                tune=settings.tune,
-                draws=settings.draws,
-                seed=int(streams[CHAINS_STREAM].generate_state(1)[0]),
-            ),
-            progress=lambda part: self.progress("drawing from the model", part),
-        )
-        self.progress("summarising the draws", 0.0)
-        contest = self.inputs.contest
-        pulls = {
-            name: self.model[name].get_value()
-            for name in ("national_pull", "region_pull", "house_pull")
-            if name in self.model.named_vars
-        }
-        parameters = read_parameters(
-            chains["position"].to_numpy().reshape(-1, self.density.layout.size),
-            layout=self.density.layout,
-            pulls=pulls,
-            arrays=self.arrays,
-            geometry=self.geometry,
-            priors=self.priors,
-        )
-        draws = summarise_support(
-            parameters,
-            arrays=self.arrays,
+def _sample(
+    inputs: DeskInputs,
+    election: CompiledElection,
+    *,
+    settings: RunSettings,
+    limits: Limits,
+    progress: Progress,
+) -> Fit:
+    contest, arrays = inputs.contest, election.arrays
+    streams = np.random.SeedSequence(settings.seed).spawn(2)
+    parameters, chains = election.sample(
+        ChainPlan(
             chains=settings.chains,
-            dates=series_dates(
-                first_fieldwork=self.inputs.polls["start"].min().date(), run_date=self.inputs.run_date
-            ),
-            polling_day=contest.polling_day,
-            shared_lean=self.priors.shared_lean if contest.model.shared_lean else 0.0,
-            rng=np.random.default_rng(streams[OUTPUT_STREAM]),
-        )
-        draws.attrs |= {
-            "run_date": self.inputs.run_date.isoformat(),
-            "polling_day": contest.polling_day.isoformat(),
-            "seed": settings.seed,
-        }
-        self.progress("checking the draws", 0.0)
-        convergence = check_convergence(
-            draws.drop_vars(["kappa", "rho"]), divergences=int(chains["diverging"].sum())
-        )
-        return Fit(
-            draws=draws,
-            arrays=self.arrays,
-            priors=self.priors,
-            parameters=parameters,
-            convergence=convergence,
-            verdict=judge_fit(convergence, limits=limits),
-            pareto_k=pareto_k_by_poll(parameters, arrays=self.arrays, chains=settings.chains),
-            settings=settings,
-        )
+            tune=settings.tune,
+            draws=settings.draws,
+            seed=int(streams[CHAINS_STREAM].generate_state(1)[0]),
+        ),
+        progress=lambda part: progress("drawing from the model", part),
+    )
+    progress("summarising the draws", 0.0)
+    draws = summarise_support(
+        parameters,
+        arrays=arrays,
+        chains=settings.chains,
+        dates=series_dates(first_fieldwork=inputs.polls["start"].min().date(), run_date=inputs.run_date),
+        polling_day=contest.polling_day,
+        shared_lean=election.priors.shared_lean if contest.model.shared_lean else 0.0,
+        rng=np.random.default_rng(streams[OUTPUT_STREAM]),
+    )
+    draws.attrs |= {
+        "run_date": inputs.run_date.isoformat(),
+        "polling_day": contest.polling_day.isoformat(),
+        "seed": settings.seed,
+    }
+    progress("checking the draws", 0.0)
+    convergence = check_convergence(
+        draws.drop_vars(["kappa", "rho"]), divergences=int(chains["diverging"].sum())
+    )
+    return Fit(
+        draws=draws,
+        arrays=arrays,
+        priors=election.priors,
+        parameters=parameters,
+        convergence=convergence,
+        verdict=judge_fit(convergence, limits=limits),
+        pareto_k=pareto_k_by_poll(parameters, arrays=arrays, chains=settings.chains),
+        settings=settings,
+    )
 
 
 def _priors(overrides: ModelOverrides) -> Priors:

@@ -35,7 +35,7 @@ def build_knots(
     """
     span = (polling_day - first_fieldwork).days
     national = _days_back(span, weekly_stretch=WEEKLY_STRETCH_DAYS)
-    region = np.arange(0, span + REGION_STEP_DAYS, REGION_STEP_DAYS)
+    region = np.arange(0, span + REGION_STEP_DAYS, REGION_STEP_DAYS, dtype=float)
     start = (polling_day - last_result).days if last_result is not None else None
     national_day, region_day = (_forward(back, start) for back in (national, region))
     length = national_day[-1]

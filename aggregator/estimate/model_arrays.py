@@ -101,9 +101,9 @@ def last_shares(inputs: DeskInputs) -> LastShares:
         if len(regions) == 1
         else table["region"]
     )
-    votes = votes.groupby(region).sum().reindex(regions).to_numpy(float)
+    counts = votes.groupby(region).sum().reindex(regions).to_numpy(float)
     return LastShares(
-        by_region=votes / votes.sum(axis=1, keepdims=True), turnout=votes.sum(axis=1) / votes.sum()
+        by_region=counts / counts.sum(axis=1, keepdims=True), turnout=counts.sum(axis=1) / counts.sum()
     )
 
 

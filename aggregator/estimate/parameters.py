@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -28,7 +29,8 @@ class Parameters:
     walk
         National walk at the knots plus free national starts, leans left out, dims (sample, knot, party).
     region
-        Regional deviations at the regional knots plus free regional starts, dims (sample, knot, region, party).
+        Regional deviations at the regional knots plus free regional starts, dims (sample, knot, region,
+        party).
     lean
         Shared lean at the national knots, dims (sample, knot, party).
     house
@@ -135,7 +137,7 @@ def read_parameters(
 
 
 def _lean(
-    part, layout: Layout, house_scale: Floats, arrays: ElectionArrays, priors: Priors
+    part: Callable[[str], Floats], layout: Layout, house_scale: Floats, arrays: ElectionArrays, priors: Priors
 ) -> tuple[Floats, Floats, Floats]:
     """The lean at the knots, its scale, and the lean at the register's middle."""
     knots = arrays.knots

@@ -1,7 +1,7 @@
 """A pilot: the posterior mode of the support paths and leans with the scales held at their prior medians.
 
-The pilot moves the sampler's coordinates so that their origin is that mode. It changes no density: the test of
-this module compares both.
+The pilot moves the sampler's coordinates so that their origin is that mode. It changes no density: the test
+of this module compares both.
 """
 
 from __future__ import annotations

@@ -12,7 +12,7 @@ from aggregator.inputs.contest import Contest
 from aggregator.inputs.desk_inputs import DeskInputs
 from models.arrays import Floats, Indices
 
-# A regional row below this many respondents cannot bear its poll's design effect; such rows of one poll are merged.
+# A regional row below this many respondents cannot bear its poll's design effect; such rows are merged.
 LEAST_RESPONDENTS = 30
 # A figure below this many rounding steps of its house is only known as an interval.
 SMALL_STEPS = 2
@@ -97,7 +97,7 @@ def _columns(contest: Contest) -> dict[str, tuple[str, ...]]:
 
 
 def _merge_small(rows: list[Row]) -> list[Row]:
-    """Merge rows of one poll that are too small to stand alone, smallest first, where they have the same cells."""
+    """Merge rows of one poll that are too small to stand alone, smallest first, where their cells agree."""
     merged: list[Row] = []
     by_poll: dict[str, list[Row]] = {}
     for row in rows:
@@ -155,7 +155,7 @@ def _arrays(rows: list[Row], *, contest: Contest, turnout: Floats, standing: np.
             partition[i, c, [parties[m] for m in members]] = 1
             used[i, c] = 1
             answers[i, c] = share / total * row.respondents
-            if 0 < row.step and share < SMALL_STEPS * row.step:
+            if row.step > 0 and share < SMALL_STEPS * row.step:
                 low, high = max(share - row.step / 2, 0), share + row.step / 2
                 small.append((i, c, low / total * row.respondents, high / total * row.respondents))
     rows_small, cells_small, low_small, high_small = zip(*small, strict=True) if small else ((), (), (), ())

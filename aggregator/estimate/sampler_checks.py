@@ -2,8 +2,8 @@
 
 References
 ----------
-Vehtari, Gelman, Simpson, Carpenter & Bürkner (2021), "Rank-normalization, folding, and localization: an improved R-hat
-for assessing convergence of MCMC", Bayesian Analysis 16:667–718. doi:10.1214/20-BA1221
+Vehtari, Gelman, Simpson, Carpenter & Bürkner (2021), "Rank-normalization, folding, and localization: an
+improved R-hat for assessing convergence of MCMC", Bayesian Analysis 16:667–718. doi:10.1214/20-BA1221
 """
 
 from __future__ import annotations
@@ -148,14 +148,17 @@ def judge_fit(found: Convergence, *, limits: Limits) -> Verdict:
     table = pd.DataFrame(rows, columns=["check", "value", "limit", "passed", "meaning"])
     passed = bool(table["passed"].all())
     missed = ", ".join(table.loc[~table["passed"], "check"])
-    exempt = f" {found.constant} quantities that are the same in every draw are exempt." if found.constant else ""
+    exempt = (
+        f" {found.constant} quantities that are the same in every draw are exempt." if found.constant else ""
+    )
     text = (
-        f"All checks passed on {found.quantities} published quantities: R-hat at most {found.worst_rhat[1]:.3f}, "
+        f"All checks passed on {found.quantities} published quantities: "
+        f"R-hat at most {found.worst_rhat[1]:.3f}, "
         f"effective draws at least {min(found.least_bulk[1], found.least_tail[1]):.0f}, "
         f"{found.divergences} divergences.{exempt}"
         if passed
-        else f"Checks failed ({missed}): do not publish these numbers. Run again with more draws, and if that "
-        f"does not help look at the register's warnings.{exempt}"
+        else f"Checks failed ({missed}): do not publish these numbers. Run again with more draws, "
+        f"and if that does not help look at the register's warnings.{exempt}"
     )
     return Verdict(passed=passed, table=table, text=text)
 

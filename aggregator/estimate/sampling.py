@@ -9,6 +9,7 @@ import warnings
 from collections.abc import Callable
 from dataclasses import dataclass
 from multiprocessing.connection import Connection, wait
+from typing import Any
 
 import numpy as np
 import xarray as xr
@@ -118,7 +119,7 @@ def _run(density: LogDensity, start: Floats, plan: ChainPlan, seeds: list[int], 
 
 def _chain(
     density: LogDensity, *, start: Floats, plan: ChainPlan, seed: int, report: Callable[[float], None]
-) -> dict[str, np.ndarray | int]:
+) -> dict[str, Any]:
     import nutpie
 
     size = density.layout.size
@@ -158,9 +159,11 @@ def _chain(
     }
 
 
-def _collect(pipes: list[Connection], *, total: int, progress: Callable[[float], None]) -> list[dict]:
+def _collect(
+    pipes: list[Connection], *, total: int, progress: Callable[[float], None]
+) -> list[dict[str, Any]]:
     parts: dict[int, float] = {}
-    chains: list[dict] = []
+    chains: list[dict[str, Any]] = []
     open_pipes = list(pipes)
     while len(chains) < total:
         if not open_pipes:
@@ -168,11 +171,12 @@ def _collect(pipes: list[Connection], *, total: int, progress: Callable[[float],
                 f"A sampling process ended early: {len(chains)} of {total} chains arrived. "
                 "Free some memory, or run again."
             )
-        for pipe in wait(open_pipes):
+        ready = wait(open_pipes)
+        for pipe in [p for p in open_pipes if p in ready]:
             try:
-                seed, part, chain = pipe.recv()  # type: ignore[union-attr]
+                seed, part, chain = pipe.recv()
             except EOFError:
-                open_pipes.remove(pipe)  # type: ignore[arg-type]
+                open_pipes.remove(pipe)
                 continue
             parts[seed] = part
             if chain is not None:
@@ -181,7 +185,7 @@ def _collect(pipes: list[Connection], *, total: int, progress: Callable[[float],
     return chains
 
 
-def _in_order(chains: list[dict], seeds: list[int]) -> xr.Dataset:
+def _in_order(chains: list[dict[str, Any]], seeds: list[int]) -> xr.Dataset:
     ordered = sorted(chains, key=lambda chain: seeds.index(chain["seed"]))
     return xr.Dataset(
         {

