@@ -33,6 +33,7 @@ type Progress = Callable[[str, float], None]
 EXIT_CHECKS_FAILED = 3
 EXIT_MACHINE = 5
 EXIT_INTERNAL = 70
+EXIT_INTERRUPTED = 130
 
 # What the disk or the system refuses; any other OSError is a mistake of ours and keeps its traceback.
 _MACHINE_TROUBLE = {
@@ -86,9 +87,6 @@ def main() -> None:
     except FieldfoldError as error:
         _say(f"fieldfold: {error}")
         sys.exit(error.exit_code)
-    except KeyboardInterrupt:
-        _say("fieldfold: interrupted; nothing was written.")
-        sys.exit(130)
     except MemoryError:
         _say("fieldfold: the machine ran out of memory.")
         sys.exit(EXIT_MACHINE)
@@ -226,6 +224,9 @@ def refresh(
             raise
         _print_json(_error_record(error, folder))
         raise typer.Exit(error.exit_code) from None
+    except KeyboardInterrupt:
+        _say("fieldfold: interrupted; nothing was written.")
+        raise typer.Exit(EXIT_INTERRUPTED) from None
     if as_json:
         _print_json(_outcome_record(outcome))
     else:

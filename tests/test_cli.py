@@ -221,9 +221,10 @@ def test_trouble_has_its_code_and_one_line_on_top(trouble, code, first_line, wee
     assert ("Traceback" in err) == (code == 70)
 
 
-def test_interrupted_leaves_with_130(weekly_run):
+def test_interrupted_leaves_with_130(weekly_run, capsys):
     weekly_run(KeyboardInterrupt())
     assert run("refresh", "lakes", "--quiet") == 130
+    assert capsys.readouterr().err == "fieldfold: interrupted; nothing was written.\n"
 
 
 def test_wrong_input_stops_a_refresh_with_the_whole_report(tmp_path, weekly_run, capsys):
