@@ -9,6 +9,9 @@ from aggregator.inputs.contest_file import CONTEST_FILE
 from aggregator.inputs.reading_rules import Rule
 from aggregator.problems import Problem, Severity
 
+# Rules by which this version counts; a run that could not count its seats must not begin.
+COUNTED_RULES = (CountingRule.PLURALITY, CountingRule.NONE)
+
 
 def settle_counting(contest: Contest, *, last_result: pd.DataFrame | None) -> tuple[Contest, list[Problem]]:
     """Fill in the rule, the seats and the majority where the contest leaves them to the last result.
@@ -21,6 +24,12 @@ def settle_counting(contest: Contest, *, last_result: pd.DataFrame | None) -> tu
     rule = counting.rule
     if "rule" not in counting.model_fields_set and counting.seats is None and listed == 0:
         rule = CountingRule.NONE
+    if rule not in COUNTED_RULES:
+        found = _problem(
+            "counting.rule", f'"{rule}"', f"{' or '.join(COUNTED_RULES)}, by which this version counts",
+            "Use none to estimate votes without seats.",
+        )  # fmt: skip
+        return contest, [found]
     if rule is CountingRule.NONE:
         problems = [
             _problem(f"counting.{key}", str(value), "no such key where nothing is counted in seats",
