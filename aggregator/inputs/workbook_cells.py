@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 import zipfile
+import zlib
 from datetime import date, datetime
 from xml.etree import ElementTree
 
@@ -13,9 +14,15 @@ from aggregator.inputs.reading_rules import Rule
 from aggregator.inputs.sheet_table import Cell
 from aggregator.problems import Problem
 
-_MAIN = "{http://schemas.openxmlformats.org/spreadsheetml/2006/main}"
-_LINK = "{http://schemas.openxmlformats.org/officeDocument/2006/relationships}id"
-_PACKAGE = "{http://schemas.openxmlformats.org/package/2006/relationships}"
+# Parts of a workbook; "{*}" because transitional and strict files have different namespaces.
+_BOOK, _LINKS = "xl/workbook.xml", "xl/_rels/workbook.xml.rels"
+
+
+# What a damaged, locked or foreign file makes the libraries raise.
+_NO_WORKBOOK = (
+    python_calamine.CalamineError, zipfile.BadZipFile, zlib.error, ElementTree.ParseError, LookupError,
+    NotImplementedError, RuntimeError, EOFError, ValueError,
+)  # fmt: skip
 
 
 def read_workbook_cells(
@@ -23,35 +30,36 @@ def read_workbook_cells(
 ) -> tuple[list[list[Cell]] | None, list[Problem]]:
     """Read all cells of the only sheet, or of the one called ``sheet``, blank ones as ``""``."""
     try:
-        workbook = python_calamine.CalamineWorkbook.from_object(io.BytesIO(data))
-    except (python_calamine.CalamineError, zipfile.BadZipFile) as error:
+        with zipfile.ZipFile(io.BytesIO(data)) as archive:
+            parts = _sheet_parts(archive)
+            name = sheet if sheet in parts else next(iter(parts))
+            if len(parts) > 1 and name != sheet:
+                return None, [_which_sheet(list(parts), file=file, sheet=sheet)]
+            lost = _check_lost_values(archive, file=file, part=parts[name])
+        table = python_calamine.CalamineWorkbook.from_object(io.BytesIO(data)).get_sheet_by_name(name)
+        cells = [[_plain(c) for c in row] for row in table.to_python(skip_empty_area=False)]
+    except _NO_WORKBOOK:
         return None, [
             Problem(
-                file, None, None, f"a file that is no workbook ({error})", "an XLSX workbook",
+                file, None, None, "a file that is no XLSX workbook, or a damaged one", "an XLSX workbook",
                 "Save it again as XLSX, without a password.", Rule.FILE_READABLE,
             )
         ]  # fmt: skip
-    names = workbook.sheet_names
-    if len(names) > 1 and sheet not in names:
-        return None, [
-            Problem(
-                file, None, None, f"{len(names)} sheets ({', '.join(names)})",
-                f'one sheet, or one called "{sheet}"', f'Name the sheet to read "{sheet}".',
-                Rule.WORKBOOK_SHAPE,
-            )
-        ]  # fmt: skip
-    name = sheet if sheet in names else names[0]
-    found = workbook.get_sheet_by_name(name)
-    problems = [
+    merged = [
         Problem(
             file, first[0] + 1, None, f"merged cells (rows {first[0] + 1} to {last[0] + 1})",
             "single cells", "Unmerge them and fill in each.", Rule.WORKBOOK_SHAPE,
         )
-        for first, last in (found.merged_cell_ranges or [])
+        for first, last in (table.merged_cell_ranges or [])
     ]  # fmt: skip
-    problems += _check_lost_values(data, file=file, sheet=name)
-    cells = [[_plain(c) for c in row] for row in found.to_python(skip_empty_area=False)]
-    return cells, problems
+    return cells, merged + lost
+
+
+def _which_sheet(names: list[str], *, file: str, sheet: str) -> Problem:
+    return Problem(
+        file, None, None, f"{len(names)} sheets ({', '.join(names)})",
+        f'one sheet, or one called "{sheet}"', f'Name the sheet to read "{sheet}".', Rule.WORKBOOK_SHAPE,
+    )  # fmt: skip
 
 
 def _plain(value: object) -> Cell:
@@ -67,18 +75,18 @@ def _plain(value: object) -> Cell:
     return str(value).strip()
 
 
-def _check_lost_values(data: bytes, *, file: str, sheet: str) -> list[Problem]:
+def _check_lost_values(archive: zipfile.ZipFile, *, file: str, part: str) -> list[Problem]:
     """Report cells that look blank only because the workbook holds an error or no computed value."""
     problems = []
-    with zipfile.ZipFile(io.BytesIO(data)) as archive, archive.open(_sheet_part(archive, sheet)) as part:
-        for _, element in ElementTree.iterparse(part):
-            if element.tag != _MAIN + "c":
+    with archive.open(part) as stream:
+        for _, element in ElementTree.iterparse(stream):
+            if not element.tag.endswith("}c"):
                 continue
-            value, kind = element.findtext(_MAIN + "v"), element.get("t")
+            value, kind = element.findtext("{*}v"), element.get("t")
             if kind == "e":
                 found = f"the error {value}"
             # A formula may well come to an empty text (t="str"); no value at all was never computed.
-            elif element.find(_MAIN + "f") is not None and not value and kind != "str":
+            elif element.find("{*}f") is not None and not value and kind != "str":
                 found = "a formula without a computed value"
             else:
                 continue
@@ -93,9 +101,12 @@ def _check_lost_values(data: bytes, *, file: str, sheet: str) -> list[Problem]:
     return problems
 
 
-def _sheet_part(archive: zipfile.ZipFile, sheet: str) -> str:
-    book = ElementTree.fromstring(archive.read("xl/workbook.xml"))
-    links = ElementTree.fromstring(archive.read("xl/_rels/workbook.xml.rels"))
-    wanted = next(s.get(_LINK) for s in book.iter(_MAIN + "sheet") if s.get("name") == sheet)
-    target = next(r.get("Target", "") for r in links.iter(_PACKAGE + "Relationship") if r.get("Id") == wanted)
-    return target.removeprefix("/") if target.startswith("/") else f"xl/{target}"
+def _sheet_parts(archive: zipfile.ZipFile) -> dict[str, str]:
+    """Name the archive's part of each sheet, by the sheet's name."""
+    links = ElementTree.fromstring(archive.read(_LINKS))
+    targets = {link.attrib["Id"]: link.attrib["Target"] for link in links}
+    parts = {}
+    for sheet in ElementTree.fromstring(archive.read(_BOOK)).iterfind("{*}sheets/{*}sheet"):
+        target = next(targets[v] for k, v in sheet.attrib.items() if k.endswith("}id"))
+        parts[sheet.attrib["name"]] = target[1:] if target.startswith("/") else f"xl/{target}"
+    return parts

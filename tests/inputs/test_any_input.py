@@ -9,7 +9,7 @@ import pytest
 from hypothesis import HealthCheck, example, given, settings
 from hypothesis import strategies as st
 
-from tests.inputs.desk_folder import CONTEST, POLLS, RESULT, findings, write_folder
+from tests.inputs.desk_folder import CONTEST, POLLS, RESULT, as_rows, findings, workbook, write_folder
 
 ODD_CELLS = st.one_of(
     st.text(max_size=12).filter(lambda t: "\x00" not in t),
@@ -83,3 +83,12 @@ def test_any_torn_file(start, length, tmp_path):
 def test_any_bytes_at_all(name, data, tmp_path):
     files: dict[str, str | bytes | None] = {"polls.csv": None} if name == "polls.xlsx" else {}
     assert findings(write_folder(tmp_path / "c", **(files | {name: data})))
+
+
+@settings(max_examples=40, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(places=st.lists(st.tuples(st.floats(0, 0.999), st.integers(0, 255)), min_size=1, max_size=20))
+def test_any_damage_to_a_workbook(places, tmp_path):
+    data = bytearray(workbook(as_rows(POLLS)))
+    for place, byte in places:
+        data[int(place * len(data))] = byte
+    findings(write_folder(tmp_path / "c", **{"polls.csv": None, "polls.xlsx": bytes(data)}))

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import zipfile
 from datetime import date
 
 import openpyxl
@@ -201,6 +202,24 @@ UNREADABLE: dict[str, tuple[dict[str, str | bytes | None], str]] = {
 def test_what_a_file_cannot_say_is_reported(files, report, tmp_path):
     found = findings(write_folder(tmp_path / "contest", **files))
     assert [f"{p.severity.value}: {p}" for p in found] == [report]
+
+
+def test_an_archive_that_is_no_workbook_is_reported(tmp_path):
+    stream = io.BytesIO()
+    with zipfile.ZipFile(stream, "w") as archive:
+        archive.writestr("content.xml", "<office/>")
+    folder = write_folder(tmp_path / "c", polls_csv=None, **{"polls.xlsx": stream.getvalue()})
+    assert [p.rule.value for p in findings(folder)] == ["R02"]
+
+
+def test_an_error_value_is_not_a_blank_cell(tmp_path):
+    book = openpyxl.load_workbook(io.BytesIO(workbook(as_rows(POLLS))))
+    cell = book.active["R6"]
+    cell.value, cell.data_type = "#REF!", "e"
+    stream = io.BytesIO()
+    book.save(stream)
+    folder = write_folder(tmp_path / "c", polls_csv=None, **{"polls.xlsx": stream.getvalue()})
+    assert [(p.row, p.found) for p in findings(folder)] == [(6, "the error #REF! in cell R6")]
 
 
 def test_merged_cells_are_reported(tmp_path):
