@@ -89,7 +89,9 @@ def _house_panel(
         .encode(x=alt.X("zero:Q", scale=scale, axis=x_axis))
     )
     base = alt.Chart(rows).encode(y=y, color=colour_of(looks))
-    interval = base.mark_rule(strokeWidth=2).encode(x=alt.X("q05:Q", scale=scale, axis=x_axis), x2="q95:Q")
+    interval = base.mark_rule(strokeWidth=2).encode(
+        x=alt.X("q05:Q", scale=scale, axis=x_axis), x2=alt.X2("q95:Q")
+    )
     dot = base.mark_point(size=58, filled=True, opacity=1, stroke="white", strokeWidth=0.8).encode(
         x=alt.X("lean:Q", scale=scale, axis=x_axis), shape=shape_of(looks)
     )
@@ -157,16 +159,16 @@ def build_seats_chart(
         line.mark_rule(color=INK, strokeWidth=1.2).encode(x=alt.X("majority:Q", scale=scale, axis=axis)),
         line.mark_text(
             baseline="bottom", align="right", dx=4, dy=-4, color=INK, fontSize=layout.font_size
-        ).encode(x=alt.X("majority:Q", scale=scale, axis=axis), y=alt.value(0), text="label:N"),
-        base.mark_rule(strokeWidth=1.6).encode(x=alt.X("q05:Q", scale=scale, axis=axis), x2="q95:Q"),
+        ).encode(x=alt.X("majority:Q", scale=scale, axis=axis), y=alt.YValue(0), text="label:N"),
+        base.mark_rule(strokeWidth=1.6).encode(x=alt.X("q05:Q", scale=scale, axis=axis), x2=alt.X2("q95:Q")),
         base.mark_rule(strokeWidth=8, opacity=0.55).encode(
-            x=alt.X("q25:Q", scale=scale, axis=axis), x2="q75:Q"
+            x=alt.X("q25:Q", scale=scale, axis=axis), x2=alt.X2("q75:Q")
         ),
         base.mark_point(size=70, filled=True, opacity=1, stroke="white", strokeWidth=1).encode(
             x=alt.X("mean:Q", scale=scale, axis=axis), shape=shape_of(looks)
         ),
         base.mark_text(align="left", fontSize=layout.font_size).encode(
-            x=alt.value(width + 10), text="label:N", color=alt.value(INK)
+            x=alt.XValue(width + 10), text="label:N", color=alt.ColorValue(INK)
         ),
     ).properties(width=width, height=(ROW + 10) * len(rows))
 

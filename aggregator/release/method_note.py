@@ -29,7 +29,12 @@ def build_method_note(contents: ReleaseContents) -> str:
         lstrip_blocks=True,
         autoescape=False,
     )
-    environment.filters |= {"md": inert_markdown, "day": date_text, "whole": whole_text}
+    environment.filters |= {
+        "md": inert_markdown,
+        "day": date_text,
+        "whole": whole_text,
+        "brief": brief_number,
+    }
     unused = contents.inputs.unused_polls
     reasons = Counter(reason_without_days(reason) for reason in unused["why_not"].astype(str))
     return environment.get_template("method.md.j2").render(
@@ -57,10 +62,15 @@ def inert_markdown(text: object) -> str:
     return flat
 
 
+def brief_number(value: object) -> str:
+    """Write a number with four figures that count, anything else as inert text."""
+    return f"{value:.4g}" if isinstance(value, float) else inert_markdown(value)
+
+
 def flat_settings(settings: Mapping[str, object], *, prefix: str = "") -> Iterator[tuple[str, str]]:
     """List settings as name and value, a nested one named ``outer.inner``."""
     for name, value in settings.items():
         if isinstance(value, Mapping):
             yield from flat_settings(value, prefix=f"{prefix}{name}.")
         else:
-            yield f"{prefix}{name}", "–" if value is None else str(value)
+            yield f"{prefix}{name}", "–" if value is None else brief_number(value)

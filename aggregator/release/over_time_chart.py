@@ -185,12 +185,14 @@ def _background_layers(content: OverTime, canvas: _Canvas) -> list[alt.Chart]:
         )
         windows = windows[windows["until"] > content.rows["date"].min()]
         base = alt.Chart(windows)
+        # The label stands right of its window, low: there the room beyond polling day is empty.
         text = base.mark_text(
-            align="left", baseline="bottom", angle=270, dx=4, dy=-2, fontSize=canvas.size - 2, color=MUTED
+            align="left", baseline="top", angle=270, dx=4, dy=3, fontSize=canvas.size - 2, color=MUTED
         )
         layers.append(base.mark_rect(color=MUTED, opacity=0.22, clip=True).encode(x=canvas.x, x2="until:T"))
         if canvas.labelled_silence:
-            layers.append(text.encode(x=canvas.x, y=alt.value(canvas.height), text="label:N"))
+            end = alt.X("until:T", scale=canvas.x_scale)
+            layers.append(text.encode(x=end, y=alt.YValue(canvas.height), text="label:N"))
     for day, label, align in ((run, "this run", "right"), (vote, "polling day", "left")):
         base = alt.Chart(pd.DataFrame({"date": [day], "label": [label]}))
         text = base.mark_text(
@@ -203,7 +205,7 @@ def _background_layers(content: OverTime, canvas: _Canvas) -> list[alt.Chart]:
         )
         layers += [
             base.mark_rule(color=MUTED, strokeDash=[2, 3]).encode(x=canvas.x),
-            text.encode(x=canvas.x, y=alt.value(0), text="label:N"),
+            text.encode(x=canvas.x, y=alt.YValue(0), text="label:N"),
         ]
     return layers
 
@@ -213,8 +215,8 @@ def _band_layers(content: OverTime, canvas: _Canvas, dated: pd.DataFrame) -> lis
         x=canvas.x, color=colour_of(content.looks)
     )
     return [
-        base.mark_area(opacity=0.13).encode(y=canvas.y("q05"), y2="q95:Q"),
-        base.mark_area(opacity=0.26).encode(y=canvas.y("q25"), y2="q75:Q"),
+        base.mark_area(opacity=0.13).encode(y=canvas.y("q05"), y2=alt.Y2("q95:Q")),
+        base.mark_area(opacity=0.26).encode(y=canvas.y("q25"), y2=alt.Y2("q75:Q")),
         base.mark_line(strokeWidth=2).encode(y=canvas.y("mean")),
     ]
 
@@ -249,8 +251,8 @@ def _level_layers(content: OverTime, canvas: _Canvas) -> list[alt.Chart]:
 def _polling_day_layers(content: OverTime, canvas: _Canvas, final: pd.DataFrame) -> list[alt.Chart]:
     base = alt.Chart(_in_slots(final, canvas)).encode(x=canvas.x, color=colour_of(content.looks))
     return [
-        base.mark_rule(strokeWidth=1.5).encode(y=canvas.y("q05"), y2="q95:Q"),
-        base.mark_rule(strokeWidth=5, opacity=0.6).encode(y=canvas.y("q25"), y2="q75:Q"),
+        base.mark_rule(strokeWidth=1.5).encode(y=canvas.y("q05"), y2=alt.Y2("q95:Q")),
+        base.mark_rule(strokeWidth=5, opacity=0.6).encode(y=canvas.y("q25"), y2=alt.Y2("q75:Q")),
         base.mark_point(size=42, filled=True, opacity=1, stroke="white", strokeWidth=0.8).encode(
             y=canvas.y("mean"), shape=shape_of(content.looks)
         ),
@@ -284,7 +286,7 @@ def _label_layers(content: OverTime, canvas: _Canvas, final: pd.DataFrame, layou
     leaders = []
     for chosen, colour in (
         (labels[labels["code"] != ""], colour_of(content.looks)),
-        (labels[labels["code"] == ""], alt.value(INK)),
+        (labels[labels["code"] == ""], alt.ColorValue(INK)),
     ):
         if len(chosen):
             leader = alt.Chart(chosen).mark_rule(strokeWidth=0.7, opacity=0.8)
@@ -297,4 +299,4 @@ def _label_layers(content: OverTime, canvas: _Canvas, final: pd.DataFrame, layou
                     color=colour,
                 )
             )
-    return [*leaders, text.encode(x=alt.value(beyond), y=canvas.y("placed"), text="label:N")]
+    return [*leaders, text.encode(x=alt.XValue(beyond), y=canvas.y("placed"), text="label:N")]

@@ -71,7 +71,7 @@ def build_worth_chart(shelf_life: pd.DataFrame, *, layout: Layout) -> alt.LayerC
     )
     layers: list[alt.Chart] = [
         half.mark_rule(strokeDash=[2, 3], color=MUTED).encode(y=y("worth")),
-        half_text.encode(x=alt.value(width), y=y("worth"), text="label:N"),
+        half_text.encode(x=alt.XValue(width), y=y("worth"), text="label:N"),
     ]
     ends = [float(rows[curve.column].iloc[-1]) for curve in CURVES]
     gap = 1.5 * layout.font_size * FULL_WORTH / height
@@ -87,11 +87,11 @@ def build_worth_chart(shelf_life: pd.DataFrame, *, layout: Layout) -> alt.LayerC
             align="left", baseline="middle", fontSize=layout.font_size, fontWeight=600, color=curve.colour
         )
         layers += [
-            base.mark_area(opacity=0.16, color=curve.colour).encode(y=y("q05"), y2="q95:Q"),
+            base.mark_area(opacity=0.16, color=curve.colour).encode(y=y("q05"), y2=alt.Y2("q95:Q")),
             base.mark_line(strokeWidth=2.4, strokeDash=list(curve.dash), color=curve.colour).encode(
                 y=y("worth")
             ),
-            end_text.encode(x=alt.value(width + 8), y=y("worth"), text="label:N"),
+            end_text.encode(x=alt.XValue(width + 8), y=y("worth"), text="label:N"),
         ]
     month = rows[rows["age_days"] == MARKED_AGE][["age_days", "worth_today"]]
     month = month.assign(label=[f"{whole_text(worth)} after a month" for worth in month["worth_today"]])
