@@ -63,9 +63,9 @@ def build_charts(contents: ReleaseContents) -> tuple[ReleaseChart, ...]:
     """All charts a release has; those about seats only where seats are counted."""
     looks = code_looks(contents.codes)
     charts = [_support_chart(contents, looks), _houses_chart(contents, looks), _worth_chart(contents)]
-    alliances = [code for code in contents.codes if code.level is Level.ALLIANCE]
-    if alliances:
-        charts.insert(1, _alliances_chart(contents, looks))
+    alliances = [looks[code.code] for code in contents.codes if code.level is Level.ALLIANCE]
+    if _have_history(alliances, contents.tables.support):
+        charts.insert(1, _alliances_chart(contents, alliances))
     if contents.tables.seats is not None:
         charts += [
             _seats_chart(contents, looks, contents.tables.seats),
@@ -84,11 +84,16 @@ def _support_chart(contents: ReleaseContents, looks: dict[str, CodeLook]) -> Rel
     )
 
 
-def _alliances_chart(contents: ReleaseContents, looks: dict[str, CodeLook]) -> ReleaseChart:
-    chosen = [looks[code.code] for code in contents.codes if code.level is Level.ALLIANCE]
+def _have_history(looks: list[CodeLook], support: pd.DataFrame) -> bool:
+    """Whether any of the codes existed by the day of the run: one of the future has no past to draw."""
+    dated = support[support["kind"] == Kind.ON_DATE]
+    return bool(dated["code"].isin([look.code for look in looks]).any())
+
+
+def _alliances_chart(contents: ReleaseContents, looks: list[CodeLook]) -> ReleaseChart:
     return _support_over_time(
         contents,
-        chosen,
+        looks,
         name="alliances_over_time",
         title="Support for the alliances, members summed, over time and on polling day",
     )

@@ -36,7 +36,7 @@ def build_polls_used_table(
     worth = _by_poll(polls_worth, "worth_today")
     rows = [_disclose(group, contest.region_codes) for _, group in polls.groupby("poll", sort=False)]
     table = pd.DataFrame(rows, columns=list(POLLS_USED.column_names))
-    table["worth_today"] = table["poll"].map(worth).astype(float)
+    table["worth_today"] = table["poll"].astype(str).map(worth).astype(float)
     for name in ("start", "end", "published"):
         table[name] = pd.to_datetime(table[name])
     return table
@@ -88,8 +88,8 @@ def build_polls_weighed_table(
     """
     names = list(POLLS_WEIGHED.column_names)
     used = polls.reindex(columns=[*names]).assign(used="yes", why_not="")
-    used["worth_today"] = used["poll"].map(_by_poll(polls_worth, "worth_today")).astype(float)
-    used["pareto_k"] = used["poll"].map(_by_poll(polls_worth, "pareto_k")).astype(float)
+    used["worth_today"] = used["poll"].astype(str).map(_by_poll(polls_worth, "worth_today")).astype(float)
+    used["pareto_k"] = used["poll"].astype(str).map(_by_poll(polls_worth, "pareto_k")).astype(float)
     unused = unused_polls.reindex(columns=names).assign(
         used="no", respondents=float("nan"), worth_today=float("nan"), pareto_k=float("nan")
     )

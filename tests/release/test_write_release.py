@@ -13,12 +13,15 @@ from pathlib import Path
 
 import altair as alt
 import pytest
+import vl_convert
 import xarray as xr
 
 from aggregator.errors import UsageError
 from aggregator.inputs.contest import Contest, Silence
+from aggregator.release.chart_style import WIDE
+from aggregator.release.charts import build_charts, chart_frame
 from aggregator.release.table_schemas import ALL_SCHEMAS
-from aggregator.release.write_release import ReleaseWritten, write_release
+from aggregator.release.write_release import ReleaseWritten, build_contents, write_release
 from tests.made_up_draws import RUN_DATE, made_up_contest
 from tests.release.made_up_desk import contest_without_seats, made_up_run
 
@@ -336,6 +339,27 @@ def test_a_contest_with_little_in_it_still_makes_a_release(tmp_path):
     support = rows_of((written.path / "public/support.csv").read_text(encoding="utf-8"))
     assert {row["region"] for row in support} == {""}
     assert "Regions</h2>" not in written.page.read_text(encoding="utf-8")
+
+
+@pytest.mark.parametrize(
+    ("dates", "drawn"),
+    [
+        ({"from_": date(2033, 4, 1)}, False),  # still to come on the day of the run
+        ({"until": date(2033, 3, 1)}, True),  # gone by polling day
+        ({"until": date(2030, 1, 1)}, False),  # long gone
+    ],
+)
+def test_an_alliance_is_drawn_only_where_it_has_a_past(tmp_path, dates, drawn):
+    contest = made_up_contest()
+    contest = contest.model_copy(update={"alliances": (contest.alliances[0].model_copy(update=dates),)})
+    arguments = made_up_run(tmp_path)
+    inputs = replace(arguments.pop("inputs"), contest=contest)
+    contents = build_contents(inputs, **arguments)
+    charts = {chart.name: chart for chart in build_charts(contents)}
+    assert ("alliances_over_time" in charts) is drawn
+    for chart in charts.values():
+        vl_convert.vegalite_to_svg(chart.framed(frame=chart_frame(contents), layout=WIDE))
+    assert all("nan" not in chart.alt_text for chart in charts.values())
 
 
 def test_a_place_that_holds_something_is_refused_before_anything_is_written(tmp_path):
