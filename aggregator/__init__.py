@@ -1,0 +1,1 @@
+"""The desk's program: it knows files, people and commands."""

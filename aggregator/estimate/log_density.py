@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Any, cast
 
 import numpy as np
 import pymc as pm
@@ -84,9 +85,9 @@ def compile_log_density(model: pm.Model) -> LogDensity:
     """
     log_density = model.logp()
     inputs = model.value_vars
-    compiled = pytensor.function(
-        inputs, [log_density, *pt.grad(log_density, inputs)], mode="NUMBA", on_unused_input="ignore"
-    )
+    # A list of inputs gives a list of gradients; the library's types leave that open.
+    gradients = cast("list[Any]", pt.grad(log_density, inputs))
+    compiled = pytensor.function(inputs, [log_density, *gradients], mode="NUMBA", on_unused_input="ignore")
     compiled.trust_input = True
     layout, start = _layout(model)
     return LogDensity(layout=layout, start=start, compiled=compiled)
