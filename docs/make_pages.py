@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import ast
 import re
+import textwrap
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -21,6 +22,7 @@ GUIDE = TOP / "DEVELOPERS.md"
 MAPPED = ("aggregator", "models", "data_demo", "docs")
 MAP_START, MAP_END = "<!-- map: written by docs/make_pages.py -->\n", "<!-- end of map -->\n"
 HELP_WIDTH = 96
+PAGE_WIDTH = 118
 
 COMMANDS_OPENING = """\
 # Commands
@@ -83,7 +85,8 @@ def _folder_lines(folder: Path) -> Iterator[str]:
     yield ""
     for path in sorted(folder.glob("*.py")):
         if path.name != "__init__.py":
-            yield f"- `{path.name}`: {_first_sentence(path)}"
+            line = f"- `{path.name}`: {_first_sentence(path)}"
+            yield from textwrap.wrap(line, PAGE_WIDTH, subsequent_indent="  ", break_on_hyphens=False)
     yield ""
 
 
