@@ -99,6 +99,8 @@ def made_up_arrays(
         answers[lumped, -1] = 0
         partition[lumped, -2, -1] = 1
         partition[lumped, -1, -1] = 0
+    # A party that stands in none of the row's regions is in no cell of it.
+    partition *= (mix @ standing > 0)[:, None, :]
     used = partition.sum(axis=2).clip(0, 1)
     row, cell = np.nonzero(((answers / respondents[:, None]) < 0.02) & (used > 0)) if small else ([], [])
     row, cell = np.asarray(row, dtype=np.int64), np.asarray(cell, dtype=np.int64)

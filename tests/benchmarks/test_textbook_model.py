@@ -1,0 +1,126 @@
+"""The benchmark's reference has the same posterior as the election model, prior and likelihood."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+
+import numpy as np
+import pymc as pm
+import pytest
+from pymc.model.transform.conditioning import remove_value_transforms
+
+from aggregator.estimate.parameters import Parameters
+from aggregator.estimate.poll_fit import row_log_likelihood
+from models.arrays import ElectionArrays
+from models.block_geometry import Geometry, build_geometry
+from models.election_model import build_election_model
+from models.priors import Priors
+from tests.benchmarks.textbook_model import NATURAL, build_textbook_model
+from tests.models.made_up_arrays import made_up_arrays
+
+CASES = {
+    "anchored": {"free": 1, "absent": True},
+    "no last result": {"anchored": False},
+    "one region": {"regions": 1, "free": 1},
+    "one house": {"houses": 1},
+}
+PRIORS = Priors()
+Point = dict[str, np.ndarray]
+
+
+def small_election(**case: int | bool) -> ElectionArrays:
+    """A small election, its lowest figures only known to the half point."""
+    arrays, _ = made_up_arrays(polls=25, weeks=16, **case)
+    rows = arrays.rows
+    share = np.where(rows.used > 0, rows.answers / rows.respondents[:, None], 1)
+    row, cell = np.nonzero(share < np.quantile(share, 0.1))
+    count, half = rows.answers[row, cell], 0.005 * rows.respondents[row]
+    intervals = {"small_row": row, "small_cell": cell, "small_low": count - half, "small_high": count + half}
+    return replace(arrays, rows=replace(rows, **intervals))
+
+
+def random_point(model: pm.Model, rng: np.random.Generator) -> Point:
+    """Standard normals without the part that centring over regions and houses takes away."""
+    point = {
+        name: np.asarray(value + 0.5 * rng.normal(size=np.shape(value)))
+        for name, value in sorted(model.initial_point().items())
+    }
+    for name in ("region_steps", "house_effects"):
+        if name in point:
+            point[name] -= point[name].mean(axis=-2, keepdims=True)
+    return point
+
+
+def compile_with_natural(textbook: pm.Model, outputs: list) -> Callable[[Point], list]:
+    """The textbook model's outputs, followed by its natural parameters, at a point."""
+    natural = textbook.replace_rvs_by_values([textbook[name] for name in NATURAL])
+    return textbook.compile_fn(
+        [*outputs, *natural], mode="FAST_COMPILE", inputs=textbook.value_vars, on_unused_input="ignore"
+    )
+
+
+def in_natural_modes(model: pm.Model) -> pm.Model:
+    """The election model without its sampling coordinates."""
+    for variable in model.free_RVs:
+        # A copy of a model cannot carry starting values, and none are needed here.
+        model.rvs_to_initial_values[variable] = None
+    return remove_value_transforms(model)
+
+
+def modes_at(natural: Point, *, arrays: ElectionArrays, geometry: Geometry, free_start: np.ndarray) -> Point:
+    """The election model's modes at the textbook model's natural parameters."""
+    walk = natural["walk"] - natural["walk"][0]
+    modes = {"national_modes": np.linalg.solve(geometry.national.basis, walk[1:])}
+    if geometry.region is not None:
+        deviation = natural["region"][1:] - free_start
+        contrast = np.linalg.pinv(geometry.region_contrast) @ deviation
+        modes["region_modes"] = np.linalg.solve(
+            geometry.region.basis, contrast.reshape(-1, len(arrays.country.parties))
+        )
+    if geometry.house is not None:
+        modes["house_modes"] = np.linalg.lstsq(
+            geometry.house_contrast @ geometry.house.basis, natural["house"], rcond=None
+        )[0]
+    return modes
+
+
+@pytest.mark.parametrize("case", CASES)
+def test_textbook_model_has_the_same_posterior(case: str) -> None:
+    arrays = small_election(**CASES[case])
+    geometry = build_geometry(arrays)
+    ours = in_natural_modes(build_election_model(arrays, geometry=geometry, priors=PRIORS))
+    textbook = build_textbook_model(arrays, priors=PRIORS)
+    our_values = [ours.rvs_to_values[variable] for variable in ours.free_RVs]
+    our_density = ours.compile_fn(ours.logp(), mode="FAST_COMPILE", point_fn=False, inputs=our_values)
+    textbook_at = compile_with_natural(textbook, [textbook.logp()])
+
+    gaps, rng = [], np.random.default_rng(3)
+    for _ in range(3):
+        point = random_point(textbook, rng)
+        density, *values = textbook_at(point)
+        natural = dict(zip(NATURAL, values, strict=True))
+        at = point | modes_at(natural, arrays=arrays, geometry=geometry, free_start=natural["region"][0])
+        # Ours is a density of modes in units of log support, the textbook's of standard normals.
+        scales = {
+            "national_modes": natural["drift"],
+            "region_modes": natural["drift"] * natural["region_ratio"],
+            "house_modes": natural["house_scale"],
+        }
+        jacobian = sum(at[name].shape[0] * np.log(s).sum() for name, s in scales.items() if name in at)
+        gaps.append(density - float(our_density(*[at[v.name] for v in ours.free_RVs])) - jacobian)
+    # What remains are the standard normals that centring removes: a constant.
+    parties = len(arrays.country.parties)
+    removed = parties * ((len(arrays.knots.region_day) - 1) * (geometry.region is not None) + 1)
+    assert gaps == pytest.approx([-0.5 * np.log(2 * np.pi) * removed] * 3, abs=1e-6)
+
+
+def test_output_step_reads_the_textbook_draws_with_the_same_likelihood() -> None:
+    arrays = small_election(free=1, absent=True)
+    textbook = build_textbook_model(arrays, priors=PRIORS)
+    likelihood_at = compile_with_natural(textbook, textbook.replace_rvs_by_values(textbook.potentials))
+    answers, small, *values = likelihood_at(random_point(textbook, np.random.default_rng(4)))
+    parameters = Parameters(**{name: value[None] for name, value in zip(NATURAL, values, strict=True)})
+    likelihood = row_log_likelihood(parameters, arrays=arrays, samples=np.array([0]))[0]
+    np.add.at(answers, arrays.rows.small_row, small)
+    assert likelihood == pytest.approx(answers, rel=1e-10)
