@@ -33,7 +33,7 @@ NATURAL = (
 
 
 def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
-    """The model of ``models.election_model``, shared lean included, with its natural parameters as outputs."""
+    """The model of ``models.election_model`` with its shared lean; natural parameters are deterministics."""
     country, knots, rows = arrays.country, arrays.knots, arrays.rows
     P, R, H = len(country.parties), len(country.regions), len(rows.houses)
     K, L = len(knots.national_day), len(knots.region_day)
