@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cached_property
+from math import prod
 from typing import Any, cast
 
 import numpy as np
@@ -30,21 +32,25 @@ class Layout:
     starts: tuple[int, ...]
     shapes: tuple[tuple[int, ...], ...]
 
+    @cached_property
+    def places(self) -> tuple[slice, ...]:
+        """Where each variable lies in the flat vector."""
+        return tuple(
+            slice(start, start + prod(shape)) for start, shape in zip(self.starts, self.shapes, strict=True)
+        )
+
     @property
     def size(self) -> int:
         """Length of the flat vector."""
-        return self.starts[-1] + int(np.prod(self.shapes[-1]))
+        return self.places[-1].stop
 
     def part(self, vector: Floats, name: str) -> Floats:
         """One variable out of flat vectors, dims (…, its own)."""
-        i = self.names.index(name)
-        stop = self.starts[i] + int(np.prod(self.shapes[i]))
-        return vector[..., self.starts[i] : stop].reshape(vector.shape[:-1] + self.shapes[i])
+        return vector[..., self.place(name)].reshape(vector.shape[:-1] + self.shapes[self.names.index(name)])
 
     def place(self, name: str) -> slice:
         """Where a variable lies in the flat vector."""
-        i = self.names.index(name)
-        return slice(self.starts[i], self.starts[i] + int(np.prod(self.shapes[i])))
+        return self.places[self.names.index(name)]
 
 
 @dataclass(frozen=True)
@@ -65,16 +71,9 @@ class LogDensity:
 
     def __call__(self, vector: Floats) -> tuple[float, Floats]:
         """Log density and its gradient, dims (coordinate)."""
-        layout = self.layout
-        parts = [
-            vector[start : start + int(np.prod(shape))].reshape(shape) if shape else np.array(vector[start])
-            for start, shape in zip(layout.starts, layout.shapes, strict=True)
-        ]
-        value, *gradients = self.compiled(*parts)
-        gradient = np.empty(layout.size)
-        for start, shape, part in zip(layout.starts, layout.shapes, gradients, strict=True):
-            gradient[start : start + int(np.prod(shape))] = np.ravel(part)
-        return float(value), gradient
+        cuts = zip(self.layout.places, self.layout.shapes, strict=True)
+        value, *gradients = self.compiled(*[vector[place].reshape(shape) for place, shape in cuts])
+        return float(value), np.concatenate(gradients, axis=None)
 
 
 def compile_log_density(model: pm.Model) -> LogDensity:
