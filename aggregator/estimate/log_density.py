@@ -12,6 +12,7 @@ import numpy as np
 import pymc as pm
 import pytensor
 import pytensor.tensor as pt
+from pytensor.compile.mode import Mode, get_mode
 
 from models.arrays import Floats
 
@@ -86,10 +87,19 @@ def compile_log_density(model: pm.Model) -> LogDensity:
     inputs = model.value_vars
     # A list of inputs gives a list of gradients; the library's types leave that open.
     gradients = cast("list[Any]", pt.grad(log_density, inputs))
-    compiled = pytensor.function(inputs, [log_density, *gradients], mode="NUMBA", on_unused_input="ignore")
+    compiled = pytensor.function(inputs, [log_density, *gradients], mode=_mode(), on_unused_input="ignore")
     compiled.trust_input = True
     layout, start = _layout(model)
     return LogDensity(layout=layout, start=start, compiled=compiled)
+
+
+def _mode() -> Mode:
+    """Numba without a pass that asks node by node which results may overwrite their inputs.
+
+    It takes a third of the compilation and saves a thirtieth of an evaluation. Leave the other passes that
+    write in place: without them gradients through repeated indices come out wrong in this version.
+    """
+    return get_mode("NUMBA").excluding("inplace_elemwise")
 
 
 def _layout(model: pm.Model) -> tuple[Layout, Floats]:
