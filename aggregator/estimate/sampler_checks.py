@@ -15,11 +15,15 @@ import numpy as np
 import pandas as pd
 import xarray as xr
 
+from aggregator.estimate.cores import map_forked, usable_cores
 from aggregator.verdict import Verdict
+from models.arrays import Floats
 from models.dimensions import CHAIN, DATE, DRAW
 
 # A series is a straight line between knots: every fourth day of it, and its last, stand for the others.
 SERIES_STRIDE = 4
+# With fewer, starting a process takes longer than its share of the work.
+LEAST_QUANTITIES_PER_PROCESS = 100
 
 
 @dataclass(frozen=True)
@@ -83,10 +87,9 @@ def check_convergence(published: xr.Dataset, *, divergences: int) -> Convergence
         constant += int((~moving).sum())
         values.append(flat[..., moving].astype(float))
         names += [str(name)] * int(moving.sum())
-    together = xr.Dataset({"value": ((CHAIN, DRAW, "quantity"), np.concatenate(values, axis=-1))})
-    rhat = az.rhat(together)["value"].to_numpy()
-    bulk = az.ess(together)["value"].to_numpy()
-    tail = az.ess(together, method="tail")["value"].to_numpy()
+    shares = max(1, min(usable_cores(), len(names) // LEAST_QUANTITIES_PER_PROCESS))
+    parts = np.array_split(np.concatenate(values, axis=-1), shares, axis=-1)
+    rhat, bulk, tail = np.concatenate(map_forked(_diagnose, parts), axis=-1)
 
     def pick(value: np.ndarray, at: int) -> tuple[str, float]:
         return names[at], float(value[at])
@@ -99,6 +102,13 @@ def check_convergence(published: xr.Dataset, *, divergences: int) -> Convergence
         quantities=len(names),
         constant=constant,
     )
+
+
+def _diagnose(values: Floats) -> Floats:
+    """R-hat, bulk and tail ESS, dims (diagnostic, quantity), of values with dims (chain, draw, quantity)."""
+    together = xr.Dataset({"value": ((CHAIN, DRAW, "quantity"), values)})
+    found = (az.rhat(together), az.ess(together), az.ess(together, method="tail"))
+    return np.stack([diagnostic["value"].to_numpy() for diagnostic in found])
 
 
 def _thin_series(variable: xr.DataArray) -> xr.DataArray:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import multiprocessing
-import os
 import signal
 import warnings
 from collections.abc import Callable
@@ -15,6 +14,7 @@ import numpy as np
 import xarray as xr
 
 from aggregator.errors import MachineError
+from aggregator.estimate.cores import can_fork, usable_cores
 from aggregator.estimate.log_density import LogDensity
 from models.arrays import Floats
 from models.dimensions import CHAIN, DRAW
@@ -69,8 +69,9 @@ def sample_chains(
         If a process died.
     """
     seeds = [int(s.generate_state(1)[0]) for s in np.random.SeedSequence(plan.seed).spawn(plan.chains)]
-    work = [seeds[i :: _processes(plan.chains)] for i in range(_processes(plan.chains))]
-    if "fork" not in multiprocessing.get_all_start_methods():
+    cores = min(plan.chains, usable_cores())
+    work = [seeds[i::cores] for i in range(cores)]
+    if not can_fork():
         return _in_order(
             [_chain(density, start=start, plan=plan, seed=s, report=lambda _: None) for s in seeds], seeds
         )
@@ -94,15 +95,6 @@ def sample_chains(
                 process.terminate()
             process.join()
     return _in_order(chains, seeds)
-
-
-def _processes(chains: int) -> int:
-    return max(
-        1,
-        min(
-            chains, len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
-        ),
-    )
 
 
 def _run(density: LogDensity, start: Floats, plan: ChainPlan, seeds: list[int], sender: Connection) -> None:
