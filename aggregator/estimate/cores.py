@@ -7,8 +7,7 @@ import os
 import signal
 import warnings
 from collections.abc import Callable, Sequence
-from concurrent.futures import ProcessPoolExecutor
-from concurrent.futures.process import BrokenProcessPool
+from multiprocessing.connection import Connection
 
 from aggregator.errors import MachineError
 
@@ -35,19 +34,30 @@ def map_forked[Part, Result](work: Callable[[Part], Result], parts: Sequence[Par
     """
     if len(parts) == 1 or not can_fork():
         return [work(part) for part in parts]
-    with ProcessPoolExecutor(
-        len(parts), mp_context=multiprocessing.get_context("fork"), initializer=_ignore_interrupts
-    ) as pool:
-        try:
-            with warnings.catch_warnings():
-                # Python warns of fork beside threads; the child touches none of the parent's threads.
-                warnings.simplefilter("ignore", DeprecationWarning)
-                results = pool.map(work, parts)
-            return list(results)
-        except BrokenProcessPool as error:
-            raise MachineError("A process ended early. Free some memory, or run again.") from error
+    context = multiprocessing.get_context("fork")
+    processes, receivers = [], []
+    for part in parts:
+        receiver, sender = context.Pipe(duplex=False)
+        process = context.Process(target=_send, args=(work, part, sender), daemon=True)
+        with warnings.catch_warnings():
+            # Python warns of fork beside threads; the child touches none of the parent's threads.
+            warnings.simplefilter("ignore", DeprecationWarning)
+            process.start()
+        sender.close()
+        processes.append(process)
+        receivers.append(receiver)
+    try:
+        return [receiver.recv() for receiver in receivers]
+    except EOFError as error:
+        raise MachineError("A process ended early. Free some memory, or run again.") from error
+    finally:
+        for process in processes:
+            process.terminate()
+            process.join()
 
 
-def _ignore_interrupts() -> None:
-    """Leave an interrupt to the parent, which ends its processes."""
+def _send[Part, Result](work: Callable[[Part], Result], part: Part, sender: Connection) -> None:
+    # An interrupt is left to the parent, which ends its processes.
     signal.signal(signal.SIGINT, signal.SIG_IGN)
+    sender.send(work(part))
+    sender.close()
