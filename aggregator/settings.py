@@ -19,6 +19,9 @@ class RunSettings:
         Independent chains of the sampler.
     tune
         Warm-up draws in each chain.
+    target_accept
+        Acceptance that the warm-up steers the sampler's step size to: .7 needs fewer steps per effective draw
+        than the usual .8, measured on the demo.
     draws
         Kept draws in each chain. With 500 the largest R-hat comes out at 1.012–1.018, with 1,000 below 1.007.
     """
@@ -27,3 +30,4 @@ class RunSettings:
     chains: int = 4
     tune: int = 300
     draws: int = 1000
+    target_accept: float = 0.7

@@ -31,9 +31,9 @@ class CountryArrays:
         Each region's share of the country's votes, dims (region), sums to one.
     standing
         Whether a party stands in a region, dims (region, party).
-    last_log_share
-        Log of the last result's share, dims (region, party); zero where the party has no record or
-        does not stand.
+    start_log_share
+        Log of the last result's share, or of the prior median for a party without a record, dims (region,
+        party); of no meaning where the party does not stand.
     reference_share
         The party's typical share where it stands, dims (party), share 0–1: sets the size of its scales.
     pilot_share
@@ -41,19 +41,16 @@ class CountryArrays:
         coordinates only, never the model.
     free_party
         Positions of the parties without a last result, dims (free party).
-    free_median
-        Prior median of a free party's log share, dims (free party).
     """
 
     parties: tuple[str, ...]
     regions: tuple[str, ...]
     turnout: Floats
     standing: NDArray[np.bool_]
-    last_log_share: Floats
+    start_log_share: Floats
     reference_share: Floats
     pilot_share: Floats
     free_party: Indices
-    free_median: Floats
 
 
 @dataclass(frozen=True)

@@ -1,7 +1,8 @@
 """The election model: one hierarchical model of several polls over time, as a ``pm.Model``.
 
 Support is θ_{r,t} ∝ exp(a_t) · E_{r,t} with E_{r,t} = exp(b_r + d_{r,t}): the national swing, and a region's
-own support from its last result and its own swing. Between knots a and E move in straight lines. Polls see
+own support from its last result and its own swing, which leaves the country's sum of E as it was (see
+:mod:`models.region_support`). Between knots a and E move in straight lines. Polls see
 θ through the shared lean and their house's lean, with their design effect.
 """
 
@@ -28,6 +29,7 @@ from models.poll_answers import (
     small_counts,
 )
 from models.priors import Priors
+from models.region_support import add_region_ratio, own_support
 from models.shared_lean import add_shared_lean, lean_loadings, lean_scale
 
 Array = Any
@@ -113,10 +115,10 @@ def _add_data(arrays: ElectionArrays, geometry: Geometry, priors: Priors) -> dic
     values: dict[str, Any] = {
         "reference_share": country.reference_share,
         "pilot_share": country.pilot_share,
-        "last_log_share": country.last_log_share,
+        "start_log_share": country.start_log_share,
         "standing": country.standing.astype(float),
+        "turnout": country.turnout,
         "free": np.eye(len(country.parties))[country.free_party],
-        "free_median": country.free_median,
         "national_weight": rows.national_weight,
         "house_number": np.arange(len(rows.houses)),
         "house_of_row": rows.house_of_row,
@@ -194,7 +196,7 @@ def _start(
     """True start of the free parties: national dims (party), and by region dims (region, party)."""
     if not len(arrays.country.free_party):
         return None, None
-    start = add_free_baseline(free=data["free"], median=data["free_median"], log_sd=priors.free_log_sd)
+    start = add_free_baseline(free=data["free"], log_sd=priors.free_log_sd)
     if lean is not None:
         start = start - lean["at_reference"] * data["free"].sum(axis=0)
     if len(arrays.country.regions) == 1:
@@ -233,10 +235,10 @@ def _region_support(
     geometry: Geometry, data: dict[str, Array], drift: Array, region_start: Array | None, priors: Priors
 ) -> Array:
     """Each region's own support E at the regional knots, zero where absent; dims (knot, region, party)."""
-    base = data["last_log_share"] if region_start is None else data["last_log_share"] + region_start
+    own = 0.0 if region_start is None else region_start[None]
     if geometry.region is None:
-        return (data["standing"] * pt.exp(base))[None]
-    ratio = pm.Normal("region_ratio_log", priors.region_ratio_log_median, priors.region_ratio_log_sd)
+        return _own_support(data, own + pt.zeros_like(data["start_log_share"])[None])
+    ratio = add_region_ratio(priors=priors)
     pull = data["region_pull"]
     if region_start is not None:
         pull = pull - answer_information(
@@ -244,7 +246,7 @@ def _region_support(
         )
     modes = add_modes(
         "region_modes",
-        scale=drift * pt.exp(ratio),
+        scale=drift * ratio,
         information=data["region_information"],
         share=data["pilot_share"],
         pull=pull,
@@ -252,9 +254,18 @@ def _region_support(
     )
     contrast = data["region_contrast"]
     walk = pt.dot(data["region_basis"], modes).reshape((-1, contrast.shape[1], modes.shape[1]))
-    own = pt.dot(walk.dimshuffle(0, 2, 1), contrast.T).dimshuffle(0, 2, 1)
-    own = pt.concatenate([pt.zeros_like(own[:1]), own], axis=0)
-    return data["standing"] * pt.exp(base + own)
+    swing = pt.dot(walk.dimshuffle(0, 2, 1), contrast.T).dimshuffle(0, 2, 1)
+    swing = pt.concatenate([pt.zeros_like(swing[:1]), swing], axis=0)
+    return _own_support(data, own + swing)
+
+
+def _own_support(data: dict[str, Array], own: Array) -> Array:
+    return own_support(
+        own,
+        start_share=data["standing"] * pt.exp(data["start_log_share"]),
+        turnout=data["turnout"],
+        exp=pt.exp,
+    )
 
 
 def _house_effects(geometry: Geometry, data: dict[str, Array], house_scale: Array) -> Array | None:

@@ -15,22 +15,20 @@ import pytensor.tensor as pt
 Array = Any
 
 
-def add_free_baseline(*, free: Array, median: Array, log_sd: float) -> Array:
-    """Put the national polled start of the free parties into the model.
+def add_free_baseline(*, free: Array, log_sd: float) -> Array:
+    """Put the national polled start of the free parties, around its prior median, into the model.
 
     Parameters
     ----------
     free
         One where column f is party p, dims (free party, party).
-    median
-        Prior median of the log share, dims (free party).
 
     Returns
     -------
     dims (party), log support, zero for anchored parties.
     """
     own = pm.Normal("free_baseline_own", 0, 1, dims="free_party")
-    return pt.dot(median + log_sd * own, free)
+    return pt.dot(log_sd * own, free)
 
 
 def add_free_region_baseline(*, free: Array, log_sd: float) -> Array:

@@ -22,8 +22,10 @@ class Priors:
         National drift per √week. .035 at 15 % is half a point a week, the order that tracking of large
         parties shows: an exact fit of a local-level model to an open register of 2004–07 gives .9–1.1
         points a week for a party at 44 %, where this prior has median .7 and 90 % interval .25–1.8.
-    region_ratio_log_median, region_ratio_log_sd
-        A region's own drift over the national one: about half, with a wide range.
+    region_ratio_median, region_ratio_most, region_ratio_spread
+        A region's own drift over the national one: about half, 90 % between .2 and 1, never more than
+        twice (logit-normal), since regions that move on their own more than the country moves as a whole
+        would be two countries. Registers without regional polls leave it at the prior.
     house_log_median, house_log_sd
         House effects: .06 at 15 % is .8 points.
     party_spread
@@ -46,8 +48,9 @@ class Priors:
 
     drift_log_median: float = log(0.035)
     drift_log_sd: float = 0.6
-    region_ratio_log_median: float = log(0.5)
-    region_ratio_log_sd: float = 0.5
+    region_ratio_median: float = 0.5
+    region_ratio_most: float = 2.0
+    region_ratio_spread: float = 0.67
     house_log_median: float = log(0.06)
     house_log_sd: float = 0.5
     party_spread: float = 0.35

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import partial
 
 import numpy as np
 import xarray as xr
@@ -20,7 +21,7 @@ from aggregator.estimate.sampler_checks import (
     judge_fit,
     only_needs_more_draws,
 )
-from aggregator.estimate.sampling import ChainPlan
+from aggregator.estimate.sampling import CAREFUL_ACCEPT, ChainPlan
 from aggregator.estimate.support import series_dates, summarise_support
 from aggregator.inputs.contest import ModelOverrides
 from aggregator.inputs.desk_inputs import DeskInputs
@@ -72,13 +73,13 @@ def fit_contest(
     *,
     settings: RunSettings,
     limits: Limits | None = None,
-    continue_short_fits: bool = True,
+    second_attempts: bool = True,
     progress: Progress = lambda _stage, _part: None,
 ) -> Fit:
     """Fit one contest.
 
-    A fit that misses nothing but R-hat or effective sample size is continued once: the same chains, twice
-    as long.
+    A fit with divergent steps is run once more with smaller steps. A fit that then misses nothing but R-hat
+    or effective sample size is continued once: the same chains, twice as long.
 
     Parameters
     ----------
@@ -88,8 +89,8 @@ def fit_contest(
         Length and seed.
     limits
         What the fit must meet.
-    continue_short_fits
-        Whether to run such a fit on; a study that only needs rough draws does not.
+    second_attempts
+        Whether to do so; a study that only needs rough draws does not.
     progress
         Called with the stage's name and its finished part, 0–1.
 
@@ -107,10 +108,13 @@ def fit_contest(
             priors=_priors(inputs.contest.model),
             shared_lean=inputs.contest.model.shared_lean,
         )
-        fit = _sample(inputs, election, settings=settings, limits=limits, progress=progress)
-        if continue_short_fits and only_needs_more_draws(fit.convergence, limits=limits):
-            longer = replace(settings, draws=2 * settings.draws)
-            fit = _sample(inputs, election, settings=longer, limits=limits, progress=progress)
+        attempt = partial(_sample, inputs, election, limits=limits, progress=progress)
+        fit = attempt(settings=settings)
+        if second_attempts and fit.convergence.divergences > limits.divergences:
+            settings = replace(settings, target_accept=CAREFUL_ACCEPT)
+            fit = attempt(settings=settings)
+        if second_attempts and only_needs_more_draws(fit.convergence, limits=limits):
+            fit = attempt(settings=replace(settings, draws=2 * settings.draws))
     return fit
 
 
@@ -130,6 +134,7 @@ def _sample(
             tune=settings.tune,
             draws=settings.draws,
             seed=int(streams[CHAINS_STREAM].generate_state(1)[0]),
+            target_accept=settings.target_accept,
         ),
         progress=lambda part: progress("drawing from the model", part),
     )

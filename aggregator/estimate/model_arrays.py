@@ -120,18 +120,16 @@ def _country(
     reference = np.where(national > 0, (record + polled) / 2, polled)
     # Where a party stands but had no votes last time, its share elsewhere is the best guess of its start.
     filled = np.where(last.by_region > 0, last.by_region, np.maximum(national / where, 1e-9))
-    known = standing & (national > 0)
-    equal = 1 / len(contest.party_codes)
+    unknown = FREE_SHARE if anchored else 1 / len(contest.party_codes)
     return CountryArrays(
         parties=contest.party_codes,
         regions=contest.region_codes,
         turnout=last.turnout,
         standing=standing,
-        last_log_share=np.where(known, np.log(filled), 0.0),
+        start_log_share=np.log(np.where(national > 0, filled, unknown)),
         reference_share=np.minimum(reference, 0.95),
         pilot_share=pilot,
         free_party=free.astype(np.int64),
-        free_median=np.full(len(free), np.log(FREE_SHARE if anchored else equal)),
     )
 
 

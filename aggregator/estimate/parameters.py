@@ -13,6 +13,7 @@ from models.block_geometry import BlockGeometry, Geometry
 from models.conditional_laplace import answer_information, modes_from_coordinates
 from models.party_scales import size_factor
 from models.priors import Priors
+from models.region_support import region_ratio
 from models.shared_lean import lean_loadings, lean_scale
 
 
@@ -99,7 +100,7 @@ def read_parameters(
     free = np.eye(parties)[country.free_party]
     start = np.zeros((samples, parties))
     if len(free):
-        start = (country.free_median + priors.free_log_sd * part("free_baseline_own")) @ free
+        start = (priors.free_log_sd * part("free_baseline_own")) @ free
         start = start - reference * free.sum(axis=0)
     national = modes("national", geometry.national, drift, lean + start[:, None, :])
     walk = np.zeros((samples, len(knots.national_day), parties))
@@ -111,7 +112,7 @@ def read_parameters(
         if len(free):
             region_start = (priors.free_region_log_sd * part("free_region_baseline_own")) @ free
             region += region_start[:, None]
-        ratio = np.exp(part("region_ratio_log"))
+        ratio = region_ratio(part("region_ratio_own"), priors=priors, exp=np.exp)
         field = geometry.region.basis @ modes("region", geometry.region, drift * ratio[:, None], region_start)
         contrasts = field.reshape(samples, len(knots.region_day) - 1, -1, parties)
         region[:, 1:] += geometry.region_contrast @ contrasts

@@ -102,7 +102,7 @@ def _pilot_scales(arrays: ElectionArrays, priors: Priors) -> dict[str, Floats]:
     drift = np.exp(priors.drift_log_median) * size
     return {
         "drift": drift,
-        "region": drift * np.exp(priors.region_ratio_log_median),
+        "region": drift * priors.region_ratio_median,
         "house": np.exp(priors.house_log_median) * size,
     }
 
@@ -128,7 +128,7 @@ def _beside(
         reference = lean_loadings(np.array(knots.lean_reference), correlation=priors.lean_correlation) @ ends
     if len(free):
         own = layout.part(point, "free_baseline_own")
-        beside += (country.free_median + priors.free_log_sd * own) @ free - reference * free.sum(axis=0)
+        beside += (priors.free_log_sd * own) @ free - reference * free.sum(axis=0)
     region_start = None
     if "free_region_baseline_own" in layout.names:
         region_start = (priors.free_region_log_sd * layout.part(point, "free_region_baseline_own")) @ free

@@ -12,6 +12,7 @@ from aggregator.estimate.knots import knot_weights
 from aggregator.estimate.parameters import Parameters
 from models.arrays import CountryArrays, ElectionArrays, Floats
 from models.dimensions import CHAIN, DATE, DRAW, HOUSE, PARTY, REGION
+from models.region_support import own_support
 
 # Turnout: how far a region's share of the votes may move between two elections, log units (common practice).
 TURNOUT_LOG_SD = 0.04
@@ -134,7 +135,12 @@ def region_support(region: Floats, *, country: CountryArrays, weight: Floats) ->
     -------
     dims (sample, moment, region, party).
     """
-    own = country.standing * np.exp(country.last_log_share + region)
+    own = own_support(
+        region,
+        start_share=country.standing * np.exp(country.start_log_share),
+        turnout=country.turnout,
+        exp=np.exp,
+    )
     flat = own.reshape(*own.shape[:2], -1)
     return (weight @ flat).reshape(len(own), len(weight), *country.standing.shape)
 

@@ -66,11 +66,7 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
         start, region_start = pt.zeros(P), pt.zeros((R, P))
         if len(free):
             own = pm.Normal("free_baseline_own", 0, 1, shape=len(free))
-            true_start = (
-                country.free_median
-                + priors.free_log_sd * own
-                - lean_at(np.array([knots.lean_reference]))[0, free]
-            )
+            true_start = priors.free_log_sd * own - lean_at(np.array([knots.lean_reference]))[0, free]
             start = pt.set_subtensor(start[free], true_start)
             if R > 1:
                 own = pm.Normal("free_region_baseline_own", 0, 1, shape=(R, len(free)))
@@ -85,9 +81,9 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
         region = pt.zeros((L, R, P))
         ratio = pt.ones(())
         if R > 1:
-            ratio = pt.exp(
-                pm.Normal("region_ratio_log", priors.region_ratio_log_median, priors.region_ratio_log_sd)
-            )
+            odds = priors.region_ratio_median / (priors.region_ratio_most - priors.region_ratio_median)
+            logit = np.log(odds) + priors.region_ratio_spread * pm.Normal("region_ratio_own", 0, 1)
+            ratio = priors.region_ratio_most * pm.math.sigmoid(logit)
             steps = pm.Normal("region_steps", 0, 1, shape=(L - 1, R, P))
             steps = steps - (country.turnout[:, None] * steps).sum(axis=1, keepdims=True)
             paths = pt.cumsum(np.sqrt(knots.region_step)[:, None, None] * steps, axis=0) * drift * ratio
@@ -111,7 +107,13 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
 
         # Expected shares: log support moves in straight lines nationally, support itself by region
         seen = pt.dot(rows.national_weight, walk + lean) + house[rows.house_of_row]
-        own = country.standing * pt.exp(country.last_log_share + region)
+        # Regional swings leave a region's sum at one and a party's national sum as it was at the start
+        start_share = country.standing * np.exp(country.start_log_share)
+        before = (country.turnout[:, None] * start_share / start_share.sum(axis=1, keepdims=True)).sum(axis=0)
+        own = start_share * pt.exp(region)
+        for _ in range(2):
+            own = own / own.sum(axis=2, keepdims=True)
+            own = own * (before / (country.turnout[:, None] * own).sum(axis=1))[:, None, :]
         own = pt.dot(rows.region_weight, own.reshape((L, R * P))).reshape((-1, R, P))
         support = pt.exp(seen)[:, None, :] * own
         support = support / support.sum(axis=2, keepdims=True)

@@ -103,7 +103,7 @@ def test_the_fit_needs_nothing_but_more_draws_for_a_release(with_lean: Fit) -> N
 def _fit(folder: Path, *, shared_lean: bool) -> Fit:
     write_australian_contest(folder, shared_lean=shared_lean)
     inputs = read_contest_folder(folder, today=date(2026, 1, 1))
-    return fit_contest(inputs, settings=SETTINGS, continue_short_fits=False)
+    return fit_contest(inputs, settings=SETTINGS, second_attempts=False)
 
 
 def _reference_houses(*, result: float | None) -> pd.DataFrame:

@@ -55,11 +55,10 @@ def two_party_race() -> ElectionArrays:
             regions=("ALL",),
             turnout=np.ones(1),
             standing=np.ones((1, 2), dtype=bool),
-            last_log_share=np.log(half)[None],
+            start_log_share=np.log(half)[None],
             reference_share=half,
             pilot_share=half,
             free_party=np.empty(0, dtype=np.int64),
-            free_median=np.empty(0),
         ),
         knots=knots,
         rows=RowArrays(

@@ -111,13 +111,14 @@ def made_up_arrays(
             regions=tuple(f"R{i}" for i in range(regions)),
             turnout=turnout,
             standing=standing,
-            last_log_share=np.where(
-                standing & (np.arange(parties) < parties - free) & anchored, _log_share(base), 0.0
+            start_log_share=np.where(
+                np.arange(parties) < (parties - free if anchored else 0),
+                _log_share(base),
+                np.log(0.02 if anchored else 1 / parties),
             ),
             reference_share=share,
             pilot_share=share,
             free_party=np.arange(parties - free if anchored else 0, parties),
-            free_median=np.full(free if anchored else parties, np.log(0.02 if anchored else 1 / parties)),
         ),
         knots=knots,
         rows=RowArrays(
