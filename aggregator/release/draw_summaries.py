@@ -1,4 +1,4 @@
-"""Draws to numbers: quantiles, means and Monte Carlo errors, for many quantities at once."""
+"""Draws to numbers: means, standard deviations and quantiles, for many quantities at once."""
 
 from __future__ import annotations
 
@@ -7,7 +7,6 @@ from typing import Any
 
 import numpy as np
 import xarray as xr
-from arviz_stats.base import array_stats
 from numpy.typing import NDArray
 
 from models.dimensions import CHAIN, DRAW
@@ -54,35 +53,3 @@ def summarise_samples(samples: NDArray[Any], *, whole: bool = False) -> dict[str
     }
     summary |= {name: levels[place].astype(np.float64) for place, name in enumerate(QUANTILES)}
     return summary
-
-
-def monte_carlo_error(indicator: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Estimate the standard error of a mean over correlated draws, by effective sample size.
-
-    Where all draws agree there is no spread to measure; the error is then that of the smallest chance the
-    number of draws can show.
-
-    Parameters
-    ----------
-    indicator
-        Shape (chain, draw, …), values 0 to 1.
-
-    Returns
-    -------
-    numpy.ndarray
-        Shape (…).
-
-    References
-    ----------
-    .. [1] Vehtari, A., et al. (2021). Rank-normalization, folding, and localization: an improved R-hat.
-       Bayesian Analysis 16(2), 667-718. https://doi.org/10.1214/20-BA1221
-    """
-    samples = indicator.shape[0] * indicator.shape[1]
-    least = (np.clip(indicator.mean(axis=(0, 1)) * samples, 0.5, samples - 0.5)) / samples
-    floor = np.sqrt(least * (1.0 - least) / samples)
-    varies = np.ptp(indicator, axis=(0, 1)) > 0
-    error = np.array(floor)
-    if varies.any() and indicator.shape[1] >= 4:
-        measured = array_stats.mcse(indicator[:, :, varies], chain_axis=0, draw_axis=1, method="mean")
-        error[varies] = np.where(np.isfinite(measured), measured, floor[varies])
-    return error

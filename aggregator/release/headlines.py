@@ -14,8 +14,9 @@ from aggregator.inputs.contest import Contest
 from aggregator.release.likelihood_words import NAMED_LEADER_FROM
 from aggregator.release.rounding import chance_text, date_text, share_interval_text, share_text, whole_text
 from aggregator.release.table_rows import largest_code, likeliest, national_parties
-from aggregator.release.table_words import Kind, Level, Outcome
+from aggregator.release.table_words import Kind, Level
 from aggregator.release.tables import ReleaseTables
+from aggregator.seats.majorities import Outcome
 
 MONTH_DAYS = 30
 POLL_SIZE = 1_000

@@ -18,7 +18,8 @@ from aggregator.release.rounding import (
     whole_text,
 )
 from aggregator.release.table_rows import largest_code, last_row
-from aggregator.release.table_words import Kind, Level, Outcome
+from aggregator.release.table_words import Kind, Level
+from aggregator.seats.majorities import Outcome
 
 CLOSEST_SEATS = 12
 WORTH_AGES = (0, 7, 14, 30, 60, 90)

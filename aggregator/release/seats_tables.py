@@ -23,11 +23,6 @@ def seats_in_chamber(seats: xr.Dataset) -> int:
     return int(seats["seats_polling_day"].isel({CHAIN: 0, DRAW: 0}).sum())
 
 
-def majority_line(contest: Contest, *, chamber: int) -> int:
-    """Seats that make a majority: the contest's number, else the smallest whole number above half."""
-    return contest.counting.majority or chamber // 2 + 1
-
-
 def build_seats_table(seats: xr.Dataset, *, contest: Contest, codes: Sequence[Code]) -> pd.DataFrame:
     """Summarise seats on every date and on polling day.
 

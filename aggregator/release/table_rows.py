@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import pandas as pd
 
-from aggregator.release.table_words import Kind, Level, Outcome
+from aggregator.release.table_words import Kind, Level
+from aggregator.seats.majorities import Outcome
 
 
 def last_row(table: pd.DataFrame, *, code: str, kind: Kind) -> pd.Series | None:

@@ -21,7 +21,8 @@ from aggregator.release.table_columns import (
     typed_column,
     whole_column,
 )
-from aggregator.release.table_words import Kind, Level, Outcome
+from aggregator.release.table_words import Kind, Level
+from aggregator.seats.majorities import Outcome
 
 CAUTION = Column(
     "caution",

@@ -18,13 +18,3 @@ class Kind(StrEnum):
 
     ON_DATE = "on_date"
     ON_POLLING_DAY = "on_polling_day"
-
-
-class Outcome(StrEnum):
-    """What a chance is the chance of."""
-
-    MOST_SUPPORT = "most_support"
-    LARGEST = "largest"
-    MAJORITY_ALONE = "majority_alone"
-    MAJORITY_ONLY_AS_ALLIANCE = "majority_only_as_alliance"
-    NO_MAJORITY = "no_majority"

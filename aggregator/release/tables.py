@@ -90,7 +90,7 @@ def build_tables(
     codes = contest_codes(contest)
     return ReleaseTables(
         support=build_support_table(draws, contest=contest, codes=codes),
-        chances=build_chances_table(draws, seats=seats, contest=contest, codes=codes),
+        chances=build_chances_table(draws, seats=seats, contest=contest),
         houses=build_houses_table(draws),
         shelf_life=shelf_life[list(SHELF_LIFE.column_names)],
         polls_used=build_polls_used_table(inputs.polls, polls_worth=polls_worth, contest=contest),

@@ -29,9 +29,10 @@ from aggregator.release.manifest import (
 )
 from aggregator.release.method_note import build_method_note
 from aggregator.release.page import build_page
-from aggregator.release.seats_tables import majority_line, seats_in_chamber
+from aggregator.release.seats_tables import seats_in_chamber
 from aggregator.release.table_files import round_table, write_table
 from aggregator.release.tables import ReleaseTables, build_tables
+from aggregator.seats.majorities import majority_line
 from aggregator.verdict import Verdict
 
 PUBLIC = "public"

@@ -2,14 +2,13 @@
 
 The outcomes, draw by draw:
 
-largest
-    the party with most seats. Parties that tie for most share the draw equally, so that the chances of all
-    parties sum to one. Alliances do not enter: an alliance is no party.
+most support, largest
+    the party with most votes, or with most seats. Parties that tie for most share the draw equally, so that
+    the chances of all parties sum to one. Alliances do not enter: an alliance is no party.
 majority alone
     the party holds at least the majority by itself.
 majority only as an alliance
-    the members of an alliance hold at least the majority together, and no party, member or not, holds it by
-    itself.
+    the members of an alliance hold at least the majority together, and none of them holds it by itself.
 no majority
     neither a party nor an alliance of the day holds it.
 
@@ -21,30 +20,35 @@ code.
 from __future__ import annotations
 
 from collections.abc import Iterable
-from datetime import date
 from enum import StrEnum
 
-import arviz as az
 import numpy as np
 import numpy.typing as npt
-import pandas as pd
 import xarray as xr
+from arviz_stats.base import array_stats
 
 from aggregator.inputs.contest import OTHERS, Alliance, Contest
-from models.dimensions import CHAIN, DATE, DRAW, PARTY
+from models.dimensions import CHAIN, DRAW, PARTY
 
 FloatArray = npt.NDArray[np.float64]
 
 NO_CODE = ""
+FEWEST_DRAWS = 4
+"""Draws of a chain below which its autocorrelation cannot be measured."""
 
 
 class Outcome(StrEnum):
-    """What may happen in a chamber."""
+    """What a chance is the chance of."""
 
+    MOST_SUPPORT = "most_support"
     LARGEST = "largest"
     MAJORITY_ALONE = "majority_alone"
     MAJORITY_ONLY_AS_ALLIANCE = "majority_only_as_alliance"
     NO_MAJORITY = "no_majority"
+
+
+type OutcomeInDraws = tuple[Outcome, str, FloatArray]
+"""An outcome, its code, and whether it happens in each draw: shape (chain, draw), values 0 to 1."""
 
 
 def majority_line(contest: Contest, *, chamber: int) -> int:
@@ -52,64 +56,32 @@ def majority_line(contest: Contest, *, chamber: int) -> int:
     return contest.counting.majority or chamber // 2 + 1
 
 
-def summarise_majorities(seats: xr.Dataset, *, contest: Contest) -> pd.DataFrame:
-    """Chances of every outcome, on every date and on polling day.
+def leads_in_draws(held: xr.DataArray, *, outcome: Outcome) -> list[OutcomeInDraws]:
+    """Whether each party holds most, draw by draw: one part of k where k parties tie.
 
     Parameters
     ----------
-    seats
-        As `aggregator.seats.counting.count_seats` returns it: ``seats``, ``seats_polling_day`` and the
-        attributes ``chamber`` and ``polling_day``.
-    contest
-        The contest: its alliances, each counted on the days on which it exists, and its majority.
+    held
+        Support or seats on one day, dims (chain, draw, party), any order.
+    outcome
+        What holding most is called: ``MOST_SUPPORT`` or ``LARGEST``.
 
     Returns
     -------
-    pd.DataFrame
-        Columns ``date`` (datetime64), ``kind`` (``on_date`` or ``on_polling_day``), ``outcome``, ``code``
-        (empty for ``no_majority``), ``probability`` and ``mc_error``, 0–1. Dates in order, polling day last.
+    list of (outcome, code, happens)
+        One per party, in the order of ``held``; ``happens`` has dims (chain, draw).
     """
-    majority = majority_line(contest, chamber=int(seats.attrs["chamber"]))
-    polling_day = date.fromisoformat(seats.attrs["polling_day"])
-    tables = []
-    for day in seats[DATE].values:
-        when = pd.Timestamp(day)
-        active = [a for a in contest.alliances if a.active_on(when.date())]
-        table = chances_of_outcomes(seats["seats"].sel({DATE: day}), alliances=active, majority=majority)
-        tables.append(table.assign(date=when, kind="on_date"))
-    active = [a for a in contest.alliances if a.active_on(polling_day)]
-    table = chances_of_outcomes(seats["seats_polling_day"], alliances=active, majority=majority)
-    tables.append(table.assign(date=pd.Timestamp(polling_day), kind="on_polling_day"))
-    columns = ["date", "kind", "outcome", "code", "probability", "mc_error"]
-    return pd.concat(tables, ignore_index=True)[columns]
+    held = _parties_of(held)
+    values = held.to_numpy()
+    most = values == values.max(axis=-1, keepdims=True)
+    parts = most / most.sum(axis=-1, keepdims=True)
+    return [(outcome, str(code), parts[..., place]) for place, code in enumerate(held[PARTY].values)]
 
 
-def chances_of_outcomes(seats: xr.DataArray, *, alliances: Iterable[Alliance], majority: int) -> pd.DataFrame:
-    """Chances of every outcome on one day.
-
-    Parameters
-    ----------
-    seats, alliances, majority
-        As for `outcomes_in_draws`.
-
-    Returns
-    -------
-    pd.DataFrame
-        Columns ``outcome``, ``code``, ``probability``, ``mc_error``.
-    """
-    return pd.DataFrame(
-        [
-            (str(outcome), code, float(happens.mean()), monte_carlo_error(happens))
-            for outcome, code, happens in outcomes_in_draws(seats, alliances=alliances, majority=majority)
-        ],
-        columns=["outcome", "code", "probability", "mc_error"],
-    )
-
-
-def outcomes_in_draws(
+def majorities_in_draws(
     seats: xr.DataArray, *, alliances: Iterable[Alliance], majority: int
-) -> list[tuple[Outcome, str, FloatArray]]:
-    """Whether each outcome happens, draw by draw.
+) -> list[OutcomeInDraws]:
+    """Whether a majority is held alone, only as an alliance, or not at all, draw by draw.
 
     Parameters
     ----------
@@ -123,44 +95,61 @@ def outcomes_in_draws(
     Returns
     -------
     list of (outcome, code, happens)
-        ``happens`` has dims (chain, draw): 1 where it happens, 0 where not, and for ``largest`` one part of
-        k where k parties tie. The code of ``no_majority`` is empty.
+        ``happens`` has dims (chain, draw): 1 where it happens, 0 where not. The code of ``no_majority`` is
+        empty.
     """
-    seats = seats.transpose(CHAIN, DRAW, PARTY)
-    won = seats.sel({PARTY: seats[PARTY] != OTHERS})
-    parties = [str(code) for code in won[PARTY].values]
-    most = won == won.max(PARTY)
-    largest = most / most.sum(PARTY)
+    seats = _parties_of(seats)
+    won = seats.to_numpy()
+    place = {str(code): index for index, code in enumerate(seats[PARTY].values)}
     alone = won >= majority
-    nobody_alone = nobody = ~alone.any(PARTY)
-    outcomes = [(Outcome.LARGEST, code, largest.sel({PARTY: code})) for code in parties]
-    outcomes += [(Outcome.MAJORITY_ALONE, code, alone.sel({PARTY: code})) for code in parties]
+    somebody = alone.any(axis=-1)
+    found = [(Outcome.MAJORITY_ALONE, code, alone[..., index]) for code, index in place.items()]
     for alliance in alliances:
-        together = seats.sel({PARTY: list(alliance.members)}).sum(PARTY) >= majority
-        outcomes.append((Outcome.MAJORITY_ONLY_AS_ALLIANCE, alliance.code, together & nobody_alone))
-        nobody = nobody & ~together
-    outcomes.append((Outcome.NO_MAJORITY, NO_CODE, nobody))
-    return [(outcome, code, happens.to_numpy().astype(np.float64)) for outcome, code, happens in outcomes]
+        members = [place[member] for member in alliance.members]
+        together = won[..., members].sum(axis=-1) >= majority
+        only_together = together & ~alone[..., members].any(axis=-1)
+        found.append((Outcome.MAJORITY_ONLY_AS_ALLIANCE, alliance.code, only_together))
+        somebody = somebody | together
+    found.append((Outcome.NO_MAJORITY, NO_CODE, ~somebody))
+    return [(outcome, code, happens.astype(np.float64)) for outcome, code, happens in found]
 
 
-def monte_carlo_error(happens: npt.ArrayLike) -> float:
-    """Estimate the standard error of a probability read off draws, autocorrelation included.
+def _parties_of(held: xr.DataArray) -> xr.DataArray:
+    """Leave others out, and put the dims in order: (chain, draw, party)."""
+    return held.sel({PARTY: held[PARTY] != OTHERS}).transpose(CHAIN, DRAW, PARTY)
 
-    An outcome that happens in no draw (or in all) shows no variation to measure. Its error is taken as
-    1 / (N + 2), about the standard deviation of the chance given N draws without the outcome and no
-    knowledge before (Laplace's rule of succession).
+
+def monte_carlo_error(happens: npt.ArrayLike) -> FloatArray:
+    """Estimate the standard error of chances read off draws, autocorrelation included.
+
+    An outcome that happens in no draw (or in all) shows no variation to measure, and a chain of fewer than
+    ``FEWEST_DRAWS`` no autocorrelation. The error is then the standard deviation of the chance given the
+    draws and Jeffreys' prior, about 0.7 / S for an outcome that never happens in S draws.
 
     Parameters
     ----------
     happens
-        dims (chain, draw): whether the outcome happens, or the part of it that does, 0–1.
+        Shape (chain, draw, …): whether the outcome happens, or the part of it that does, 0 to 1.
+
+    Returns
+    -------
+    numpy.ndarray
+        Shape (…), no value zero.
 
     References
     ----------
-    Vehtari, A., Gelman, A., Simpson, D., Carpenter, B. and Bürkner, P.-C. (2021). Rank-normalization,
-    folding, and localization: an improved R-hat. Bayesian Analysis 16, 667–718. doi:10.1214/20-BA1221
+    .. [1] Vehtari, A., Gelman, A., Simpson, D., Carpenter, B. and Bürkner, P.-C. (2021). Rank-normalization,
+       folding, and localization: an improved R-hat. Bayesian Analysis 16, 667–718. doi:10.1214/20-BA1221
+    .. [2] Brown, L. D., Cai, T. T. and DasGupta, A. (2001). Interval estimation for a binomial proportion.
+       Statistical Science 16, 101–133. doi:10.1214/ss/1009213286
     """
     indicator: FloatArray = np.asarray(happens, dtype=np.float64)
-    if indicator.min() == indicator.max():
-        return 1.0 / (indicator.size + 2)
-    return float(az.mcse(indicator, method="mean"))
+    samples = indicator.shape[0] * indicator.shape[1]
+    often = indicator.sum(axis=(0, 1))
+    beta = (often + 0.5) * (samples - often + 0.5)
+    error = np.asarray(np.sqrt(beta / (samples + 2.0)) / (samples + 1.0))
+    varies = np.ptp(indicator, axis=(0, 1)) > 0
+    if indicator.shape[1] >= FEWEST_DRAWS and varies.any():
+        measured = array_stats.mcse(indicator[:, :, varies], chain_axis=0, draw_axis=1, method="mean")
+        error[varies] = np.where(np.isfinite(measured), measured, error[varies])
+    return error

@@ -10,8 +10,9 @@ from aggregator.release.headlines import build_headlines
 from aggregator.release.rounding import chance_text, share_interval_text, share_text, whole_text
 from aggregator.release.table_files import round_table
 from aggregator.release.table_rows import last_row, likeliest, national_parties
-from aggregator.release.table_words import Kind, Outcome
+from aggregator.release.table_words import Kind
 from aggregator.release.tables import ReleaseTables, build_tables
+from aggregator.seats.majorities import Outcome
 from tests.made_up_draws import made_up_draws
 from tests.release.made_up_desk import (
     contest_without_seats,

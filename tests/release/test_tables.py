@@ -8,13 +8,12 @@ import pytest
 
 from aggregator.problems import Problem, Severity
 from aggregator.release.chances_table import build_chances_table
-from aggregator.release.codes import contest_codes
 from aggregator.release.poll_tables import build_polls_used_table, build_polls_weighed_table
-from aggregator.release.seats_tables import majority_line
 from aggregator.release.table_files import SchemaError, check_table, csv_text, inert_cell, round_table
 from aggregator.release.table_schemas import ALL_SCHEMAS, SUPPORT
-from aggregator.release.table_words import Kind, Level, Outcome
+from aggregator.release.table_words import Kind, Level
 from aggregator.release.tables import build_tables
+from aggregator.seats.majorities import Outcome
 from tests.made_up_draws import made_up_contest, made_up_draws
 from tests.release.made_up_desk import (
     contest_without_seats,
@@ -148,7 +147,7 @@ def test_chances_against_counting_by_hand(run):
     counted[0, :, parties.index("OTH")] = 24 - counted[0].sum(axis=-1)
     seats["seats_polling_day"] = (("chain", "draw", "party"), counted)
     contest = made_up_contest()
-    table = build_chances_table(draws, seats=seats, contest=contest, codes=contest_codes(contest))
+    table = build_chances_table(draws, seats=seats, contest=contest)
     final = table[table["kind"] == Kind.ON_POLLING_DAY].set_index(["outcome", "code"])["probability"]
 
     def of_six(count):
@@ -168,7 +167,7 @@ def test_monte_carlo_errors_are_never_zero_and_shrink_with_more_draws(run):
     errors = []
     for count in (50, 800):
         draws = made_up_draws(chains=2, draws=count, dates=1)
-        table = build_chances_table(draws, seats=None, contest=contest, codes=contest_codes(contest))
+        table = build_chances_table(draws, seats=None, contest=contest)
         final = table[table["kind"] == Kind.ON_POLLING_DAY].set_index("code")
         assert (final["mc_error"] > 0).all()
         errors.append(final.loc["FER", "mc_error"])
@@ -190,14 +189,6 @@ def test_nothing_is_said_about_seats_where_nothing_is_counted(run):
     assert found.seats is None
     assert found.seat_chances is None
     assert set(found.chances["outcome"]) == {Outcome.MOST_SUPPORT}
-
-
-def test_the_majority_is_the_contests_number_or_the_smallest_above_half():
-    contest = made_up_contest()
-    assert majority_line(contest, chamber=24) == 13
-    assert majority_line(contest, chamber=25) == 13
-    own = contest.model_copy(update={"counting": contest.counting.model_copy(update={"majority": 16})})
-    assert majority_line(own, chamber=24) == 16
 
 
 def test_a_poll_and_its_regional_rows_are_one_poll_whose_respondents_count_once(run):

@@ -4,17 +4,18 @@ from __future__ import annotations
 
 import arviz as az
 import numpy as np
-import pandas as pd
 import pytest
 import xarray as xr
+from scipy.stats import beta
 
 from aggregator.inputs.contest import Alliance, Contest, Counting
 from aggregator.seats.counting import count_seats
 from aggregator.seats.majorities import (
-    chances_of_outcomes,
+    Outcome,
+    leads_in_draws,
+    majorities_in_draws,
     majority_line,
     monte_carlo_error,
-    summarise_majorities,
 )
 from tests.made_up_draws import made_up_contest, made_up_draws, made_up_last_result
 
@@ -30,58 +31,49 @@ def seats_of(*draws: tuple[int, int, int]) -> xr.DataArray:
     )
 
 
-def chance(table: pd.DataFrame, outcome: str, code: str = "") -> float:
-    return table.set_index(["outcome", "code"]).loc[(outcome, code), "probability"]
+def chances(
+    seats: xr.DataArray, *, alliances: tuple[Alliance, ...] = (), majority: int
+) -> dict[tuple[str, str], float]:
+    """Chance of every outcome by its name and code."""
+    outcomes = leads_in_draws(seats, outcome=Outcome.LARGEST)
+    outcomes += majorities_in_draws(seats, alliances=alliances, majority=majority)
+    return {(outcome.value, code): float(happens.mean()) for outcome, code, happens in outcomes}
 
 
 def test_chances_equal_a_count_by_hand() -> None:
     # Chamber of 10, majority 6: FER alone; the pact only together; LAN alone; nobody; tie for largest.
     seats = seats_of((6, 3, 1), (4, 4, 2), (2, 7, 1), (5, 3, 2), (5, 5, 0))
-    table = chances_of_outcomes(seats, alliances=[GLOW], majority=6)
-    assert chance(table, "majority_alone", "FER") == pytest.approx(1 / 5)
-    assert chance(table, "majority_alone", "LAN") == pytest.approx(1 / 5)
-    assert chance(table, "majority_only_as_alliance", "GLOW") == pytest.approx(1 / 5)
-    assert chance(table, "no_majority") == pytest.approx(2 / 5)
-    assert chance(table, "largest", "FER") == pytest.approx((1 + 1 / 2 + 0 + 1 + 1 / 2) / 5)
-    assert chance(table, "largest", "LAN") == pytest.approx((0 + 1 / 2 + 1 + 0 + 1 / 2) / 5)
+    found = chances(seats, alliances=(GLOW,), majority=6)
+    assert found["majority_alone", "FER"] == pytest.approx(1 / 5)
+    assert found["majority_alone", "LAN"] == pytest.approx(1 / 5)
+    assert found["majority_only_as_alliance", "GLOW"] == pytest.approx(1 / 5)
+    assert found["no_majority", ""] == pytest.approx(2 / 5)
+    assert found["largest", "FER"] == pytest.approx((1 + 1 / 2 + 0 + 1 + 1 / 2) / 5)
+    assert found["largest", "LAN"] == pytest.approx((0 + 1 / 2 + 1 + 0 + 1 / 2) / 5)
 
 
-def test_outcomes_of_majority_are_complete_and_exclusive() -> None:
-    seats = count_seats(
-        made_up_draws(draws=300),
-        last_result=made_up_last_result(),
-        contest=made_up_contest(),
-        rng=np.random.default_rng(1),
-    )
-    table = summarise_majorities(seats, contest=made_up_contest())
-    sums = table.assign(largest=table["outcome"] == "largest").groupby(["date", "kind", "largest"])
-    np.testing.assert_allclose(sums["probability"].sum(), 1)
-    assert table["kind"].value_counts()["on_polling_day"] == 2 * 4 + 2
-    assert (table["mc_error"] > 0).all()
-
-
-def test_others_neither_lead_nor_hold_a_majority() -> None:
-    seats = seats_of((1, 2, 7), (6, 4, 0)).assign_coords(party=["FER", "LAN", "OTH"])
-    table = chances_of_outcomes(seats, alliances=[], majority=6)
-    assert "OTH" not in set(table["code"])
-    assert chance(table, "largest", "LAN") == pytest.approx(1 / 2)
-    assert chance(table, "no_majority") == pytest.approx(1 / 2)
-
-
-def test_alliance_counts_only_on_the_days_it_exists() -> None:
+def test_outcomes_of_majority_are_complete_and_exclusive_in_every_draw() -> None:
     contest = made_up_contest()
-    pact = contest.alliances[0].model_copy(update={"from_": pd.Timestamp("2033-02-20").date()})
-    contest = contest.model_copy(update={"alliances": (pact,)})
-    seats = count_seats(
-        made_up_draws(draws=20, dates=4),
+    counted = count_seats(
+        made_up_draws(draws=300),
         last_result=made_up_last_result(),
         contest=contest,
         rng=np.random.default_rng(1),
     )
-    table = summarise_majorities(seats, contest=contest)
-    days = table.loc[table["code"] == "GLOW", "date"]
-    assert days.min() == pd.Timestamp("2033-02-20")
-    assert days.size == 4
+    seats = counted["seats_polling_day"]
+    majority = majority_line(contest, chamber=int(counted.attrs["chamber"]))
+    held = majorities_in_draws(seats, alliances=contest.alliances, majority=majority)
+    np.testing.assert_array_equal(sum(happens for *_, happens in held), 1)
+    leads = leads_in_draws(seats, outcome=Outcome.LARGEST)
+    np.testing.assert_allclose(sum(happens for *_, happens in leads), 1)
+
+
+def test_others_neither_lead_nor_hold_a_majority() -> None:
+    seats = seats_of((1, 2, 7), (6, 4, 0)).assign_coords(party=["FER", "LAN", "OTH"])
+    found = chances(seats, majority=6)
+    assert "OTH" not in {code for _, code in found}
+    assert found["largest", "LAN"] == pytest.approx(1 / 2)
+    assert found["no_majority", ""] == pytest.approx(1 / 2)
 
 
 @pytest.mark.parametrize(("chamber", "line"), [(180, 91), (181, 91), (1, 1), (2, 2)])
@@ -115,4 +107,11 @@ def test_monte_carlo_error_grows_with_autocorrelation() -> None:
 
 
 def test_outcome_that_never_happened_is_not_called_certain() -> None:
-    assert monte_carlo_error(np.zeros((4, 1000))) == pytest.approx(1 / 4002)
+    # Brown, Cai & DasGupta (2001): given no occurrence in S draws, Jeffreys' posterior is Beta(1/2, S + 1/2).
+    assert monte_carlo_error(np.zeros((4, 1000))) == pytest.approx(beta(0.5, 4000.5).std())
+
+
+def test_errors_of_many_chances_at_once_are_those_of_each_alone() -> None:
+    happens = np.random.default_rng(3).random((2, 200, 3)) < [0.0, 0.3, 1.0]
+    each = [monte_carlo_error(happens[..., place]) for place in range(3)]
+    np.testing.assert_allclose(monte_carlo_error(happens), each)
