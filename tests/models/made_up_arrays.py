@@ -11,6 +11,8 @@ from aggregator.estimate.knots import build_knots, knot_weights
 from models.arrays import CountryArrays, ElectionArrays, RowArrays
 
 POLLING_DAY = date(2026, 5, 17)
+# High enough that a register of a few polls has some such figures.
+SMALL_SHARE = 0.1
 
 
 @dataclass(frozen=True)
@@ -39,7 +41,7 @@ def made_up_arrays(
     """Simulate an election and the polls of it.
 
     ``free`` parties at the end have no last result; ``absent`` leaves the first party out of the last
-    region; ``small`` marks figures below 2 % as intervals.
+    region; ``small`` marks figures below 10 % as intervals.
     """
     rng = np.random.default_rng(seed)
     share = rng.dirichlet(np.full(parties, 8.0))
@@ -102,8 +104,9 @@ def made_up_arrays(
     # A party that stands in none of the row's regions is in no cell of it.
     partition *= (mix @ standing > 0)[:, None, :]
     used = partition.sum(axis=2).clip(0, 1)
-    row, cell = np.nonzero(((answers / respondents[:, None]) < 0.02) & (used > 0)) if small else ([], [])
-    row, cell = np.asarray(row, dtype=np.int64), np.asarray(cell, dtype=np.int64)
+    row, cell = (
+        np.nonzero(((answers / respondents[:, None]) < SMALL_SHARE) & (used > 0)) if small else ([], [])
+    )
     half = 0.005 * respondents[row]
     arrays = ElectionArrays(
         country=CountryArrays(
