@@ -15,6 +15,7 @@ from aggregator.inputs.contest import CountingRule
 from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.problems import Problem
+from aggregator.release.folder import check_place_is_free
 from aggregator.release.write_release import write_release
 from aggregator.seats.counting import count_seats
 from aggregator.settings import RunSettings
@@ -83,12 +84,14 @@ def refresh(
     InputError
         With every finding, if a file is wrong; nothing is written then.
     UsageError
-        If the call cannot work.
+        If the call cannot work, or ``out`` already holds something: said before the fit.
     MachineError
         If the machine failed; nothing is left behind then.
     """
     progress("reading the desk's files", 0.0)
     inputs = read_contest_folder(folder, as_of=as_of, today=today)
+    if out is not None:
+        check_place_is_free(out)
     fit = fit_contest(inputs, settings=settings or RunSettings(), progress=progress)
     seats = None
     if inputs.contest.counting.rule is not CountingRule.NONE and inputs.last_result is not None:
