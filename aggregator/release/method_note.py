@@ -12,6 +12,7 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined
 
 from aggregator.release.cautions import CAUTIONS
 from aggregator.release.contents import ReleaseContents
+from aggregator.release.prior_words import describe_priors
 from aggregator.release.rounding import date_text, whole_text
 
 TEMPLATES = Path(__file__).parent / "templates"
@@ -36,14 +37,18 @@ def build_method_note(contents: ReleaseContents) -> str:
         "brief": brief_number,
     }
     unused = contents.inputs.unused_polls
+    settings = dict(contents.settings)
+    priors = settings.pop("priors", None)
     reasons = Counter(reason_without_days(reason) for reason in unused["why_not"].astype(str))
     return environment.get_template("method.md.j2").render(
         contents=contents,
         contest=contents.contest,
         model=contents.contest.model,
         cautions=CAUTIONS,
+        anchored=contents.inputs.last_result is not None,
         checks=list(contents.verdict.table.itertuples()),
-        settings=list(flat_settings(contents.settings)),
+        settings=list(flat_settings(settings)),
+        priors=describe_priors(priors) if isinstance(priors, Mapping) else [],
         unused_reasons=reasons,
         unused_count=len(unused),
     )

@@ -1,13 +1,16 @@
 """What the documentation says about a release is what the code does."""
 
+from dataclasses import asdict
 from pathlib import Path
 
 import pytest
 
 from aggregator.release.cautions import CAUTIONS
 from aggregator.release.likelihood_words import LIKELIHOOD_SCALE
+from aggregator.release.prior_words import describe_priors
 from aggregator.release.schema_docs import describe_schema
 from aggregator.release.table_schemas import ALL_SCHEMAS
+from models.priors import Priors
 
 DOCS = Path(__file__).parents[2] / "docs"
 CHARTS = (
@@ -41,3 +44,11 @@ def test_the_cautions_page_gives_every_caution_word_for_word():
 @pytest.mark.parametrize("chart", CHARTS)
 def test_there_is_reading_help_for_every_chart(chart):
     assert f"`{chart}`" in (DOCS / "reading_the_charts.md").read_text(encoding="utf-8")
+
+
+def test_the_method_note_puts_every_prior_of_the_model_into_words_with_its_value():
+    rows = {row.setting: row for row in describe_priors(asdict(Priors()))}
+    assert list(rows) == list(asdict(Priors()))
+    assert rows["region_ratio_most"].value == "2"
+    assert rows["drift_log_median"].value == "0.035"  # the median itself, not its logarithm
+    assert rows["error_floor_log_median"].value == "0.0004"
