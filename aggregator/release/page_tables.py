@@ -64,7 +64,7 @@ def support_table(contents: ReleaseContents) -> PageTable:
     ]
     return PageTable(
         "Support in the country, percent of the vote: mean, and 90 % interval below it. "
-        "An alliance counts its members again.",
+        "An alliance is the sum of its members.",
         _two_statements(contents),
         tuple(body),
     )
@@ -112,7 +112,7 @@ def seats_table(contents: ReleaseContents) -> PageTable | None:
     ]
     return PageTable(
         f"Seats of {contents.chamber}; a majority is {contents.majority}. Mean, and 90 % interval below it. "
-        "An alliance counts its members' seats again.",
+        "An alliance is the sum of its members.",
         _two_statements(contents),
         tuple(body),
     )
@@ -122,8 +122,8 @@ OUTCOME_WORDS = {
     Outcome.MOST_SUPPORT: "has the most votes",
     Outcome.LARGEST: "has the most seats",
     Outcome.MAJORITY_ALONE: "has a majority alone",
-    Outcome.MAJORITY_ONLY_AS_ALLIANCE: "has a majority, and no member alone",
-    Outcome.NO_MAJORITY: "No party and no alliance has a majority",
+    Outcome.MAJORITY_ONLY_AS_ALLIANCE: "has a majority together, no member alone",
+    Outcome.NO_MAJORITY: "Neither a party nor an alliance has a majority",
 }
 
 
@@ -228,12 +228,18 @@ def worth_table(contents: ReleaseContents) -> PageTable:
         for row in rows
     )
     return PageTable(
-        f"A poll of 1,000 by its age, for {contents.names[code]}: respondents it is worth; 90 % intervals "
-        "below; then the error, in points, to expect of its own figure against the result, "
-        "with its parts (they add up in squares).",
+        f"A poll of 1,000 by a typical house, by its age on {date_text(contents.run_date)}, for "
+        f"{contents.names[code]}: the respondents it is worth on that day and for polling day, 90 % "
+        "intervals below. Then the error, in points, to expect of the poll's own figure against the result, "
+        f"and its parts, which add up in squares; drift covers the poll's age and {_days_left(contents)}.",
         ("Age", "Worth now", "Worth for polling day", "Error", "Sampling", "House", "Shared lean", "Drift"),
         body,
     )
+
+
+def _days_left(contents: ReleaseContents) -> str:
+    days = max((contents.contest.polling_day - contents.run_date).days, 0)
+    return f"the {days} day{'' if days == 1 else 's'} left to polling day"
 
 
 def _worth_over_interval(row: dict[Hashable, Any], name: str) -> str:

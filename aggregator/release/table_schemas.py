@@ -232,7 +232,8 @@ SHELF_LIFE = TableSchema(
         number_column(
             "expected_error",
             "percentage points",
-            "Root mean square error to expect of that poll's own figure against the result on polling day",
+            "Root mean square error to expect of that poll's own figure against the result on polling day: "
+            "the poll has this age on the day of the run, and polling day is yet to come",
         ),
         number_column(
             "error_sampling",
@@ -241,7 +242,12 @@ SHELF_LIFE = TableSchema(
         ),
         number_column("error_house", "percentage points", "The part from the house's lean"),
         number_column("error_shared_lean", "percentage points", "The part from a lean shared by all houses"),
-        number_column("error_drift", "percentage points", "The part from opinion moving until polling day"),
+        number_column(
+            "error_drift",
+            "percentage points",
+            "The part from opinion moving between fieldwork and polling day: over the poll's age and the "
+            "days left after the run",
+        ),
     ),
 )
 
