@@ -1,7 +1,7 @@
 """The sentences a release opens with: templates filled with numbers from its tables.
 
-Three phrases are kept apart. "On these polls" is about what the polls show and how much they are worth; "if
-people voted on DATE" is about support on that day; "on polling day" is about when people do vote.
+Two statements are kept apart: "if people voted on DATE" is about support on that day, "on polling day" about
+when people do vote. What a poll is worth is said of the day of the run.
 """
 
 from __future__ import annotations
@@ -111,6 +111,7 @@ def _seats_sentence(
             f"On polling day {names[largest['code']]} is {_worded(largest)} to win the most seats: "
             f"{whole_text(row['mean'])} of {whole_text(chamber)} (90 % interval {_seats(row)})"
         )
+        leader = largest["code"]
     else:
         first, second = rows.iloc[0], rows.iloc[1]
         opening = (
@@ -119,19 +120,33 @@ def _seats_sentence(
             f"(90 % interval {_seats(first)}), "
             f"{names[second['code']]} {whole_text(second['mean'])} ({_seats(second)})"
         )
-    return f"{opening}; {_majority_clause(tables.chances, contest, majority)}."
+        leader = None
+    return f"{opening}. {_majority_sentence(tables.chances, contest, majority, leader=leader)}"
 
 
-def _majority_clause(chances: pd.DataFrame, contest: Contest, majority: int) -> str:
+def _majority_sentence(chances: pd.DataFrame, contest: Contest, majority: int, *, leader: str | None) -> str:
+    """Say how likely a majority is for the party nearest to it, and for an alliance with no member alone.
+
+    An alliance that the party belongs to is told as what the party falls back on: "a majority for the
+    alliance" would be read as one beside the party's own.
+    """
     alone = likeliest(chances, Outcome.MAJORITY_ALONE, kind=Kind.ON_POLLING_DAY)
-    party = contest.party_names[alone["code"]]
-    clause = f"a majority of {whole_text(majority)} for {party} alone is {_worded(alone)}"
-    alliances = {a.code: a.name for a in contest.alliances if a.active_on(contest.polling_day)}
+    party = "it" if alone["code"] == leader else contest.party_names[alone["code"]]
+    opening = f"Alone, {party} is {_worded(alone)} to reach a majority of {whole_text(majority)}"
+    alliances = {a.code: a for a in contest.alliances if a.active_on(contest.polling_day)}
     if not alliances:
-        return clause
+        return f"{opening}."
     together = likeliest(chances, Outcome.MAJORITY_ONLY_AS_ALLIANCE, kind=Kind.ON_POLLING_DAY)
-    name = alliances[together["code"]]
-    return f"{clause}; that it takes {name} as a whole to reach one is {_worded(together)}"
+    alliance = alliances[together["code"]]
+    if alone["code"] in alliance.members:
+        return (
+            f"{opening}; it is {_worded(together)} to fall short but get there "
+            f"with its partners in {alliance.name}."
+        )
+    return (
+        f"{opening}; {alliance.name} is {_worded(together)} to reach one "
+        "with its members together, none of them alone."
+    )
 
 
 def _worth_sentence(tables: ReleaseTables, contest: Contest) -> str:
@@ -141,8 +156,9 @@ def _worth_sentence(tables: ReleaseTables, contest: Contest) -> str:
     age = int(row["age_days"])
     ago = "a month ago" if 28 <= age <= 31 else f"{age} days ago"
     return (
-        f"On these polls, a poll of {whole_text(POLL_SIZE)} taken {ago} now tells as much about "
-        f"{contest.party_names[code]} as {whole_text(row['worth_today'])} people asked today."
+        f"A poll of {whole_text(POLL_SIZE)} taken {ago} tells as much about support for "
+        f"{contest.party_names[code]} now as {whole_text(row['worth_today'])} people asked today "
+        f"(90 % interval {whole_text(row['worth_today_q05'])} to {whole_text(row['worth_today_q95'])})."
     )
 
 

@@ -78,11 +78,26 @@ def test_the_numbers_of_the_seats_sentence_are_those_of_the_tables(tables, input
     assert told == (
         "On polling day Ferry Party is very likely (91 %) to win the most seats: "
         f"{whole_text(row['mean'])} of 24 "
-        f"(90 % interval {whole_text(row['q05'])} to {whole_text(row['q95'])}); "
-        "a majority of 13 for Ferry Party alone is "
-        f"{alone['likelihood']} ({chance_text(alone['probability'])}); "
-        "that it takes Glow Pact as a whole to reach one is "
-        f"{together['likelihood']} ({chance_text(together['probability'])})."
+        f"(90 % interval {whole_text(row['q05'])} to {whole_text(row['q95'])}). "
+        f"Alone, it is {alone['likelihood']} ({chance_text(alone['probability'])}) "
+        "to reach a majority of 13; "
+        f"Glow Pact is {together['likelihood']} ({chance_text(together['probability'])}) "
+        "to reach one with its members together, none of them alone."
+    )
+
+
+def test_an_alliance_the_party_belongs_to_is_told_as_what_it_falls_back_on(tables, inputs):
+    pact = inputs.contest.alliances[0].model_copy(update={"members": ("FER", "HED")})
+    contest = inputs.contest.model_copy(update={"alliances": (pact,)})
+    chances = tables.chances.copy()
+    alone = (chances["outcome"] == Outcome.MAJORITY_ALONE) & (chances["code"] == "FER")
+    chances.loc[alone, ["probability", "likelihood"]] = [0.56, "about as likely as not"]
+    only = chances["outcome"] == Outcome.MAJORITY_ONLY_AS_ALLIANCE
+    chances.loc[only, ["probability", "likelihood"]] = [0.04, "very unlikely"]
+    told = headlines(replace(tables, chances=chances), contest).seats
+    assert told.endswith(
+        "is about as likely as not (56 %) to reach a majority of 13; "
+        "it is very unlikely (4 %) to fall short but get there with its partners in Glow Pact."
     )
 
 
@@ -91,8 +106,9 @@ def test_the_number_of_the_worth_sentence_is_that_of_the_table(tables, inputs):
     first = national_parties(tables.support, kind=Kind.ON_DATE)["code"].iloc[0]
     assert first == "FER"
     assert headlines(tables, inputs.contest).worth == (
-        "On these polls, a poll of 1,000 taken a month ago now tells as much about Ferry Party as "
-        f"{row['worth_today']:.0f} people asked today."
+        "A poll of 1,000 taken a month ago tells as much about support for Ferry Party now as "
+        f"{row['worth_today']:.0f} people asked today "
+        f"(90 % interval {row['worth_today_q05']:.0f} to {row['worth_today_q95']:.0f})."
     )
 
 
@@ -108,8 +124,8 @@ def test_no_leader_is_named_below_66_percent(tables, inputs, probability, named)
             assert sentence.count(" to ") >= 2
 
 
-def test_the_three_phrases_are_never_mixed(tables, inputs):
-    phrases = ("on these polls", "if people voted on", "on polling day")
+def test_the_statements_are_never_mixed(tables, inputs):
+    phrases = ("people asked today", "if people voted on", "on polling day")
     cases = [headlines(tables, inputs.contest)]
     without = replace(tables, seats=None, seat_chances=None)
     cases.append(build_headlines(without, contest=contest_without_seats(), chamber=None, majority=None))
@@ -133,8 +149,8 @@ def test_without_an_alliance_the_seats_sentence_speaks_of_none(tables, inputs):
     chances = tables.chances[tables.chances["outcome"] != Outcome.MAJORITY_ONLY_AS_ALLIANCE]
     contest = inputs.contest.model_copy(update={"alliances": ()})
     told = headlines(replace(tables, chances=chances), contest).seats
-    assert "as a whole" not in told
-    assert "a majority of 13 for" in told
+    assert "together" not in told
+    assert told.endswith("to reach a majority of 13.")
 
 
 def test_a_shelf_life_without_the_thirtieth_day_names_the_nearest_age(tables, inputs):
