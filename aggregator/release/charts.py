@@ -81,6 +81,7 @@ def _support_chart(contents: ReleaseContents, looks: dict[str, CodeLook]) -> Rel
         chosen,
         name="support_over_time",
         title="Support over time, and on polling day",
+        points="Points: published polls,",
     )
 
 
@@ -95,12 +96,13 @@ def _alliances_chart(contents: ReleaseContents, looks: list[CodeLook]) -> Releas
         contents,
         looks,
         name="alliances_over_time",
-        title="Support for the alliances, members summed, over time and on polling day",
+        title="Support for the alliances over time, and on polling day",
+        points="An alliance is the sum of its members. Points: polls that asked for it as one,",
     )
 
 
 def _support_over_time(
-    contents: ReleaseContents, looks: list[CodeLook], *, name: str, title: str
+    contents: ReleaseContents, looks: list[CodeLook], *, name: str, title: str, points: str
 ) -> ReleaseChart:
     support = contents.tables.support
     rows = support[support["region"] == ""]
@@ -117,11 +119,15 @@ def _support_over_time(
     return ReleaseChart(
         name=name,
         title=title,
-        reading=f"{CHART_READING} Points: published polls, at the middle of their fieldwork, the undecided "
-        "set aside.",
+        reading=f"{CHART_READING} {points} at the middle of their fieldwork, the undecided set aside."
+        f"{_silence_reading(contents)}",
         alt_text=_shares_alt_text(title, rows, looks, contents),
         draw=lambda layout: build_over_time_chart(content, layout=layout),
     )
+
+
+def _silence_reading(contents: ReleaseContents) -> str:
+    return " Grey stripe: no publication by law." if contents.contest.release.silence else ""
 
 
 def _shares_alt_text(title: str, rows: pd.DataFrame, looks: list[CodeLook], contents: ReleaseContents) -> str:
@@ -200,7 +206,7 @@ def _seats_chart(contents: ReleaseContents, looks: dict[str, CodeLook], seats: p
         name="seats_on_polling_day",
         title=title,
         reading="Shape: mean; thick line: 50 % interval; thin line: 90 % interval. "
-        "Numbers: mean and 90 % interval. An alliance counts its members' seats again.",
+        "Numbers: mean and 90 % interval. An alliance is the sum of its members.",
         alt_text=_seats_alt_text(f"{title}. Majority {majority} of {chamber}", seats, chosen, contents),
         draw=lambda layout: build_seats_chart(
             seats, looks=chosen, chamber=chamber, majority=majority, layout=layout
@@ -221,13 +227,13 @@ def _seats_over_time_chart(
         run_date=contents.run_date,
         polling_day=contents.contest.polling_day,
         line_at=contents.majority,
-        line_label=f"majority {contents.majority}",
+        line_label=f"majority: {contents.majority}",
         silence=contents.contest.release.silence,
     )
     return ReleaseChart(
         name="seats_over_time",
         title=title,
-        reading=CHART_READING,
+        reading=f"{CHART_READING}{_silence_reading(contents)}",
         alt_text=_seats_alt_text(
             f"{title}. Majority {contents.majority} of {contents.chamber}", seats, chosen, contents
         ),

@@ -136,11 +136,12 @@ def build_seats_chart(
         label=[_mean_and_interval(row) for row in rows.to_dict("records")],
     ).sort_values(["alliance", "mean"], ascending=[True, False], kind="stable")
     number_room = 100 if layout.long_names else 84
-    name_room = 180 if layout.long_names else 96
+    name_room = 180 if layout.long_names else 112
     width = layout.width - number_room - name_room - 20
     top = max(float(rows["q95"].max()), majority * 1.05)
     scale = alt.Scale(domain=[0, min(top * 1.02, chamber)], nice=False)
-    axis = alt.Axis(title="seats", grid=True, ticks=False, tickCount=6, domain=False)
+    axis = alt.Axis(title="seats", grid=True, ticks=False, tickCount=6, domain=False, labelFlush=False)
+    below_parties = alt.YValue((ROW + 10) * int((~rows["alliance"]).sum()))
     base = alt.Chart(rows[["name", "code", "mean", "q05", "q25", "q75", "q95", "label"]]).encode(
         y=alt.Y(
             "name:N",
@@ -153,9 +154,12 @@ def build_seats_chart(
         color=colour_of(looks),
     )
     line = alt.Chart(
-        pd.DataFrame({"majority": [float(majority)], "label": [f"majority {majority} of {chamber}"]})
+        pd.DataFrame({"majority": [float(majority)], "label": [f"majority: {majority} of {chamber}"]})
     )
     return alt.layer(
+        alt.Chart(rows[rows["alliance"]][["code"]].head(1))
+        .mark_rule(color=MUTED, strokeWidth=0.8, strokeDash=[2, 3])
+        .encode(y=below_parties, x=alt.XValue(0), x2=alt.X2Value(width)),
         line.mark_rule(color=INK, strokeWidth=1.2).encode(x=alt.X("majority:Q", scale=scale, axis=axis)),
         line.mark_text(
             baseline="bottom", align="right", dx=4, dy=-4, color=INK, fontSize=layout.font_size

@@ -47,7 +47,7 @@ def build_worth_chart(shelf_life: pd.DataFrame, *, layout: Layout) -> alt.LayerC
         "age_days:Q",
         title="age of the poll, days",
         scale=alt.Scale(nice=False),
-        axis=alt.Axis(grid=False, tickCount=width // 60),
+        axis=alt.Axis(grid=False, tickCount=width // 60, labelFlush=False),
     )
     axis = alt.Axis(
         title="respondents it is worth",
