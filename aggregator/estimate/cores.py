@@ -5,9 +5,11 @@ from __future__ import annotations
 import multiprocessing
 import os
 import signal
+import threading
 import warnings
 from collections.abc import Callable, Sequence
 from multiprocessing.connection import Connection
+from multiprocessing.process import BaseProcess
 
 from aggregator.errors import MachineError
 
@@ -56,8 +58,24 @@ def map_forked[Part, Result](work: Callable[[Part], Result], parts: Sequence[Par
             process.join()
 
 
-def _send[Part, Result](work: Callable[[Part], Result], part: Part, sender: Connection) -> None:
-    # An interrupt is left to the parent, which ends its processes.
+def follow_parent() -> None:
+    """Leave interrupts to the parent, and end this process when the parent ends, even if that was killed.
+
+    A pipe does not tell: forked processes hold copies of both its ends, and one that writes into a pipe
+    nobody reads waits for ever once it is full.
+    """
     signal.signal(signal.SIGINT, signal.SIG_IGN)
+    parent = multiprocessing.parent_process()
+    if parent is not None:
+        threading.Thread(target=_end_after, args=(parent,), daemon=True).start()
+
+
+def _end_after(parent: BaseProcess) -> None:
+    parent.join()
+    os._exit(1)
+
+
+def _send[Part, Result](work: Callable[[Part], Result], part: Part, sender: Connection) -> None:
+    follow_parent()
     sender.send(work(part))
     sender.close()

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import multiprocessing
-import signal
 import warnings
 from collections.abc import Callable
 from dataclasses import dataclass
@@ -14,7 +13,7 @@ import numpy as np
 import xarray as xr
 
 from aggregator.errors import MachineError
-from aggregator.estimate.cores import can_fork, usable_cores
+from aggregator.estimate.cores import can_fork, follow_parent, usable_cores
 from aggregator.estimate.log_density import LogDensity
 from models.arrays import Floats
 from models.dimensions import CHAIN, DRAW
@@ -102,7 +101,7 @@ def sample_chains(
 
 def _run(density: LogDensity, start: Floats, plan: ChainPlan, seeds: list[int], sender: Connection) -> None:
     """Work of one process: its chains one after the other."""
-    signal.signal(signal.SIGINT, signal.SIG_IGN)
+    follow_parent()
     for seed in seeds:
 
         def report(part: float, seed: int = seed) -> None:
