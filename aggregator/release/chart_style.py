@@ -5,11 +5,12 @@ from __future__ import annotations
 import re
 import textwrap
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from itertools import cycle
 from typing import Any
 
 import altair as alt
+import pandas as pd
 
 from aggregator.release.codes import Code
 from aggregator.release.table_words import Level
@@ -154,10 +155,8 @@ def frame_chart(
         A Vega-Lite specification.
     """
     size = layout.font_size
-    # A long register has more points than the library's default limit, which guards notebooks.
-    with alt.data_transformers.enable("default", max_rows=None, consolidate_datasets=True):
-        inner = chart.to_dict(validate=False)
-    outer: dict[str, Any] = {key: inner.pop(key) for key in ("$schema", "datasets") if key in inner}
+    inner, datasets = _bare_specification(chart)
+    outer: dict[str, Any] = {"$schema": inner.pop("$schema"), "datasets": datasets}
     inner.pop("config", None)
     notes = [*_wrap(frame.source, layout, size - 1), *_wrap(frame.caution, layout, size - 1)]
     alarms = [line for alarm in frame.alarms for line in _wrap(alarm, layout, size + 1)]
@@ -198,6 +197,42 @@ def frame_chart(
         "vconcat": [framed],
         "config": _config(layout),
     }
+
+
+@dataclass
+class _NamedTables:
+    """Tables of one chart, each named and converted once however many layers draw from it."""
+
+    names: dict[int, str] = field(default_factory=dict)
+    frames: list[pd.DataFrame] = field(default_factory=list)
+
+    def name_of(self, frame: pd.DataFrame) -> str:
+        if id(frame) not in self.names:
+            self.frames.append(frame)  # Kept, so that its id is not given to another.
+            self.names[id(frame)] = f"table_{len(self.frames)}"
+        return self.names[id(frame)]
+
+    def as_rows(self) -> dict[str, Any]:
+        return {f"table_{place}": alt.to_values(f)["values"] for place, f in enumerate(self.frames, start=1)}
+
+
+def _refer_to(data: Any, *, tables: _NamedTables) -> dict[str, str]:
+    return {"name": tables.name_of(data)}
+
+
+alt.data_transformers.register("named_tables", _refer_to)
+
+
+def _bare_specification(chart: alt.TopLevelMixin) -> tuple[dict[str, Any], dict[str, Any]]:
+    """Specification of a chart that names its tables, and their rows.
+
+    Rows inside the layers, as the library puts them there by default, would be copied and hashed once per
+    layer: most of the time of a chart.
+    """
+    tables = _NamedTables()
+    with alt.data_transformers.enable("named_tables", tables=tables):
+        specification = chart.to_dict(validate=False)
+    return specification, tables.as_rows()
 
 
 def _config(layout: Layout) -> dict[str, Any]:

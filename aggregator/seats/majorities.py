@@ -21,6 +21,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from enum import StrEnum
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -71,11 +72,10 @@ def leads_in_draws(held: xr.DataArray, *, outcome: Outcome) -> list[OutcomeInDra
     list of (outcome, code, happens)
         One per party, in the order of ``held``; ``happens`` has dims (chain, draw).
     """
-    held = _parties_of(held)
-    values = held.to_numpy()
+    parties, values = _parties_of(held)
     most = values == values.max(axis=-1, keepdims=True)
     parts = most / most.sum(axis=-1, keepdims=True)
-    return [(outcome, str(code), parts[..., place]) for place, code in enumerate(held[PARTY].values)]
+    return [(outcome, code, parts[..., place]) for place, code in enumerate(parties)]
 
 
 def majorities_in_draws(
@@ -98,9 +98,8 @@ def majorities_in_draws(
         ``happens`` has dims (chain, draw): 1 where it happens, 0 where not. The code of ``no_majority`` is
         empty.
     """
-    seats = _parties_of(seats)
-    won = seats.to_numpy()
-    place = {str(code): index for index, code in enumerate(seats[PARTY].values)}
+    parties, won = _parties_of(seats)
+    place = {code: index for index, code in enumerate(parties)}
     alone = won >= majority
     somebody = alone.any(axis=-1)
     found = [(Outcome.MAJORITY_ALONE, code, alone[..., index]) for code, index in place.items()]
@@ -114,9 +113,12 @@ def majorities_in_draws(
     return [(outcome, code, happens.astype(np.float64)) for outcome, code, happens in found]
 
 
-def _parties_of(held: xr.DataArray) -> xr.DataArray:
-    """Leave others out, and put the dims in order: (chain, draw, party)."""
-    return held.sel({PARTY: held[PARTY] != OTHERS}).transpose(CHAIN, DRAW, PARTY)
+def _parties_of(held: xr.DataArray) -> tuple[list[str], npt.NDArray[Any]]:
+    """Codes of the parties, others left out, and what they hold: shape (chain, draw, party)."""
+    codes = [str(code) for code in held[PARTY].values]
+    parties = [code for code in codes if code != OTHERS]
+    # Cut from the array itself: a labelled selection for every date would take most of the time.
+    return parties, held.transpose(CHAIN, DRAW, PARTY).to_numpy()[..., [codes.index(p) for p in parties]]
 
 
 def monte_carlo_error(happens: npt.ArrayLike) -> FloatArray:
