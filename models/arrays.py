@@ -35,7 +35,7 @@ class CountryArrays:
         Log of the last result's share, or of the prior median for a party without a record, dims (region,
         party); of no meaning where the party does not stand.
     reference_share
-        The party's typical share where it stands, dims (party), share 0–1: sets the size of its scales.
+        The party's typical national share, dims (party), share 0–1: sets the size of its scales.
     pilot_share
         Rough national support over the register, dims (party), sums to one: sets the sampling
         coordinates only, never the model.

@@ -114,10 +114,9 @@ def _country(
     national = last.turnout @ last.by_region
     where = np.maximum(last.turnout @ standing, 1e-9)
     pilot = _pilot_share(national, published)
-    record = np.maximum(national / where, LEAST_SHARE)
-    polled = np.maximum(pilot / where, LEAST_SHARE)
     free = np.flatnonzero(national == 0)
-    reference = np.where(national > 0, (record + polled) / 2, polled)
+    # National even for a regional party: its scales are then wide where it stands, since few polls ask there.
+    reference = np.maximum(np.where(national > 0, (national + pilot) / 2, pilot), LEAST_SHARE)
     # Where a party stands but had no votes last time, its share elsewhere is the best guess of its start.
     filled = np.where(last.by_region > 0, last.by_region, np.maximum(national / where, 1e-9))
     unknown = FREE_SHARE if anchored else 1 / len(contest.party_codes)
