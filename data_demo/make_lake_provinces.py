@@ -32,7 +32,7 @@ publisher = "The Lakeshore Courier, data desk"
 [[release.silence]]
 from = 2026-05-10
 until = 2026-05-17
-time_zone = "Europe/Zurich"
+time_zone = "UTC"
 law = "Lake Provinces Election Act, section 41"
 
 # The model's settings may be overridden here; left out, the defaults hold.

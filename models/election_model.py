@@ -18,7 +18,12 @@ from models.arrays import ElectionArrays, Floats, Indices
 from models.block_geometry import Geometry
 from models.conditional_laplace import add_modes, answer_information
 from models.design_effect import add_design_effect_parameters, row_design_effect
-from models.free_baseline import add_free_baseline, add_free_region_baseline
+from models.free_baseline import (
+    add_free_baseline,
+    add_free_region_baseline,
+    free_directions,
+    is_free,
+)
 from models.party_scales import add_party_scale
 from models.poll_answers import (
     add_answers,
@@ -118,7 +123,8 @@ def _add_data(arrays: ElectionArrays, geometry: Geometry, priors: Priors) -> dic
         "start_log_share": country.start_log_share,
         "standing": country.standing.astype(float),
         "turnout": country.turnout,
-        "free": np.eye(len(country.parties))[country.free_party],
+        "free": free_directions(country),
+        "is_free": is_free(country),
         "national_weight": rows.national_weight,
         "house_number": np.arange(len(rows.houses)),
         "house_of_row": rows.house_of_row,
@@ -198,7 +204,7 @@ def _start(
         return None, None
     start = add_free_baseline(free=data["free"], log_sd=priors.free_log_sd)
     if lean is not None:
-        start = start - lean["at_reference"] * data["free"].sum(axis=0)
+        start = start - lean["at_reference"] * data["is_free"]
     if len(arrays.country.regions) == 1:
         return start, None
     return start, add_free_region_baseline(free=data["free"], log_sd=priors.free_region_log_sd)

@@ -9,10 +9,31 @@ from __future__ import annotations
 
 from typing import Any
 
+import numpy as np
 import pymc as pm
 import pytensor.tensor as pt
 
+from models.arrays import CountryArrays, Floats
+
 Array = Any
+
+
+def free_directions(country: CountryArrays) -> Floats:
+    """Directions in which the starts of the free parties are drawn; orthonormal, dims (direction, party).
+
+    Each free party has its own, unless no party has a record: then only differences between starts show, and
+    the first direction is the level all parties share, which would otherwise tie their starts together.
+    """
+    size = len(country.parties)
+    if len(country.free_party) < size:
+        return np.eye(size)[country.free_party]
+    level_first = np.column_stack([np.ones(size), np.eye(size)[:, :-1]])
+    return np.ascontiguousarray(np.linalg.qr(level_first)[0].T)
+
+
+def is_free(country: CountryArrays) -> Floats:
+    """One for parties without a last result, dims (party)."""
+    return np.isin(np.arange(len(country.parties)), country.free_party).astype(float)
 
 
 def add_free_baseline(*, free: Array, log_sd: float) -> Array:
@@ -21,7 +42,7 @@ def add_free_baseline(*, free: Array, log_sd: float) -> Array:
     Parameters
     ----------
     free
-        One where column f is party p, dims (free party, party).
+        Directions of the free starts, dims (free party, party).
 
     Returns
     -------

@@ -11,6 +11,7 @@ from aggregator.estimate.log_density import Layout
 from models.arrays import ElectionArrays, Floats
 from models.block_geometry import BlockGeometry, Geometry
 from models.conditional_laplace import answer_information, modes_from_coordinates
+from models.free_baseline import free_directions, is_free
 from models.party_scales import size_factor
 from models.priors import Priors
 from models.region_support import region_ratio
@@ -97,11 +98,11 @@ def read_parameters(
     drift = scale("drift", part("drift_log"))
     house_scale = scale("house_scale", part("house_scale_log"))
     lean, lean_size, reference = _lean(part, layout, house_scale, arrays, priors)
-    free = np.eye(parties)[country.free_party]
+    free = free_directions(country)
     start = np.zeros((samples, parties))
     if len(free):
         start = (priors.free_log_sd * part("free_baseline_own")) @ free
-        start = start - reference * free.sum(axis=0)
+        start = start - reference * is_free(country)
     national = modes("national", geometry.national, drift, lean + start[:, None, :])
     walk = np.zeros((samples, len(knots.national_day), parties))
     walk[:, 1:] = geometry.national.basis @ national

@@ -14,6 +14,7 @@ from aggregator.estimate.log_density import LogDensity
 from models.arrays import ElectionArrays, Floats
 from models.block_geometry import Geometry
 from models.conditional_laplace import answer_information, modes_from_coordinates, pull_towards
+from models.free_baseline import free_directions, is_free
 from models.party_scales import size_factor
 from models.priors import Priors
 from models.shared_lean import lean_loadings, lean_scale
@@ -115,7 +116,7 @@ def _beside(
     beside = np.zeros((len(knots.lean_clock), len(country.parties)))
     reference = np.zeros(len(country.parties))
     lean = "shared_lean_ends" in layout.names
-    free = np.eye(len(country.parties))[country.free_party]
+    free = free_directions(country)
     if lean:
         scale = lean_scale(
             shared_lean=priors.shared_lean,
@@ -128,7 +129,7 @@ def _beside(
         reference = lean_loadings(np.array(knots.lean_reference), correlation=priors.lean_correlation) @ ends
     if len(free):
         own = layout.part(point, "free_baseline_own")
-        beside += (priors.free_log_sd * own) @ free - reference * free.sum(axis=0)
+        beside += (priors.free_log_sd * own) @ free - reference * is_free(country)
     region_start = None
     if "free_region_baseline_own" in layout.names:
         region_start = (priors.free_region_log_sd * layout.part(point, "free_region_baseline_own")) @ free

@@ -15,6 +15,7 @@ from aggregator.estimate.poll_fit import row_log_likelihood
 from models.arrays import ElectionArrays
 from models.block_geometry import Geometry, build_geometry
 from models.election_model import build_election_model
+from models.free_baseline import free_directions
 from models.priors import Priors
 from tests.benchmarks.textbook_model import NATURAL, build_textbook_model
 from tests.models.made_up_arrays import made_up_arrays
@@ -85,6 +86,13 @@ def modes_at(natural: Point, *, arrays: ElectionArrays, geometry: Geometry, free
     return modes
 
 
+def free_starts_at(point: Point, *, arrays: ElectionArrays) -> Point:
+    """The textbook's starts of free parties in the election model's directions."""
+    turn = free_directions(arrays.country)[:, arrays.country.free_party].T
+    names = ("free_baseline_own", "free_region_baseline_own")
+    return {name: point[name] @ turn for name in names if name in point}
+
+
 @pytest.mark.parametrize("case", CASES)
 def test_textbook_model_has_the_same_posterior(case: str) -> None:
     arrays = small_election(**CASES[case])
@@ -100,7 +108,8 @@ def test_textbook_model_has_the_same_posterior(case: str) -> None:
         point = random_point(textbook, rng)
         density, *values = textbook_at(point)
         natural = dict(zip(NATURAL, values, strict=True))
-        at = point | modes_at(natural, arrays=arrays, geometry=geometry, free_start=natural["region"][0])
+        at = point | free_starts_at(point, arrays=arrays)
+        at |= modes_at(natural, arrays=arrays, geometry=geometry, free_start=natural["region"][0])
         # Ours is a density of modes in units of log support, the textbook's of standard normals.
         scales = {
             "national_modes": natural["drift"],

@@ -10,16 +10,13 @@ import numpy as np
 import pytest
 
 from aggregator.estimate.fit import Fit, fit_contest
-from aggregator.estimate.sampling import CAREFUL_ACCEPT
 from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.settings import RunSettings
 from models.priors import Priors
 
 TODAY = date(2031, 5, 2)
 SAMPLE = 1000
-# The steps of a second attempt: at the usual ones the smallest contest may have a few divergent steps in some
-# thousand, and a refresh then runs it again by itself.
-SETTINGS = RunSettings(draws=300, chains=2, target_accept=CAREFUL_ACCEPT)
+SETTINGS = RunSettings(draws=300, chains=2)
 # A posterior mean further from the mean of the polls than this many points has left them.
 NEAR = 5.0
 
