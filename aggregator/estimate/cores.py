@@ -7,7 +7,9 @@ import os
 import signal
 import threading
 import warnings
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
+from functools import partial
 from multiprocessing.connection import Connection
 from multiprocessing.process import BaseProcess
 
@@ -36,29 +38,52 @@ def map_forked[Part, Result](work: Callable[[Part], Result], parts: Sequence[Par
     """
     if len(parts) == 1 or not can_fork():
         return [work(part) for part in parts]
+    with forked([partial(_send, work, part) for part in parts]) as receivers:
+        try:
+            return [receiver.recv() for receiver in receivers]
+        except EOFError as error:
+            raise MachineError("A process ended early. Free some memory, or run again.") from error
+
+
+@contextmanager
+def forked(jobs: Sequence[Callable[[Connection], None]]) -> Iterator[list[Connection]]:
+    """Run each job in a forked process that sends through a pipe, and end them all at the end of the block.
+
+    Parameters
+    ----------
+    jobs
+        Each is called in its process with the end of a pipe to send into.
+
+    Yields
+    ------
+    The other ends, in the order of the jobs.
+    """
     context = multiprocessing.get_context("fork")
     processes, receivers = [], []
-    for part in parts:
-        receiver, sender = context.Pipe(duplex=False)
-        process = context.Process(target=_send, args=(work, part, sender), daemon=True)
-        with warnings.catch_warnings():
-            # Python warns of fork beside threads; the child touches none of the parent's threads.
-            warnings.simplefilter("ignore", DeprecationWarning)
-            process.start()
-        sender.close()
-        processes.append(process)
-        receivers.append(receiver)
     try:
-        return [receiver.recv() for receiver in receivers]
-    except EOFError as error:
-        raise MachineError("A process ended early. Free some memory, or run again.") from error
+        for job in jobs:
+            receiver, sender = context.Pipe(duplex=False)
+            process = context.Process(target=_follow, args=(job, sender), daemon=True)
+            with warnings.catch_warnings():
+                # Python warns of fork beside threads; the child touches none of the parent's threads.
+                warnings.simplefilter("ignore", DeprecationWarning)
+                process.start()
+            sender.close()
+            processes.append(process)
+            receivers.append(receiver)
+        yield receivers
     finally:
         for process in processes:
             process.terminate()
             process.join()
 
 
-def follow_parent() -> None:
+def _follow(job: Callable[[Connection], None], sender: Connection) -> None:
+    _follow_parent()
+    job(sender)
+
+
+def _follow_parent() -> None:
     """Leave interrupts to the parent, and end this process when the parent ends, even if that was killed.
 
     A pipe does not tell: forked processes hold copies of both its ends, and one that writes into a pipe
@@ -76,6 +101,5 @@ def _end_after(parent: BaseProcess) -> None:
 
 
 def _send[Part, Result](work: Callable[[Part], Result], part: Part, sender: Connection) -> None:
-    follow_parent()
     sender.send(work(part))
     sender.close()

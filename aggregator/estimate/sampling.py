@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
-import multiprocessing
-import warnings
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 from multiprocessing.connection import Connection, wait
 from typing import Any
 
@@ -13,7 +12,7 @@ import numpy as np
 import xarray as xr
 
 from aggregator.errors import MachineError
-from aggregator.estimate.cores import can_fork, follow_parent, usable_cores
+from aggregator.estimate.cores import can_fork, forked, usable_cores
 from aggregator.estimate.log_density import LogDensity
 from models.arrays import Floats
 from models.dimensions import CHAIN, DRAW
@@ -77,31 +76,12 @@ def sample_chains(
         return _in_order(
             [_chain(density, start=start, plan=plan, seed=s, report=lambda _: None) for s in seeds], seeds
         )
-    context = multiprocessing.get_context("fork")
-    processes, pipes = [], []
-    for share in work:
-        receiver, sender = context.Pipe(duplex=False)
-        process = context.Process(target=_run, args=(density, start, plan, share, sender), daemon=True)
-        with warnings.catch_warnings():
-            # Python warns of fork beside threads; the child touches none of the parent's threads.
-            warnings.simplefilter("ignore", DeprecationWarning)
-            process.start()
-        sender.close()
-        processes.append(process)
-        pipes.append(receiver)
-    try:
-        chains = _collect(pipes, total=plan.chains, progress=progress)
-    finally:
-        for process in processes:
-            if process.is_alive():
-                process.terminate()
-            process.join()
-    return _in_order(chains, seeds)
+    with forked([partial(_run, density, start, plan, share) for share in work]) as receivers:
+        return _in_order(_collect(receivers, total=plan.chains, progress=progress), seeds)
 
 
 def _run(density: LogDensity, start: Floats, plan: ChainPlan, seeds: list[int], sender: Connection) -> None:
     """Work of one process: its chains one after the other."""
-    follow_parent()
     for seed in seeds:
 
         def report(part: float, seed: int = seed) -> None:
