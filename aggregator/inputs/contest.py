@@ -75,12 +75,16 @@ class Alliance(_Frozen):
 
 
 class Region(_Frozen):
-    """A part of the country with its own support; ``electorate`` weighs it where no last result does."""
+    """A part of the country with its own support; ``electorate`` weighs it where no last result does.
+
+    ``counted`` is the day on which the count of a region that votes early was published.
+    """
 
     code: str = Field(description="a short code like NORTH, used in the region column of every file")
     name: str = Field(min_length=1, description="the region's name")
     polling_day: Day | None = Field(default=None, description="the region's own polling day, like 2031-05-11")
     electorate: float | None = Field(default=None, gt=0, description="the number of voters, above 0")
+    counted: Day | None = Field(default=None, description="the day its count was published, like 2031-05-14")
 
 
 class LastResult(_Frozen):
@@ -92,6 +96,16 @@ class LastResult(_Frozen):
         pattern=r"^[^/\\]+\.(csv|CSV|xlsx|XLSX)$",
         description="the name of a .csv or .xlsx file in the contest folder",
     )
+
+
+class Jolt(_Frozen):
+    """A day on which opinion may have jumped: a leader goes, an alliance breaks."""
+
+    date: Day = Field(description="the day, like 2031-02-03")
+    weeks: float = Field(
+        default=4.0, gt=0, le=52, description="usual weeks' worth of movement on that day, up to 52"
+    )
+    name: str = Field(default="", description="what happened, as text")
 
 
 class Counting(_Frozen):
@@ -127,6 +141,10 @@ class ModelOverrides(_Frozen):
     shared_lean: bool = Field(default=True, strict=True, description="true or false")
     shared_lean_points: float = Field(default=2.5, gt=0, le=20, description="points, above 0 and up to 20")
     shared_lean_correlation: float = Field(default=1 / 3, ge=0, le=1, description="a number from 0 to 1")
+    ramp: bool = Field(default=True, strict=True, description="true or false")
+    target_population: str = Field(
+        default="voters", min_length=1, description="a label of the register's population column"
+    )
 
 
 class Contest(_Frozen):
@@ -144,6 +162,9 @@ class Contest(_Frozen):
         default=(), alias="region", description="[[region]], each with code and name"
     )
     last_result: LastResult | None = Field(default=None, description="[last_result] with date and file")
+    jolts: tuple[Jolt, ...] = Field(
+        default=(), alias="jolt", description="[[jolt]], each with a date, weeks and a name"
+    )
     counting: Counting = Field(default=Counting(), description="[counting] with rule, seats, majority")
     others: bool = Field(default=True, strict=True, description="true or false")
     release: ReleaseRules = Field(default=ReleaseRules(), description="[release] with silence, publisher")

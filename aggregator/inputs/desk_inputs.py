@@ -44,6 +44,13 @@ class DeskInputs:
         party did not stand, or had no column: not the same as 0 votes. Votes where a party does not stand
         any more are kept. ``seat`` is blank where the file has one row per region. None without a last
         result.
+    counted_result
+        Votes of the regions that have voted and been counted as of the run, columns as in ``last_result``;
+        None where no region has.
+    past_errors
+        The desk's record of earlier elections, one row per election and party: ``election``
+        (``datetime64``), ``code``, ``polled`` (final poll average) and ``result``, both percent. None without
+        a record.
     warnings
         What was doubtful; travels into the release.
     unpublished
@@ -64,3 +71,5 @@ class DeskInputs:
     unpublished: tuple[str, ...]
     files: tuple[Path, ...]
     fingerprints: tuple[Fingerprint, ...] = ()
+    counted_result: pd.DataFrame | None = None
+    past_errors: pd.DataFrame | None = None
