@@ -30,6 +30,17 @@ _HOUSES = {
     "Tally & Wick": (9, 1500),
     "Weathercock": (2, 600),
 }
+# House, label of its way of working, usual mode, usual population, polls, days before the run of its last.
+_ERAS = (
+    ("Plumb Line", "", "telephone", "voters", 12, 3),
+    ("Saltbox Surveys", "door to door", "face_to_face", "voters", 3, 61),
+    ("Saltbox Surveys", "panel 2032", "online", "voters", 4, 5),
+    ("Tally & Wick", "", "online", "adults", 9, 8),
+    ("Weathercock", "", "telephone", "voters", 2, 20),
+)
+_MODES = {"face_to_face": 1, "online": 2, "telephone": 2}
+_RAMP_DAYS = 60
+_CLOCK_DAYS_BACK = 90
 _DRIFT_SD_LOG = 0.035  # per root of a week, for a party at 15 %
 _HOUSE_SD_LOG = 0.06  # for a party at 15 %
 _SHARED_LEAN_C = 0.025 / np.sqrt(0.24)  # 2.5 points at 40 %
@@ -134,12 +145,23 @@ def made_up_draws(
     today = national[:, :, -1]
     lean_log = rng.normal(size=(*size, n_houses, n_parties)) * house_sd_log[:, :, None, :]
     lean_log -= lean_log.mean(axis=2, keepdims=True)
-    house_lean = today[:, :, None] * (lean_log - np.einsum("cdhp,cdp->cdh", lean_log, today)[..., None])
+    own_log = np.stack([lean_log[:, :, houses.index(era[0])] for era in _ERAS], axis=2)
+    own_log += 0.5 * house_sd_log[:, :, None, :] * rng.normal(size=(1, 1, len(_ERAS), n_parties))
+    mode_log = 0.7 * house_sd_log[:, :, None, :] * rng.normal(size=(*size, len(_MODES), n_parties))
+    mode_log -= np.average(mode_log, axis=2, weights=list(_MODES.values()))[:, :, None]
+    population_log = 0.7 * house_sd_log[:, :, None, :] * rng.normal(size=(*size, 1, n_parties))
+    era_log = own_log + np.stack([mode_log[:, :, list(_MODES).index(era[2])] for era in _ERAS], axis=2)
+    era_log += population_log * np.array([era[3] == "adults" for era in _ERAS])[:, None]
+    era_lean, mode_lean = _in_shares(era_log, today), _in_shares(mode_log, today)
+    latest = {era[0]: place for place, era in enumerate(_ERAS)}
+    house_lean = era_lean[:, :, [latest[house] for house in houses]]
     kappa = 1 + np.exp(rng.normal(np.log(0.4), 0.2, (*size, n_houses)))
     rho = np.exp(rng.normal(np.log(0.0004), 0.3, (*size, n_houses)))
     usual_sample = np.array([_HOUSES[h][1] for h in houses])
     mean_today = today.mean(axis=(0, 1))
     shared_lean_sd_log = _SHARED_LEAN_C / np.sqrt(mean_today)
+
+    clock_days, ramp_log_height, clock = _opinion_clock(rng, size)
 
     days = [RUN_DATE - timedelta(weeks=dates - 1 - i) for i in range(dates)]
     per_draw = ("chain", "draw")
@@ -162,6 +184,16 @@ def made_up_draws(
             "house_lean_sd": ((*per_draw, "party"), np.sqrt(_share_variance(today, house_sd_log))),
             "shared_lean_sd_log": (("party",), shared_lean_sd_log),
             "shared_lean_sd": (("party",), np.sqrt(_share_variance(mean_today, shared_lean_sd_log))),
+            "era_lean": ((*per_draw, "era", "party"), era_lean),
+            "era_own_lean": ((*per_draw, "era", "party"), _in_shares(own_log, today)),
+            "mode_lean": ((*per_draw, "mode", "party"), mode_lean),
+            "mode_learned": (("mode", "party"), np.linspace(0.05, 0.75, 3 * n_parties).reshape(3, -1)),
+            "population_lean": ((*per_draw, "population", "party"), _in_shares(population_log, today)),
+            "population_learned": (("population", "party"), np.full((1, n_parties), 0.4)),
+            "formation_lean": ((*per_draw, "formation"), rng.normal(0.006, 0.004, (*size, 1))),
+            "formation_learned": (("formation",), np.array([0.65])),
+            "opinion_clock": ((*per_draw, "day"), clock),
+            "ramp_log_height": (per_draw, ramp_log_height),
         },
         coords={
             "chain": np.arange(chains),
@@ -170,9 +202,47 @@ def made_up_draws(
             "region": list(regions),
             "party": list(parties),
             "house": list(houses),
+            "era": [f"{house} · {label}" if label else house for house, label, *_ in _ERAS],
+            "era_house": ("era", [era[0] for era in _ERAS]),
+            "era_method": ("era", [era[1] for era in _ERAS]),
+            "era_mode": ("era", [era[2] for era in _ERAS]),
+            "era_population": ("era", [era[3] for era in _ERAS]),
+            "era_polls": ("era", [era[4] for era in _ERAS]),
+            "era_last": ("era", pd.DatetimeIndex([RUN_DATE - timedelta(days=era[5]) for era in _ERAS])),
+            "mode": list(_MODES),
+            "mode_houses": ("mode", list(_MODES.values())),
+            "population": ["adults"],
+            "population_houses": ("population", [1]),
+            "formation": [alliance.code for alliance in contest.alliances],
+            "formation_polls": ("formation", [6]),
+            "day": clock_days,
         },
         attrs={"run_date": RUN_DATE.isoformat(), "polling_day": POLLING_DAY.isoformat(), "seed": seed},
     )
+
+
+def calendar_clock(draws: xr.Dataset) -> xr.Dataset:
+    """The same draws, with opinion time that runs with the calendar from first to last."""
+    weeks = (draws["day"] - draws["day"][0]) / np.timedelta64(7, "D")
+    return draws.assign(opinion_clock=xr.zeros_like(draws["opinion_clock"]) + weeks)
+
+
+def _opinion_clock(
+    rng: np.random.Generator, size: tuple[int, int]
+) -> tuple[pd.DatetimeIndex, np.ndarray, np.ndarray]:
+    """Days, log height of the ramp, and opinion weeks since the first day: it may race or rest at the end."""
+    days = pd.date_range(RUN_DATE - timedelta(days=_CLOCK_DAYS_BACK), POLLING_DAY)
+    height = rng.normal(0, 0.5, size)
+    left = (pd.Timestamp(POLLING_DAY) - days[1:]).days + 0.5
+    rise = np.clip(1 - left.to_numpy() / _RAMP_DAYS, 0, 1)
+    pace = np.exp(height[..., None] * rise) / 7
+    return days, height, np.concatenate([np.zeros((*size, 1)), pace.cumsum(axis=-1)], axis=-1)
+
+
+def _in_shares(log_lean: np.ndarray, share: np.ndarray) -> np.ndarray:
+    """First-order lean in share units at ``share``; dims (chain, draw, …, party)."""
+    mean = np.einsum("cdhp,cdp->cdh", log_lean, share)[..., None]
+    return share[:, :, None] * (log_lean - mean)
 
 
 def _path(

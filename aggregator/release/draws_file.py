@@ -7,7 +7,7 @@ from pathlib import Path
 import numpy as np
 import xarray as xr
 
-from models.dimensions import CHAIN, DATE, DRAW
+from models.dimensions import CHAIN, DATE, DAY, DRAW
 
 MOST_DRAWS_OVER_TIME = 1_000
 """Draws kept of everything that runs over time; the rest is kept in full. A season of weekly releases must
@@ -32,8 +32,8 @@ def build_draws_tree(draws: xr.Dataset, *, seats: xr.Dataset | None) -> xr.DataT
     for name, dataset in (("posterior", draws), ("seats", seats)):
         if dataset is None:
             continue
-        over_time = [key for key, array in dataset.data_vars.items() if DATE in array.dims]
-        groups[name] = _narrow(dataset.drop_vars(over_time).drop_dims(DATE, errors="ignore"))
+        over_time = [key for key, array in dataset.data_vars.items() if {DATE, DAY} & set(array.dims)]
+        groups[name] = _narrow(dataset.drop_vars(over_time).drop_dims([DATE, DAY], errors="ignore"))
         groups[f"{name}_over_time"] = _narrow(_thin(dataset[over_time]))
     tree = xr.DataTree.from_dict(groups)
     tree.attrs = dict(draws.attrs)

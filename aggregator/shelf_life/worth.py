@@ -8,7 +8,6 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
-from datetime import date
 
 import numpy as np
 import numpy.typing as npt
@@ -17,11 +16,11 @@ import xarray as xr
 
 from aggregator.inputs.contest import OTHERS, Alliance
 from aggregator.shelf_life.ageing import fresh_worth, half_life_weeks, share_variance
-from models.dimensions import CHAIN, DATE, DRAW, HOUSE, PARTY
+from aggregator.shelf_life.opinion_clock import age_in_days, weeks_between
+from models.dimensions import CHAIN, DATE, DRAW, HOUSE, PARTY, POLL
 
 FloatArray = npt.NDArray[np.float64]
 
-DAYS_PER_WEEK = 7.0
 POINTS = 100.0
 # The interval of every published table.
 LOWER, UPPER = 0.05, 0.95
@@ -64,7 +63,8 @@ def summarise_shelf_life(
     r"""Tabulate what a typical house's poll is worth at each age, and its expected error on polling day.
 
     A poll of age a was taken a days before the run date. ``worth_today`` counts respondents interviewed on
-    the run date, ``worth_polling_day`` respondents interviewed on polling day. The expected error is that
+    the run date, ``worth_polling_day`` respondents interviewed on polling day. What a day of age costs is
+    counted in opinion time: more where opinion races or jumped. The expected error is that
     of the same poll's own figure against the result (the drift is that of its age *and* of the days left),
     as a root mean square over draws, in four parts whose squares add up:
 
@@ -79,8 +79,9 @@ def summarise_shelf_life(
     ----------
     draws
         Needs ``national_support`` (chain, draw, date, party), ``kappa`` and ``rho`` (chain, draw, house),
-        ``drift_sd_log`` and ``house_sd_log`` (chain, draw, party), ``shared_lean_sd_log`` (party) and the
-        attributes ``run_date`` and ``polling_day``. ``drift_sd_log`` is per root of a week.
+        ``drift_sd_log`` and ``house_sd_log`` (chain, draw, party), ``shared_lean_sd_log`` (party),
+        ``opinion_clock`` (chain, draw, day) and the attributes ``run_date`` and ``polling_day``.
+        ``drift_sd_log`` is per root of a week of opinion time.
     sample
         Respondents of the poll.
     ages
@@ -98,8 +99,9 @@ def summarise_shelf_life(
     share = _support_today(draws)
     kappa, rho = draws["kappa"].mean(HOUSE), draws["rho"].mean(HOUSE)
     age = xr.DataArray(list(ages), dims=_AGE)
-    weeks = age / DAYS_PER_WEEK
-    weeks_to_vote = weeks + _days_to_polling_day(draws) / DAYS_PER_WEEK
+    taken = [_run_date(draws) - pd.Timedelta(days=days) for days in ages]
+    weeks = weeks_between(draws, earlier=taken, later=_run_date(draws), dim=_AGE)
+    weeks_to_vote = weeks_between(draws, earlier=taken, later=_polling_day(draws), dim=_AGE)
     tables = []
     for code in codes_of(draws, alliances=alliances):
         support = share.sel({PARTY: list(code.members)}).sum(PARTY)
@@ -136,8 +138,8 @@ def summarise_half_life(
     Returns
     -------
     pd.DataFrame
-        One row per code: ``code``, ``level``, ``half_life_days`` (median over draws), ``half_life_days_q05``,
-        ``half_life_days_q95``.
+        One row per code: ``code``, ``level``, ``half_life_days`` (median over draws, days back from the run
+        date), ``half_life_days_q05``, ``half_life_days_q95``.
     """
     share, kappa = _support_today(draws), draws["kappa"].mean(HOUSE)
     rows = []
@@ -145,7 +147,8 @@ def summarise_half_life(
         support = share.sel({PARTY: list(code.members)}).sum(PARTY)
         drift = share_variance(share, sd_log=draws["drift_sd_log"], members=code.members)
         weeks = half_life_weeks(sample, share=support, drift_variance=drift, kappa=kappa)
-        summary = _median_and_interval(weeks * DAYS_PER_WEEK, name="half_life_days")
+        days = age_in_days(draws, weeks=weeks, on=_run_date(draws))
+        summary = _median_and_interval(days, name="half_life_days")
         rows.append({"code": code.code, "level": code.level, **summary})
     return pd.DataFrame(rows)
 
@@ -188,15 +191,17 @@ def polls_worth(
     share = _support_today(draws)
     support = share.sel({PARTY: list(named[code])}).sum(PARTY)
     drift = share_variance(share, sd_log=draws["drift_sd_log"], members=named[code])
-    run_date = pd.Timestamp(draws.attrs["run_date"])
+    run_date = _run_date(draws)
+    asked_by_poll = dict(list(polls.groupby("poll", sort=False)))
+    middles = [_middle_of_fieldwork(asked) for asked in asked_by_poll.values()]
+    weeks = weeks_between(draws, earlier=middles, later=run_date, dim=POLL)
     rows = []
-    for poll, asked in polls.groupby("poll", sort=False):
-        start, end = asked["start"].min(), asked["end"].max()
-        age = max((run_date - (start + (end - start) / 2)) / pd.Timedelta(days=1), 0.0)
+    for place, (poll, asked) in enumerate(asked_by_poll.items()):
+        age = max((run_date - middles[place]) / pd.Timedelta(days=1), 0.0)
         respondents = float(asked["poll_respondents"].iloc[0])
         worth = fresh_worth(
             respondents,
-            weeks=age / DAYS_PER_WEEK,
+            weeks=weeks.isel({POLL: place}),
             share=support,
             drift_variance=drift,
             kappa=_kappa_of_poll(draws, asked),
@@ -205,6 +210,11 @@ def polls_worth(
         rows.append({"poll": poll, "age_days": age, "respondents": respondents, **summary})
     columns = ["poll", "age_days", "respondents", "worth_today", "worth_today_q05", "worth_today_q95"]
     return pd.DataFrame(rows, columns=columns)
+
+
+def _middle_of_fieldwork(asked: pd.DataFrame) -> pd.Timestamp:
+    start, end = asked["start"].min(), asked["end"].max()
+    return start + (end - start) / 2
 
 
 def _kappa_of_poll(draws: xr.Dataset, asked: pd.DataFrame) -> xr.DataArray:
@@ -221,10 +231,13 @@ def _support_today(draws: xr.Dataset) -> xr.DataArray:
     return draws["national_support"].isel({DATE: -1}, drop=True)
 
 
-def _days_to_polling_day(draws: xr.Dataset) -> int:
-    """Days from the run date to polling day, none once it has passed."""
-    days = date.fromisoformat(draws.attrs["polling_day"]) - date.fromisoformat(draws.attrs["run_date"])
-    return max(days.days, 0)
+def _run_date(draws: xr.Dataset) -> pd.Timestamp:
+    return pd.Timestamp(draws.attrs["run_date"])
+
+
+def _polling_day(draws: xr.Dataset) -> pd.Timestamp:
+    """Polling day, or the day of the run once people have voted."""
+    return max(pd.Timestamp(draws.attrs["polling_day"]), _run_date(draws))
 
 
 def _median_and_interval(values: xr.DataArray, *, name: str) -> dict[str, FloatArray]:

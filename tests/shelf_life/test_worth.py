@@ -13,7 +13,7 @@ from aggregator.shelf_life.worth import (
     summarise_half_life,
     summarise_shelf_life,
 )
-from tests.made_up_draws import made_up_contest, made_up_draws
+from tests.made_up_draws import calendar_clock, made_up_contest, made_up_draws
 
 ALLIANCES = made_up_contest().alliances
 
@@ -67,10 +67,13 @@ def test_every_party_and_alliance_has_its_level_once_per_age(table: pd.DataFrame
     assert not table.duplicated(["age_days", "code"]).any()
 
 
-def test_drift_to_polling_day_equals_age_plus_days_left(draws: xr.Dataset) -> None:
+def test_drift_to_polling_day_equals_age_plus_days_left_where_opinion_keeps_its_pace(
+    draws: xr.Dataset,
+) -> None:
     days_left = 70
-    early = summarise_shelf_life(draws, ages=(days_left,)).set_index("code")
-    fresh = summarise_shelf_life(draws, ages=(0,)).set_index("code")
+    steady = calendar_clock(draws)
+    early = summarise_shelf_life(steady, ages=(days_left,)).set_index("code")
+    fresh = summarise_shelf_life(steady, ages=(0,)).set_index("code")
     np.testing.assert_allclose(early["worth_today"], fresh["worth_polling_day"])
 
 
@@ -79,6 +82,28 @@ def test_after_polling_day_nothing_more_drifts(draws: xr.Dataset) -> None:
     fresh = summarise_shelf_life(voted, ages=(0,))
     np.testing.assert_allclose(fresh["worth_polling_day"], 1000)
     np.testing.assert_allclose(fresh["error_drift"], 0)
+
+
+def test_jolt_between_fieldwork_and_today_ages_a_poll_by_its_weeks(draws: xr.Dataset) -> None:
+    steady = calendar_clock(draws)
+    after = steady["day"] >= np.datetime64("2033-02-20")
+    jolted = steady.assign(opinion_clock=steady["opinion_clock"] + 4.0 * after)
+    older = summarise_shelf_life(steady, ages=(21 + 28,)).set_index("code")
+    younger = summarise_shelf_life(jolted, ages=(21,)).set_index("code")
+    np.testing.assert_allclose(younger["worth_today"], older["worth_today"])
+    spared = summarise_shelf_life(jolted, ages=(7,)).set_index("code")
+    usual = summarise_shelf_life(steady, ages=(7,)).set_index("code")
+    np.testing.assert_allclose(spared["worth_today"], usual["worth_today"])
+
+
+def test_poll_taken_before_a_jolt_is_worth_less_than_its_calendar_age_says(draws: xr.Dataset) -> None:
+    steady = calendar_clock(draws)
+    after = steady["day"] >= np.datetime64("2033-02-20")
+    jolted = steady.assign(opinion_clock=steady["opinion_clock"] + 4.0 * after)
+    usual = polls_worth(steady, register(), code="FER").set_index("poll")["worth_today"]
+    shaken = polls_worth(jolted, register(), code="FER").set_index("poll")["worth_today"]
+    assert shaken["b"] < usual["b"]  # 1 January
+    assert shaken["a"] == pytest.approx(usual["a"])  # 27 February
 
 
 def test_half_life_table_agrees_with_the_worth_at_that_age(draws: xr.Dataset) -> None:
