@@ -36,6 +36,8 @@ class CountryArrays:
         party); of no meaning where the party does not stand.
     reference_share
         The party's typical national share, dims (party), share 0–1: sets the size of its scales.
+    lean_size
+        Size c of the error that all polls share, dims (party), log units × √p.
     pilot_share
         Rough national support over the register, dims (party), sums to one: sets the sampling
         coordinates only, never the model.
@@ -49,6 +51,7 @@ class CountryArrays:
     standing: NDArray[np.bool_]
     start_log_share: Floats
     reference_share: Floats
+    lean_size: Floats
     pilot_share: Floats
     free_party: Indices
 
@@ -62,7 +65,12 @@ class KnotArrays:
     national_day, region_day
         Days since the first national knot, ascending, dims (knot); the last is polling day.
     national_step, region_step
-        Opinion time between neighbouring knots, weeks, dims (knot − 1).
+        Calendar time between neighbouring knots, weeks, dims (knot − 1).
+    national_jolt, region_jolt
+        Opinion time that jolts add between neighbouring knots, weeks, dims (knot − 1).
+    national_ramp, region_ramp
+        How far each step lies up the ramp towards polling day, 0–1, dims (knot − 1); all zero where
+        opinion time runs evenly.
     lean_clock
         Position of each national knot between last result (0) and polling day (1), dims (knot).
     lean_reference
@@ -74,13 +82,25 @@ class KnotArrays:
     region_day: Floats
     national_step: Floats
     region_step: Floats
+    national_jolt: Floats
+    region_jolt: Floats
+    national_ramp: Floats
+    region_ramp: Floats
     lean_clock: Floats
     lean_reference: float
+
+    @property
+    def has_ramp(self) -> bool:
+        """Whether opinion time may run faster or slower towards polling day."""
+        return bool((self.national_ramp > 0).any())
 
 
 @dataclass(frozen=True)
 class RowArrays:
     """The published figures, one entry per row.
+
+    A row has one *part*, or several where some of its regions voted before its fieldwork: those answer for
+    their own polling day.
 
     Attributes
     ----------
@@ -90,10 +110,12 @@ class RowArrays:
         Position in ``polls``, dims (row).
     house_of_row
         Position in ``houses``, dims (row).
+    row_of_part
+        Position of each part's row, dims (part).
     national_weight, region_weight
-        Weight of each knot, averaged over the days of fieldwork, dims (row, knot); rows sum to one.
+        Weight of each knot, averaged over the days the part answers for, dims (part, knot); parts sum to one.
     region_mix
-        Turnout weights of the regions asked, dims (row, region); rows sum to one.
+        Turnout weights of the regions asked, dims (part, region); the parts of a row sum to one together.
     respondents
         Respondents behind the row's figures, dims (row).
     poll_respondents
@@ -117,6 +139,7 @@ class RowArrays:
     houses: tuple[str, ...]
     poll_of_row: Indices
     house_of_row: Indices
+    row_of_part: Indices
     national_weight: Floats
     region_weight: Floats
     region_mix: Floats
@@ -133,12 +156,73 @@ class RowArrays:
 
 
 @dataclass(frozen=True)
+class LeanArrays:
+    """What beside its house can make a row's figures differ from the average house's.
+
+    The house and each of these is a *term*. Terms are numbered houses first, then eras, modes,
+    populations and formations; the number after the last stands for none.
+
+    Attributes
+    ----------
+    era_house
+        Position of each era's house, dims (era); only houses that changed their method have eras.
+    mode_share
+        Share of the houses that interview in each mode, dims (mode); sums to one. Empty where the register
+        has one mode.
+    populations
+        Labels of the populations asked beside the target one.
+    formations
+        Alliances that some rows give as one figure from their start on, while others name the members.
+    formation_members
+        One for an alliance's members, dims (formation, party).
+    eras, modes
+        Labels.
+    terms_of_row
+        Number of each row's terms, dims (row, slot).
+    """
+
+    eras: tuple[str, ...]
+    era_house: Indices
+    modes: tuple[str, ...]
+    mode_share: Floats
+    populations: tuple[str, ...]
+    formations: tuple[str, ...]
+    formation_members: Floats
+    terms_of_row: Indices
+
+
+@dataclass(frozen=True)
+class CountedArrays:
+    """Regions that have voted and been counted.
+
+    Attributes
+    ----------
+    region
+        Position of each region, dims (counted).
+    share
+        Its result, dims (counted, party), rows sum to one.
+    national_weight, region_weight
+        Weight of each knot on the region's polling day, dims (counted, knot).
+    people
+        How many randomly drawn people a count is worth to the model; see :mod:`models.counted_regions`.
+    """
+
+    region: Indices
+    share: Floats
+    national_weight: Floats
+    region_weight: Floats
+    people: float
+
+
+@dataclass(frozen=True)
 class ElectionArrays:
-    """Everything the model is built from."""
+    """Everything the model is built from; ``counted`` is None while no region has been counted."""
 
     country: CountryArrays
     knots: KnotArrays
     rows: RowArrays
+    leans: LeanArrays
+    counted: CountedArrays | None = None
 
     def check(self) -> None:
         """Refuse arrays that contradict each other.
@@ -149,8 +233,8 @@ class ElectionArrays:
             Naming the array and what is wrong with it.
         """
         country, rows = self.country, self.rows
-        for part in (country, self.knots, rows):
-            for field in fields(part):
+        for part in (country, self.knots, rows, self.leans, self.counted):
+            for field in fields(part) if part is not None else ():
                 value = getattr(part, field.name)
                 if isinstance(value, np.ndarray) and value.dtype.kind == "f" and not np.isfinite(value).all():
                     raise ModelInputError(f"{field.name} holds a value that is not a finite number")
@@ -164,8 +248,13 @@ class ElectionArrays:
             bool((rows.poll_respondents >= rows.respondents - 1e-6).all()),
             "a row cannot hold more respondents than its poll",
         )
-        for name in ("national_weight", "region_weight", "region_mix"):
-            _require(np.allclose(getattr(rows, name).sum(axis=1), 1), f"{name} must sum to one in every row")
+        for name in ("national_weight", "region_weight"):
+            _require(np.allclose(getattr(rows, name).sum(axis=1), 1), f"{name} must sum to one in every part")
+        mix = np.bincount(rows.row_of_part, weights=rows.region_mix.sum(axis=1))
+        _require(
+            len(mix) == len(rows.respondents) and np.allclose(mix, 1),
+            "region_mix must sum to one in every row",
+        )
         _require(
             bool((rows.partition.sum(axis=1) <= 1).all()), "a party may be in one cell of a row at the most"
         )

@@ -10,7 +10,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from models.arrays import ElectionArrays, Floats, RowArrays
+from models.arrays import CountedArrays, ElectionArrays, Floats, RowArrays
+from models.lean_terms import lean_contrast, term_totals, weighted_contrast
+from models.priors import Priors
 
 # Pilot design effect: close to the prior medians of κ and ρ; only the sampler's coordinates depend on it.
 PILOT_WEIGHTING_LOSS = 1.4
@@ -19,12 +21,12 @@ PILOT_ERROR_FLOOR = 0.0004
 
 @dataclass(frozen=True)
 class BlockGeometry:
-    """One Gaussian block as field = basis · modes.
+    """One Gaussian block, its independent unit entries written as basis · modes.
 
     Attributes
     ----------
     basis
-        Dims (field entry, mode).
+        Dims (entry, mode). Entries are the walks' steps in units of their scale, or the terms of the leans.
     information
         Information of the polls about each mode, dims (mode).
     crossing
@@ -39,57 +41,94 @@ class BlockGeometry:
 
 @dataclass(frozen=True)
 class Geometry:
-    """The three Gaussian blocks; ``region`` is None with one region, ``house`` with one house.
+    """The three Gaussian blocks; ``region`` is None with one region, ``lean`` where nothing tells rows apart.
 
     Attributes
     ----------
     region_contrast
         Turns R − 1 free contrasts into region deviations whose turnout-weighted mean is zero,
         dims (region, contrast).
-    house_contrast
-        Turns H − 1 free contrasts into house effects that sum to zero, dims (house, contrast).
     """
 
     national: BlockGeometry
     region: BlockGeometry | None
-    house: BlockGeometry | None
+    lean: BlockGeometry | None
     region_contrast: Floats
-    house_contrast: Floats
 
 
-def build_geometry(arrays: ElectionArrays) -> Geometry:
+@dataclass(frozen=True)
+class _Sight:
+    """How rows, then counted regions, see the blocks: row-wise knot and region weights and information."""
+
+    national: Floats
+    region: Floats
+    mix: Floats
+    leans: Floats
+    weight: Floats
+
+
+def build_geometry(arrays: ElectionArrays, *, priors: Priors) -> Geometry:
     """Find the modes of every block from the prior and a pilot of the polls' information."""
-    rows, knots, country = arrays.rows, arrays.knots, arrays.country
-    weight = _pilot_information(rows)
-    region_contrast = _weighted_contrast(country.turnout)
-    house_contrast = _weighted_contrast(np.full(len(rows.houses), 1 / len(rows.houses)))
-    national_design = rows.national_weight
-    region_design = _region_design(rows, region_contrast)
+    knots = arrays.knots
+    region_contrast = weighted_contrast(arrays.country.turnout)
+    term_contrast = lean_contrast(arrays.leans, houses=len(arrays.rows.houses), priors=priors)
+    sight = _sight(arrays, region_contrast, term_contrast)
+    regional_walk = np.kron(
+        _walk_root(knots.region_step + knots.region_jolt), np.eye(region_contrast.shape[1])
+    )
     return Geometry(
         national=_block(
-            design=national_design[:, 1:],
-            precision_root=_walk_root(knots.national_step),
-            weight=weight,
-            grid=national_design,
+            design=sight.national[:, 1:] @ _walk_root(knots.national_step + knots.national_jolt),
+            weight=sight.weight,
+            grid=sight.national,
         ),
-        region=_block(
-            design=region_design,
-            precision_root=_per_contrast(_walk_root(knots.region_step), region_contrast.shape[1]),
-            weight=weight,
-            grid=rows.region_mix,
-        )
+        region=_block(design=sight.region @ regional_walk, weight=sight.weight, grid=sight.mix)
         if region_contrast.shape[1]
         else None,
-        house=_block(
-            design=house_contrast[rows.house_of_row],
-            precision_root=np.eye(house_contrast.shape[1]),
-            weight=weight,
-            grid=house_contrast[rows.house_of_row],
-        )
-        if house_contrast.shape[1]
+        lean=_block(design=sight.leans, weight=sight.weight, grid=sight.leans, spread=term_contrast)
+        if term_contrast.shape[1]
         else None,
         region_contrast=region_contrast,
-        house_contrast=house_contrast,
+    )
+
+
+def walk_sums(steps: int) -> Floats:
+    """Turn steps into the walk after each, dims (knot − 1, step)."""
+    return np.tri(steps)
+
+
+def _walk_root(time: Floats) -> Floats:
+    """Turn independent unit steps into a random walk after each of them, dims (knot − 1, step)."""
+    return walk_sums(len(time)) * np.sqrt(time)
+
+
+def _sight(arrays: ElectionArrays, region_contrast: Floats, term_contrast: Floats) -> _Sight:
+    rows = arrays.rows
+    share_of_row = rows.region_mix.sum(axis=1)
+    parts = np.zeros((len(rows.respondents), len(rows.row_of_part)))
+    parts[rows.row_of_part, np.arange(len(rows.row_of_part))] = 1
+    totals = term_totals(arrays.leans, terms=len(term_contrast))
+    seen = _Sight(
+        national=(parts * share_of_row) @ rows.national_weight,
+        region=parts @ _region_design(rows.region_weight, rows.region_mix, region_contrast),
+        mix=parts @ rows.region_mix,
+        leans=totals @ term_contrast,
+        weight=_pilot_information(rows),
+    )
+    if arrays.counted is None:
+        return seen
+    return _with_counted(seen, arrays.counted, region_contrast)
+
+
+def _with_counted(seen: _Sight, counted: CountedArrays, region_contrast: Floats) -> _Sight:
+    count = len(counted.region)
+    mix = np.eye(len(region_contrast))[counted.region]
+    return _Sight(
+        national=np.vstack([seen.national, counted.national_weight]),
+        region=np.vstack([seen.region, _region_design(counted.region_weight, mix, region_contrast)]),
+        mix=np.vstack([seen.mix, mix]),
+        leans=np.vstack([seen.leans, np.zeros((count, seen.leans.shape[1]))]),
+        weight=np.append(seen.weight, np.full(count, counted.people)),
     )
 
 
@@ -97,39 +136,18 @@ def _pilot_information(rows: RowArrays) -> Floats:
     return rows.respondents / (PILOT_WEIGHTING_LOSS + (rows.poll_respondents - 1) * PILOT_ERROR_FLOOR)
 
 
-def _weighted_contrast(weight: Floats) -> Floats:
-    """Root C of M Mᵀ, M = I − 1 wᵀ: independent draws through C are deviations with weighted mean zero."""
-    size = len(weight)
-    centring = np.eye(size) - np.outer(np.ones(size), weight)
-    values, vectors = np.linalg.eigh(centring @ centring.T)
-    return vectors[:, 1:] * np.sqrt(np.maximum(values[1:], 0))
+def _region_design(region_weight: Floats, mix: Floats, contrast: Floats) -> Floats:
+    """How each row sees the regional walk, dims (row, (knot − 1) · contrast)."""
+    seen = mix @ contrast
+    return (region_weight[:, 1:, None] * seen[:, None, :]).reshape(len(seen), -1)
 
 
-def _walk_root(step: Floats) -> Floats:
-    """Rows of L turn a random walk without its first knot into independent unit steps."""
-    size = len(step)
-    return (np.eye(size) - np.eye(size, k=-1)) / np.sqrt(step)[:, None]
-
-
-def _per_contrast(walk_root: Floats, contrasts: int) -> Floats:
-    """Give every contrast the same walk, independent of the others'."""
-    return np.asarray(np.kron(walk_root, np.eye(contrasts)), dtype=np.float64)
-
-
-def _region_design(rows: RowArrays, contrast: Floats) -> Floats:
-    """How each row sees the regional field, dims (row, (knot − 1) · contrast)."""
-    seen = rows.region_mix @ contrast
-    return (rows.region_weight[:, 1:, None] * seen[:, None, :]).reshape(len(seen), -1)
-
-
-def _block(*, design: Floats, precision_root: Floats, weight: Floats, grid: Floats) -> BlockGeometry:
-    """Solve the joint eigenproblem of prior precision LᵀL and information XᵀNX."""
-    inverse = np.linalg.inv(precision_root)
-    seen = design @ inverse
-    values, vectors = np.linalg.eigh((seen.T * weight) @ seen)
-    basis = inverse @ vectors
+def _block(*, design: Floats, weight: Floats, grid: Floats, spread: Floats | None = None) -> BlockGeometry:
+    """Diagonalise the information about independent unit entries; ``spread`` turns these into the field."""
+    values, vectors = np.linalg.eigh((design.T * weight) @ design)
+    basis = vectors if spread is None else spread @ vectors
     return BlockGeometry(
         basis=np.ascontiguousarray(basis),
         information=np.maximum(values, 1e-9),
-        crossing=np.ascontiguousarray((design @ basis).T * weight @ grid),
+        crossing=np.ascontiguousarray((design @ vectors).T * weight @ grid),
     )

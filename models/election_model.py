@@ -3,7 +3,7 @@
 Support is θ_{r,t} ∝ exp(a_t) · E_{r,t} with E_{r,t} = exp(b_r + d_{r,t}): the national swing, and a region's
 own support from its last result and its own swing, which leaves the country's sum of E as it was (see
 :mod:`models.region_support`). Between knots a and E move in straight lines. Polls see
-θ through the shared lean and their house's lean, with their design effect.
+θ through the shared lean and the leans of their own, with their design effect.
 """
 
 from __future__ import annotations
@@ -14,28 +14,20 @@ import numpy as np
 import pymc as pm
 import pytensor.tensor as pt
 
-from models.arrays import ElectionArrays, Floats, Indices
+from models.arrays import ElectionArrays
 from models.block_geometry import Geometry
 from models.conditional_laplace import add_modes, answer_information
+from models.counted_regions import add_counts
 from models.design_effect import add_design_effect_parameters, row_design_effect
-from models.free_baseline import (
-    add_free_baseline,
-    add_free_region_baseline,
-    free_directions,
-    is_free,
-)
+from models.election_data import add_data
+from models.free_baseline import add_free_baseline, add_free_region_baseline
+from models.opinion_time import add_ramp, opinion_weeks
 from models.party_scales import add_party_scale
-from models.poll_answers import (
-    add_answers,
-    add_small_cells,
-    answer_precision,
-    cell_shares,
-    kept_cells,
-    small_counts,
-)
+from models.poll_answers import add_answers, add_small_cells, answer_precision, cell_shares
 from models.priors import Priors
 from models.region_support import add_region_ratio, own_support
-from models.shared_lean import add_shared_lean, lean_loadings, lean_scale
+from models.row_shares import counted_shares, row_shares
+from models.shared_lean import add_shared_lean, lean_scale
 
 Array = Any
 
@@ -66,7 +58,7 @@ def build_election_model(
     """
     arrays.check()
     with pm.Model(coords=_coords(arrays, geometry)) as model:
-        data = _add_data(arrays, geometry, priors)
+        data = add_data(arrays, geometry=geometry, priors=priors)
         # The count of houses is read off the data: a new house must not change the graph.
         model.add_coord("house", arrays.rows.houses, length=data["house_number"].shape[0])
         drift = add_party_scale(
@@ -83,14 +75,22 @@ def build_election_model(
             spread=priors.party_spread,
             reference_share=data["reference_share"],
         )
-        lean = _lean(data, house_scale, priors) if shared_lean else None
+        ramp = add_ramp(priors=priors) if arrays.knots.has_ramp else 0.0
+        lean = _shared_lean(data, house_scale) if shared_lean else None
         start, region_start = _start(arrays, data, lean, priors)
-        national = _national_swing(data, drift, lean, start)
-        region = _region_support(geometry, data, drift, region_start, priors)
-        house = _house_effects(geometry, data, house_scale)
-        share = _row_shares(data, national, region, house)
+        national = _national_swing(data, drift, ramp, lean, start)
+        region = _region_support(geometry, data, drift, ramp, region_start, priors)
+        row_lean = _row_leans(geometry, data, house_scale)
+        share = row_shares(data, national=national, region=region, lean=row_lean)
         kappa, rho = add_design_effect_parameters(priors=priors)
         _answers(arrays, data, share, kappa, rho)
+        if arrays.counted is not None:
+            true = national if lean is None else national - lean["at_knots"]
+            add_counts(
+                share=counted_shares(data, national=true, region=region),
+                counted=data["counted_share"],
+                people=data["counted_people"],
+            )
     return model
 
 
@@ -104,89 +104,14 @@ def _coords(arrays: ElectionArrays, geometry: Geometry) -> dict[str, Any]:
     }
     if geometry.region is not None:
         coords["region_mode"] = np.arange(len(geometry.region.information))
-    if geometry.house is not None:
-        coords["house_mode"] = np.arange(len(geometry.house.information))
+    if geometry.lean is not None:
+        coords["lean_mode"] = np.arange(len(geometry.lean.information))
     return coords
 
 
-def _add_data(arrays: ElectionArrays, geometry: Geometry, priors: Priors) -> dict[str, Array]:
-    """Every number of the contest and the week, by name."""
-    country, knots, rows = arrays.country, arrays.knots, arrays.rows
-    asked = (rows.region_mix > 0).sum(axis=1)
-    alone, several = np.flatnonzero(asked == 1), np.flatnonzero(asked > 1)
-    region_knot, region_knot_weight = _nearest_knots(
-        rows.region_weight if geometry.region is not None else np.ones((len(asked), 1))
-    )
-    values: dict[str, Any] = {
-        "reference_share": country.reference_share,
-        "pilot_share": country.pilot_share,
-        "start_log_share": country.start_log_share,
-        "standing": country.standing.astype(float),
-        "turnout": country.turnout,
-        "free": free_directions(country),
-        "is_free": is_free(country),
-        "national_weight": rows.national_weight,
-        "house_number": np.arange(len(rows.houses)),
-        "house_of_row": rows.house_of_row,
-        "respondents": rows.respondents,
-        "poll_respondents": rows.poll_respondents,
-        "weighting_known": rows.weighting_known,
-        "partition": rows.partition,
-        "answers_published": rows.answers,
-        "used": rows.used,
-        "kept": kept_cells(rows),
-        "alone": alone,
-        "several": several,
-        "row_order": np.argsort(np.concatenate([alone, several])),
-        "region_alone": rows.region_mix[alone].argmax(axis=1) if len(alone) else alone,
-        "region_mix_several": rows.region_mix[several],
-        "region_knot": region_knot,
-        "region_knot_weight": region_knot_weight,
-        "lean_loadings": lean_loadings(knots.lean_clock, correlation=priors.lean_correlation),
-        "lean_loadings_reference": lean_loadings(
-            np.array([knots.lean_reference]), correlation=priors.lean_correlation
-        ),
-        "shared_lean_size": np.array(priors.shared_lean),
-        "national_basis": geometry.national.basis,
-        "national_information": geometry.national.information,
-        "national_crossing": geometry.national.crossing,
-        "national_pull": np.zeros((len(geometry.national.information), len(country.parties))),
-    }
-    if geometry.region is not None:
-        values |= {
-            "region_basis": geometry.region.basis,
-            "region_information": geometry.region.information,
-            "region_crossing": geometry.region.crossing,
-            "region_pull": np.zeros((len(geometry.region.information), len(country.parties))),
-            "region_contrast": geometry.region_contrast,
-        }
-    if geometry.house is not None:
-        values |= {
-            "house_basis": geometry.house_contrast @ geometry.house.basis,
-            "house_information": geometry.house.information,
-            "house_pull": np.zeros((len(geometry.house.information), len(country.parties))),
-        }
-    if len(rows.small_row):
-        small = small_counts(rows)
-        values |= {
-            "small_row": rows.small_row,
-            "small_cell": rows.small_cell,
-            "small_count": small.counts,
-            "small_log_weight": small.log_count_weight,
-        }
-    return {name: pm.Data(name, np.asarray(value, order="C")) for name, value in values.items()}
-
-
-def _nearest_knots(weight: Floats) -> tuple[Indices, Floats]:
-    """The few knots each row weighs, and their weights; dims (row, near knot)."""
-    width = int((weight > 0).sum(axis=1).max())
-    knot = np.argsort(-weight, axis=1, kind="stable")[:, :width]
-    return knot, np.take_along_axis(weight, knot, axis=1)
-
-
-def _lean(data: dict[str, Array], house_scale: Array, priors: Priors) -> dict[str, Array]:
+def _shared_lean(data: dict[str, Array], house_scale: Array) -> dict[str, Array]:
     scale = lean_scale(
-        shared_lean=data["shared_lean_size"],
+        lean_size=data["lean_size"],
         reference_share=data["reference_share"],
         house_scale=house_scale,
         house_count=data["house_number"].shape[0],
@@ -211,7 +136,7 @@ def _start(
 
 
 def _national_swing(
-    data: dict[str, Array], drift: Array, lean: dict[str, Array] | None, start: Array | None
+    data: dict[str, Array], drift: Array, ramp: Array, lean: dict[str, Array] | None, start: Array | None
 ) -> Array:
     """What polls see nationally beside the regions: walk, lean and free starts; dims (knot, party)."""
     beside = 0.0
@@ -232,13 +157,31 @@ def _national_swing(
         pull=pull,
         dims=("national_mode", "party"),
     )
-    walk = pt.dot(data["national_basis"], modes)
+    steps = _root_of_time(data, "national", ramp)[:, None] * pt.dot(data["national_basis"], modes)
+    walk = pt.dot(data["national_sums"], steps)
     walk = pt.concatenate([pt.zeros_like(walk[:1]), walk], axis=0)
     return walk + beside
 
 
+def _root_of_time(data: dict[str, Array], level: str, ramp: Array) -> Array:
+    """Square root of the opinion time of each step, dims (step)."""
+    time = opinion_weeks(
+        data[f"{level}_step"],
+        jolt=data[f"{level}_jolt"],
+        ramp=data[f"{level}_ramp"],
+        log_height=ramp,
+        exp=pt.exp,
+    )
+    return pt.sqrt(time)
+
+
 def _region_support(
-    geometry: Geometry, data: dict[str, Array], drift: Array, region_start: Array | None, priors: Priors
+    geometry: Geometry,
+    data: dict[str, Array],
+    drift: Array,
+    ramp: Array,
+    region_start: Array | None,
+    priors: Priors,
 ) -> Array:
     """Each region's own support E at the regional knots, zero where absent; dims (knot, region, party)."""
     own = 0.0 if region_start is None else region_start[None]
@@ -259,7 +202,9 @@ def _region_support(
         dims=("region_mode", "party"),
     )
     contrast = data["region_contrast"]
-    walk = pt.dot(data["region_basis"], modes).reshape((-1, contrast.shape[1], modes.shape[1]))
+    root = _root_of_time(data, "region", ramp)
+    steps = root[:, None] * pt.dot(data["region_basis"], modes).reshape((root.shape[0], -1))
+    walk = pt.dot(data["region_sums"], steps).reshape((-1, contrast.shape[1], modes.shape[1]))
     swing = pt.dot(walk.dimshuffle(0, 2, 1), contrast.T).dimshuffle(0, 2, 1)
     swing = pt.concatenate([pt.zeros_like(swing[:1]), swing], axis=0)
     return _own_support(data, own + swing)
@@ -274,42 +219,22 @@ def _own_support(data: dict[str, Array], own: Array) -> Array:
     )
 
 
-def _house_effects(geometry: Geometry, data: dict[str, Array], house_scale: Array) -> Array | None:
-    """House effects, dims (house, party), zero-sum over houses."""
-    if geometry.house is None:
+def _row_leans(geometry: Geometry, data: dict[str, Array], house_scale: Array) -> Array | None:
+    """Leans of each row: of its house, era, mode, population and way of asking; dims (row, party)."""
+    if geometry.lean is None:
         return None
     modes = add_modes(
-        "house_modes",
+        "lean_modes",
         scale=house_scale,
-        information=data["house_information"],
+        information=data["lean_information"],
         share=data["pilot_share"],
-        pull=data["house_pull"],
-        dims=("house_mode", "party"),
+        pull=data["lean_pull"],
+        dims=("lean_mode", "party"),
     )
-    return pt.dot(data["house_basis"], modes)
-
-
-def _row_shares(data: dict[str, Array], national: Array, region: Array, house: Array | None) -> Array:
-    """Expected shares of all parties in each row, leans included; dims (row, party)."""
-    common = pt.dot(data["national_weight"], national)
-    if house is not None:
-        common = common + house[data["house_of_row"]]
-    common = pt.exp(common)
-    knot, weight = data["region_knot"], data["region_knot_weight"]
-    knots, regions, parties = region.shape
-    alone, several = data["alone"], data["several"]
-
-    at = knot[alone] * regions + data["region_alone"][:, None]
-    near = region.reshape((knots * regions, parties))[at.ravel()].reshape((*at.shape, parties))
-    one = common[alone] * (near * weight[alone][:, :, None]).sum(axis=1)
-    one = one / one.sum(axis=-1, keepdims=True)
-
-    at = knot[several]
-    near = region.reshape((knots, regions * parties))[at.ravel()].reshape((*at.shape, regions * parties))
-    own = (near * weight[several][:, :, None]).sum(axis=1).reshape((-1, regions, parties))
-    many = common[several][:, None, :] * own
-    many = (many * (data["region_mix_several"] / many.sum(axis=-1))[:, :, None]).sum(axis=1)
-    return pt.concatenate([one, many], axis=0)[data["row_order"]]
+    terms = pt.dot(data["lean_basis"], modes)
+    terms = pt.concatenate([terms, pt.zeros_like(terms[:1])], axis=0)
+    places = data["terms_of_row"]
+    return terms[places.ravel()].reshape((*places.shape, terms.shape[1])).sum(axis=1)
 
 
 def _answers(arrays: ElectionArrays, data: dict[str, Array], share: Array, kappa: Array, rho: Array) -> None:

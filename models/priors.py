@@ -28,6 +28,13 @@ class Priors:
         would be two countries. Registers without regional polls leave it at the prior.
     house_log_median, house_log_sd
         House effects: .06 at 15 % is .8 points.
+    era_part, mode_part, population_part, formation_part
+        Sizes of a method's era, a mode, a population and of asking about an alliance as one, as parts of
+        the house effects' size: an assumption, since no register has enough of them to learn theirs. A
+        house that changes its method stays nearer to itself than to others.
+    ramp_log_sd
+        Log height of the ramp of opinion time on polling day: .5 lets opinion move at .4 to 2.3 times its
+        usual pace (90 % interval), either way alike.
     party_spread
         How far one party's scale may stray from the common one, log units.
     weighting_loss_log_median, weighting_loss_log_sd, weighting_loss_spread
@@ -42,6 +49,11 @@ class Priors:
     lean_correlation
         Correlation between the shared lean at the last result and on polling day: an assumption that
         polls of one contest cannot check.
+    region_lean_part
+        The regional part of the shared lean, as a part of the national one: an assumption, small beside it.
+    undecided_stray
+        How far the undecided may break from those who chose, log units × √p: 15 points at 40 %, an
+        assumption.
     free_log_sd, free_region_log_sd
         A party without a record: its national log share around the median, and each region around it.
     """
@@ -53,6 +65,11 @@ class Priors:
     region_ratio_spread: float = 0.67
     house_log_median: float = log(0.06)
     house_log_sd: float = 0.5
+    era_part: float = 0.5
+    mode_part: float = 0.7
+    population_part: float = 0.7
+    formation_part: float = 0.7
+    ramp_log_sd: float = 0.5
     party_spread: float = 0.35
     weighting_loss_log_median: float = log(0.4)
     weighting_loss_log_sd: float = 0.4
@@ -62,6 +79,8 @@ class Priors:
     error_floor_spread: float = 0.5
     shared_lean: float = 0.025 / sqrt(0.4 * 0.6)
     lean_correlation: float = 1 / 3
+    region_lean_part: float = 0.4
+    undecided_stray: float = 0.15 / sqrt(0.4 * 0.6)
     free_log_sd: float = 1.2
     free_region_log_sd: float = 0.5
 

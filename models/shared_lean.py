@@ -17,6 +17,7 @@ import pymc as pm
 import pytensor.tensor as pt
 
 from models.arrays import Floats
+from models.priors import Priors
 
 Array = Any
 
@@ -27,11 +28,25 @@ def lean_loadings(clock: Floats, *, correlation: float) -> Floats:
     return np.stack([np.cos(clock * angle), np.sin(clock * angle)], axis=-1)
 
 
-def lean_scale(
-    *, shared_lean: Array, reference_share: Array, house_scale: Array, house_count: Array
-) -> Array:
+def lean_size(recorded: Floats, *, undecided: float, priors: Priors) -> Floats:
+    """Size c of the shared lean, log units × √p; dims (party).
+
+    Setting the undecided aside takes them to split as the others do. They may not, and no poll shows it: what
+    they may add is a shared error of the undecided share times how far they may stray.
+
+    Parameters
+    ----------
+    recorded
+        c as the record of past elections has it, dims (party).
+    undecided
+        Undecided share of the late polls, 0–1.
+    """
+    return np.sqrt(recorded**2 + (undecided * priors.undecided_stray) ** 2)
+
+
+def lean_scale(*, lean_size: Array, reference_share: Array, house_scale: Array, house_count: Array) -> Array:
     """Standard deviation l_p of the shared lean, dims (party), unit: log support."""
-    return (shared_lean**2 / reference_share + house_scale**2 / house_count) ** 0.5
+    return (lean_size**2 / reference_share + house_scale**2 / house_count) ** 0.5
 
 
 def add_shared_lean(*, loadings: Array, scale: Array) -> Array:

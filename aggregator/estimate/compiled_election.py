@@ -17,7 +17,7 @@ from models.block_geometry import Geometry, build_geometry
 from models.election_model import build_election_model
 from models.priors import Priors
 
-PULLS = ("national_pull", "region_pull", "house_pull")
+PULLS = ("national_pull", "region_pull", "lean_pull")
 
 
 @dataclass(frozen=True)
@@ -87,7 +87,7 @@ def compile_election(arrays: ElectionArrays, *, priors: Priors, shared_lean: boo
     ModelInputError
         If the arrays contradict each other.
     """
-    geometry = build_geometry(arrays)
+    geometry = build_geometry(arrays, priors=priors)
     model = build_election_model(arrays, geometry=geometry, priors=priors, shared_lean=shared_lean)
     density = compile_log_density(model)
     start = centre_on_pilot(model, density, arrays=arrays, geometry=geometry, priors=priors)

@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 from functools import partial
 
 import numpy as np
+import pandas as pd
 import xarray as xr
 from threadpoolctl import threadpool_limits
 
@@ -22,7 +23,7 @@ from aggregator.estimate.sampler_checks import (
     only_needs_more_draws,
 )
 from aggregator.estimate.sampling import CAREFUL_ACCEPT, ChainPlan
-from aggregator.estimate.support import series_dates, summarise_support
+from aggregator.estimate.support import Calendar, series_dates, summarise_support
 from aggregator.inputs.contest import ModelOverrides
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.settings import RunSettings
@@ -103,12 +104,12 @@ def fit_contest(
     # One thread for linear algebra: sums in another order would change the last digit, then the chains.
     with threadpool_limits(1):
         progress("building the model", 0.0)
+        priors = _priors(inputs.contest.model)
+        contest = build_arrays(inputs, priors=priors)
         election = compile_election(
-            build_arrays(inputs),
-            priors=_priors(inputs.contest.model),
-            shared_lean=inputs.contest.model.shared_lean,
+            contest.arrays, priors=priors, shared_lean=inputs.contest.model.shared_lean
         )
-        attempt = partial(_sample, inputs, election, limits=limits, progress=progress)
+        attempt = partial(_sample, inputs, election, contest.eras, limits=limits, progress=progress)
         fit = attempt(settings=settings)
         if second_attempts and fit.convergence.divergences > limits.divergences:
             settings = replace(settings, target_accept=CAREFUL_ACCEPT)
@@ -121,6 +122,7 @@ def fit_contest(
 def _sample(
     inputs: DeskInputs,
     election: CompiledElection,
+    eras: pd.DataFrame,
     *,
     settings: RunSettings,
     limits: Limits,
@@ -142,20 +144,21 @@ def _sample(
     draws = summarise_support(
         parameters,
         arrays=arrays,
+        eras=eras,
         chains=settings.chains,
-        dates=series_dates(first_fieldwork=inputs.polls["start"].min().date(), run_date=inputs.run_date),
-        polling_day=contest.polling_day,
-        shared_lean=election.priors.shared_lean if contest.model.shared_lean else 0.0,
+        calendar=_calendar(inputs),
+        shared_lean=contest.model.shared_lean,
+        priors=election.priors,
         rng=np.random.default_rng(streams[OUTPUT_STREAM]),
     )
     draws.attrs |= {
         "run_date": inputs.run_date.isoformat(),
-        "polling_day": contest.polling_day.isoformat(),
+        "polling_day": contest.last_polling_day.isoformat(),
         "seed": settings.seed,
     }
     progress("checking the draws", 0.0)
     convergence = check_convergence(
-        draws.drop_vars(["kappa", "rho"]), divergences=int(chains["diverging"].sum())
+        draws.drop_vars(["kappa", "rho", "opinion_clock"]), divergences=int(chains["diverging"].sum())
     )
     return Fit(
         draws=draws,
@@ -166,6 +169,15 @@ def _sample(
         verdict=judge_fit(convergence, limits=limits),
         pareto_k=pareto_k_by_poll(parameters, arrays=arrays, chains=settings.chains),
         settings=settings,
+    )
+
+
+def _calendar(inputs: DeskInputs) -> Calendar:
+    contest = inputs.contest
+    return Calendar(
+        dates=series_dates(first_fieldwork=inputs.polls["start"].min().date(), run_date=inputs.run_date),
+        voting=tuple(contest.polling_day_of(region) for region in contest.region_codes),
+        jolts={jolt.date: jolt.weeks for jolt in contest.jolts},
     )
 
 

@@ -8,10 +8,12 @@ from dataclasses import dataclass
 import numpy as np
 
 from aggregator.estimate.log_density import Layout
-from models.arrays import ElectionArrays, Floats
+from models.arrays import ElectionArrays, Floats, KnotArrays
 from models.block_geometry import BlockGeometry, Geometry
 from models.conditional_laplace import answer_information, modes_from_coordinates
 from models.free_baseline import free_directions, is_free
+from models.lean_terms import term_total
+from models.opinion_time import opinion_weeks
 from models.party_scales import size_factor
 from models.priors import Priors
 from models.region_support import region_ratio
@@ -28,6 +30,8 @@ class Parameters:
         Scales, dims (sample, party), unit: log support (drift per √week).
     region_ratio
         Regional over national drift, dims (sample); ones with one region.
+    ramp
+        Log height of the ramp of opinion time, dims (sample); zeros without one.
     walk
         National walk at the knots plus free national starts, leans left out, dims (sample, knot, party).
     region
@@ -35,8 +39,9 @@ class Parameters:
         party).
     lean
         Shared lean at the national knots, dims (sample, knot, party).
-    house
-        House effects, dims (sample, house, party).
+    terms
+        Leans of houses, eras, modes, populations and formations, in the order of
+        :class:`models.arrays.LeanArrays`, and a last one for none, dims (sample, term, party).
     kappa, rho
         Dims (sample, house).
     """
@@ -45,12 +50,18 @@ class Parameters:
     house_scale: Floats
     lean_scale: Floats
     region_ratio: Floats
+    ramp: Floats
     walk: Floats
     region: Floats
     lean: Floats
-    house: Floats
+    terms: Floats
     kappa: Floats
     rho: Floats
+
+    @property
+    def house(self) -> Floats:
+        """House effects, dims (sample, house, party)."""
+        return self.terms[:, : self.kappa.shape[1]]
 
 
 def read_parameters(
@@ -95,6 +106,7 @@ def read_parameters(
             pull=pulls[f"{name}_pull"] - follow,
         )
 
+    ramp = part("ramp_log_height") if "ramp_log_height" in layout.names else np.zeros(samples)
     drift = scale("drift", part("drift_log"))
     house_scale = scale("house_scale", part("house_scale_log"))
     lean, lean_size, reference = _lean(part, layout, house_scale, arrays, priors)
@@ -105,7 +117,9 @@ def read_parameters(
         start = start - reference * is_free(country)
     national = modes("national", geometry.national, drift, lean + start[:, None, :])
     walk = np.zeros((samples, len(knots.national_day), parties))
-    walk[:, 1:] = geometry.national.basis @ national
+    walk[:, 1:] = np.cumsum(
+        _root_of_time(knots, "national", ramp) * (geometry.national.basis @ national), axis=1
+    )
     region = np.zeros((samples, len(knots.region_day), len(country.regions), parties))
     ratio = np.ones(samples)
     if geometry.region is not None:
@@ -114,14 +128,13 @@ def read_parameters(
             region_start = (priors.free_region_log_sd * part("free_region_baseline_own")) @ free
             region += region_start[:, None]
         ratio = region_ratio(part("region_ratio_own"), priors=priors, exp=np.exp)
-        field = geometry.region.basis @ modes("region", geometry.region, drift * ratio[:, None], region_start)
-        contrasts = field.reshape(samples, len(knots.region_day) - 1, -1, parties)
+        steps = geometry.region.basis @ modes("region", geometry.region, drift * ratio[:, None], region_start)
+        steps = _root_of_time(knots, "region", ramp) * steps.reshape(samples, len(knots.region_step), -1)
+        contrasts = np.cumsum(steps, axis=1).reshape(samples, len(knots.region_step), -1, parties)
         region[:, 1:] += geometry.region_contrast @ contrasts
-    house = np.zeros((samples, len(rows.houses), parties))
-    if geometry.house is not None:
-        house = (
-            geometry.house_contrast @ geometry.house.basis @ modes("house", geometry.house, house_scale, None)
-        )
+    terms = np.zeros((samples, term_total(arrays.leans, houses=len(rows.houses)) + 1, parties))
+    if geometry.lean is not None:
+        terms[:, :-1] = geometry.lean.basis @ modes("lean", geometry.lean, house_scale, None)
     loss = part("weighting_loss_log")[:, None] + priors.weighting_loss_spread * part("weighting_loss_own")
     floor = part("error_floor_log")[:, None] + priors.error_floor_spread * part("error_floor_own")
     return Parameters(
@@ -129,13 +142,26 @@ def read_parameters(
         house_scale=house_scale,
         lean_scale=lean_size,
         region_ratio=ratio,
+        ramp=ramp,
         walk=walk + start[:, None, :],
         region=region,
         lean=lean,
-        house=house,
+        terms=terms,
         kappa=1 + np.exp(loss),
         rho=np.exp(floor),
     )
+
+
+def _root_of_time(knots: KnotArrays, level: str, ramp: Floats) -> Floats:
+    """Square root of the opinion time of each step, dims (sample, step, one)."""
+    weeks = opinion_weeks(
+        getattr(knots, f"{level}_step"),
+        jolt=getattr(knots, f"{level}_jolt"),
+        ramp=getattr(knots, f"{level}_ramp"),
+        log_height=ramp[:, None],
+        exp=np.exp,
+    )
+    return np.asarray(np.sqrt(weeks))[:, :, None]
 
 
 def _lean(
@@ -147,7 +173,7 @@ def _lean(
         nothing = np.zeros_like(house_scale)
         return np.zeros((len(house_scale), len(knots.lean_clock), house_scale.shape[1])), nothing, nothing
     size = lean_scale(
-        shared_lean=priors.shared_lean,
+        lean_size=arrays.country.lean_size,
         reference_share=arrays.country.reference_share,
         house_scale=house_scale,
         house_count=len(arrays.rows.houses),

@@ -25,7 +25,7 @@ MEMORY = 15
 SUPPORT_VARIABLES = (
     "national_modes",
     "region_modes",
-    "house_modes",
+    "lean_modes",
     "shared_lean_ends",
     "free_baseline_own",
     "free_region_baseline_own",
@@ -55,7 +55,7 @@ def centre_on_pilot(
     blocks = {
         "national_modes": (geometry.national, scales["drift"], beside),
         "region_modes": (geometry.region, scales["region"], region_start),
-        "house_modes": (geometry.house, scales["house"], None),
+        "lean_modes": (geometry.lean, scales["house"], None),
     }
     for name, (block, scale, other) in blocks.items():
         if block is None:
@@ -119,7 +119,7 @@ def _beside(
     free = free_directions(country)
     if lean:
         scale = lean_scale(
-            shared_lean=priors.shared_lean,
+            lean_size=country.lean_size,
             reference_share=country.reference_share,
             house_scale=scales["house"],
             house_count=len(arrays.rows.houses),

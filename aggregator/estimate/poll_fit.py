@@ -32,11 +32,15 @@ def expected_shares(parameters: Parameters, *, arrays: ElectionArrays, samples: 
     """Shares each row is expected to find, leans included; dims (sample, row, party)."""
     rows = arrays.rows
     seen = rows.national_weight @ (parameters.walk[samples] + parameters.lean[samples])
-    seen += parameters.house[samples][:, rows.house_of_row]
+    leans = parameters.terms[samples][:, arrays.leans.terms_of_row].sum(axis=2)
+    seen += leans[:, rows.row_of_part]
     own = region_support(parameters.region[samples], country=arrays.country, weight=rows.region_weight)
     share = np.exp(seen)[:, :, None, :] * own
     share /= share.sum(axis=-1, keepdims=True)
-    return np.einsum("nr,snrp->snp", rows.region_mix, share)
+    parts = np.einsum("nr,snrp->snp", rows.region_mix, share)
+    out = np.zeros((len(samples), len(rows.respondents), parts.shape[2]))
+    np.add.at(out.transpose(1, 0, 2), rows.row_of_part, parts.transpose(1, 0, 2))
+    return out
 
 
 def row_log_likelihood(parameters: Parameters, *, arrays: ElectionArrays, samples: np.ndarray) -> Floats:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date
 
 import numpy as np
@@ -31,21 +31,17 @@ class Row:
     poll_respondents: float
     weighting_known: bool
     step: float
+    method: str
+    mode: str
+    population: str
+    together: tuple[str, ...]
     cells: tuple[tuple[frozenset[str], float], ...]
 
 
 @dataclass(frozen=True)
-class PublishedRows:
-    """All rows as arrays; see ``models.arrays.RowArrays`` for the dims."""
+class CellArrays:
+    """The figures of all rows; the fields are those of ``models.arrays.RowArrays``."""
 
-    poll: tuple[str, ...]
-    house: tuple[str, ...]
-    start: tuple[date, ...]
-    end: tuple[date, ...]
-    region_mix: Floats
-    respondents: Floats
-    poll_respondents: Floats
-    weighting_known: Floats
     partition: Floats
     answers: Floats
     used: Floats
@@ -55,10 +51,9 @@ class PublishedRows:
     small_high: Floats
 
 
-def read_rows(inputs: DeskInputs, *, turnout: Floats, standing: np.ndarray) -> PublishedRows:
-    """Turn the used rows of the register into arrays."""
-    rows = [_row(record, inputs.contest) for record in inputs.polls.to_dict("records")]
-    return _arrays(_merge_small(rows), contest=inputs.contest, turnout=turnout, standing=standing)
+def read_rows(inputs: DeskInputs) -> list[Row]:
+    """Read the used rows of the register, those too small to stand alone merged within their poll."""
+    return _merge_small([_row(record, inputs.contest) for record in inputs.polls.to_dict("records")])
 
 
 def _row(record: dict, contest: Contest) -> Row:
@@ -87,6 +82,14 @@ def _row(record: dict, contest: Contest) -> Row:
         poll_respondents=max(poll_size, size),
         weighting_known=known,
         step=float(record["rounding_step"]),
+        method=record["method"],
+        mode=record["mode"],
+        population=record["population"],
+        together=tuple(
+            alliance.code
+            for alliance in contest.alliances
+            if not pd.isna(record.get(alliance.code, np.nan)) and alliance.active_on(record["end"].date())
+        ),
         cells=tuple(cells),
     )
 
@@ -125,49 +128,35 @@ def _same_cells(one: Row, other: Row) -> bool:
 def _merge(one: Row, other: Row) -> Row:
     size = one.respondents + other.respondents
     share = {m: s * one.respondents / size for m, s in one.cells}
-    cells = tuple((m, share[m] + s * other.respondents / size) for m, s in other.cells)
-    return Row(
-        poll=one.poll,
-        house=one.house,
+    return replace(
+        one,
         start=min(one.start, other.start),
         end=max(one.end, other.end),
         regions=one.regions + other.regions,
         respondents=size,
-        poll_respondents=one.poll_respondents,
-        weighting_known=one.weighting_known,
         step=max(one.step, other.step),
-        cells=cells,
+        cells=tuple((m, share[m] + s * other.respondents / size) for m, s in other.cells),
     )
 
 
-def _arrays(rows: list[Row], *, contest: Contest, turnout: Floats, standing: np.ndarray) -> PublishedRows:
-    parties = {p: i for i, p in enumerate(contest.party_codes)}
-    regions = {r: i for i, r in enumerate(contest.region_codes)}
+def cell_arrays(rows: list[Row], *, parties: tuple[str, ...]) -> CellArrays:
+    """Put the figures of all rows into arrays; shares become answers, of those who chose a cell."""
+    position = {p: i for i, p in enumerate(parties)}
     width = max(len(row.cells) for row in rows)
     partition = np.zeros((len(rows), width, len(parties)))
-    answers, used, mix = (np.zeros((len(rows), n)) for n in (width, width, len(regions)))
+    answers, used = np.zeros((len(rows), width)), np.zeros((len(rows), width))
     small: list[tuple[int, int, float, float]] = []
     for i, row in enumerate(rows):
-        asked = [regions[r] for r in row.regions]
-        mix[i, asked] = turnout[asked] / turnout[asked].sum()
         total = sum(share for _, share in row.cells)
         for c, (members, share) in enumerate(row.cells):
-            partition[i, c, [parties[m] for m in members]] = 1
+            partition[i, c, [position[m] for m in members]] = 1
             used[i, c] = 1
             answers[i, c] = share / total * row.respondents
             if row.step > 0 and share < SMALL_STEPS * row.step:
                 low, high = max(share - row.step / 2, 0), share + row.step / 2
                 small.append((i, c, low / total * row.respondents, high / total * row.respondents))
     rows_small, cells_small, low_small, high_small = zip(*small, strict=True) if small else ((), (), (), ())
-    return PublishedRows(
-        poll=tuple(row.poll for row in rows),
-        house=tuple(row.house for row in rows),
-        start=tuple(row.start for row in rows),
-        end=tuple(row.end for row in rows),
-        region_mix=mix,
-        respondents=np.array([row.respondents for row in rows]),
-        poll_respondents=np.array([row.poll_respondents for row in rows]),
-        weighting_known=np.array([float(row.weighting_known) for row in rows]),
+    return CellArrays(
         partition=partition,
         answers=answers,
         used=used,

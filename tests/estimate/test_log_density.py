@@ -18,13 +18,13 @@ from tests.models.made_up_arrays import made_up_arrays
 
 def test_compiled_gradient_agrees_with_the_librarys_plain_evaluation() -> None:
     # Compile passes that write in place are where a compiled gradient has come out wrong unnoticed.
-    arrays, _ = made_up_arrays(polls=30, weeks=16, free=1, absent=True)
+    arrays, _ = made_up_arrays(polls=30, weeks=16, free=1, absent=True, messy=True)
     rows = arrays.rows
     row, cell = np.nonzero((rows.used > 0) & (rows.answers < np.quantile(rows.answers[rows.used > 0], 0.1)))
     count = rows.answers[row, cell]
     intervals = {"small_row": row, "small_cell": cell, "small_low": 0.8 * count, "small_high": 1.2 * count}
     arrays = replace(arrays, rows=replace(rows, **intervals))
-    model = build_election_model(arrays, geometry=build_geometry(arrays), priors=Priors())
+    model = build_election_model(arrays, geometry=build_geometry(arrays, priors=Priors()), priors=Priors())
     density = compile_log_density(model)
     plain_density = model.logp()
     plain = pytensor.function(

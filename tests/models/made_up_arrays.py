@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date, timedelta
 
 import numpy as np
 
-from aggregator.estimate.knots import build_knots, knot_weights
-from models.arrays import CountryArrays, ElectionArrays, RowArrays
+from aggregator.estimate.knots import JoltDay, build_knots, knot_weights
+from models.arrays import CountedArrays, CountryArrays, ElectionArrays, LeanArrays, RowArrays
 
 POLLING_DAY = date(2026, 5, 17)
 # High enough that a register of a few polls has some such figures.
@@ -36,12 +36,15 @@ def made_up_arrays(
     free: int = 0,
     absent: bool = False,
     small: bool = False,
+    messy: bool = False,
     shared_lean: float = 0.025 / np.sqrt(0.24),
 ) -> tuple[ElectionArrays, MadeUpTruth]:
     """Simulate an election and the polls of it.
 
     ``free`` parties at the end have no last result; ``absent`` leaves the first party out of the last
-    region; ``small`` marks figures below 10 % as intervals.
+    region; ``small`` marks figures below 10 % as intervals; ``messy`` adds two eras of the first house,
+    two modes, a second population, a jolt, a ramp, and a first region that has voted and been counted. The
+    answers do not know of these: what they need is places in the arrays.
     """
     rng = np.random.default_rng(seed)
     share = rng.dirichlet(np.full(parties, 8.0))
@@ -58,6 +61,8 @@ def made_up_arrays(
         first_fieldwork=first_fieldwork,
         middle_fieldwork=POLLING_DAY - timedelta(days=3 * weeks),
         polling_day=POLLING_DAY,
+        jolts=[JoltDay(POLLING_DAY - timedelta(weeks=weeks // 2), 4.0)] if messy else (),
+        ramp=messy,
     )
     zero = POLLING_DAY.toordinal() - knots.national_day[-1]
     walk = _walk(rng, knots.national_step, (parties,), 0.035 * size)
@@ -120,6 +125,7 @@ def made_up_arrays(
                 np.log(0.02 if anchored else 1 / parties),
             ),
             reference_share=share,
+            lean_size=np.full(parties, shared_lean),
             pilot_share=share,
             free_party=np.arange(parties - free if anchored else 0, parties),
         ),
@@ -129,6 +135,7 @@ def made_up_arrays(
             houses=tuple(f"House {i}" for i in range(houses)),
             poll_of_row=np.arange(polls),
             house_of_row=house_of_row,
+            row_of_part=np.arange(polls),
             national_weight=national_weight,
             region_weight=region_weight,
             region_mix=mix,
@@ -143,9 +150,80 @@ def made_up_arrays(
             small_low=np.maximum(answers[row, cell] - half, 0),
             small_high=answers[row, cell] + half,
         ),
+        leans=plain_leans(house_of_row, houses=houses, parties=parties),
     )
+    if messy:
+        arrays = _with_mess(arrays, voted=float(7 * 2), rng=rng)
     truth = _softmax(base + np.where(standing, 0, -40) + walk[-1] + deviation[-1])
     return arrays, MadeUpTruth(national=turnout @ truth, regional=truth, house=house)
+
+
+def plain_leans(house_of_row: np.ndarray, *, houses: int, parties: int) -> LeanArrays:
+    """Leans of houses alone."""
+    none = np.full(len(house_of_row), houses)
+    return LeanArrays(
+        eras=(),
+        era_house=np.empty(0, dtype=np.int64),
+        modes=(),
+        mode_share=np.empty(0),
+        populations=(),
+        formations=(),
+        formation_members=np.empty((0, parties)),
+        terms_of_row=np.stack([house_of_row, none, none, none], axis=1),
+    )
+
+
+def _with_mess(arrays: ElectionArrays, *, voted: float, rng: np.random.Generator) -> ElectionArrays:
+    """Add eras, modes, a population, an alliance asked as one, and a region that voted early."""
+    rows, knots, parties = arrays.rows, arrays.knots, len(arrays.country.parties)
+    count, houses = len(rows.respondents), len(rows.houses)
+    none = houses + 2 + 2 + 1 + 1
+    terms = np.stack(
+        [
+            rows.house_of_row,
+            np.where(rows.house_of_row == 0, houses + rng.integers(0, 2, size=count), none),
+            houses + 2 + (rows.house_of_row % 2),
+            np.where(rng.random(count) < 0.4, houses + 4, none),
+            np.where(rng.random(count) < 0.3, houses + 5, none),
+        ],
+        axis=1,
+    )
+    leans = LeanArrays(
+        eras=("House 0, first", "House 0, second"),
+        era_house=np.zeros(2, dtype=np.int64),
+        modes=("online", "telephone"),
+        mode_share=np.bincount(np.arange(houses) % 2, minlength=2) / houses,
+        populations=("adults",),
+        formations=("BOTH",),
+        formation_members=(np.arange(parties) < 2)[None].astype(float),
+        terms_of_row=terms,
+    )
+    day = np.array([knots.national_day[-1] - voted])
+    frozen_national = knot_weights(knots.national_day, first_day=day, last_day=day)
+    frozen_region = knot_weights(knots.region_day, first_day=day, last_day=day)
+    split = np.flatnonzero((rows.region_mix[:, 0] > 0) & (rows.region_mix[:, 0] < 1))[::2]
+    first_apart = np.zeros((len(split), rows.region_mix.shape[1]))
+    first_apart[:, 0] = rows.region_mix[split, 0]
+    others = rows.region_mix.copy()
+    others[split, 0] = 0
+    return replace(
+        arrays,
+        leans=leans,
+        rows=replace(
+            rows,
+            row_of_part=np.append(rows.row_of_part, split),
+            national_weight=np.vstack([rows.national_weight, np.repeat(frozen_national, len(split), 0)]),
+            region_weight=np.vstack([rows.region_weight, np.repeat(frozen_region, len(split), 0)]),
+            region_mix=np.vstack([others, first_apart]),
+        ),
+        counted=CountedArrays(
+            region=np.zeros(1, dtype=np.int64),
+            share=rng.dirichlet(np.full(parties, 8.0), size=1),
+            national_weight=frozen_national,
+            region_weight=frozen_region,
+            people=2000.0,
+        ),
+    )
 
 
 def _walk(

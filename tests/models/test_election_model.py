@@ -22,13 +22,17 @@ from models.region_support import own_support
 from models.shared_lean import lean_loadings, lean_scale
 from tests.models.made_up_arrays import made_up_arrays
 
-FULL = {"free": 1, "absent": True, "small": True, "parties": 5, "regions": 3, "polls": 40, "weeks": 20}
 
-
-@pytest.fixture(scope="module")
-def election() -> CompiledElection:
+def _full(*, polls: int = 40, messy: bool = False) -> ElectionArrays:
     """A contest with a new party, an absent party, lumped parties and interval cells."""
-    return compile_election(made_up_arrays(4, **FULL)[0], priors=Priors())
+    return made_up_arrays(
+        4, free=1, absent=True, small=True, parties=5, regions=3, polls=polls, weeks=20, messy=messy
+    )[0]
+
+
+@pytest.fixture(scope="module", params=[False, True], ids=["plain", "messy"])
+def election(request: pytest.FixtureRequest) -> CompiledElection:
+    return compile_election(_full(messy=request.param), priors=Priors())
 
 
 def _points(election: CompiledElection, count: int = 4) -> np.ndarray:
@@ -62,8 +66,9 @@ def test_the_pilot_moves_the_coordinates_and_not_the_density(election: CompiledE
         for name, block, scale in (
             ("national", geometry.national, parameters.drift[0]),
             ("region", geometry.region, parameters.drift[0] * parameters.region_ratio[0]),
-            ("house", geometry.house, parameters.house_scale[0]),
+            ("lean", geometry.lean, parameters.house_scale[0]),
         ):
+            assert block is not None
             pull = election.model[f"{name}_pull"].get_value()
             shift = _shift(scale, block.information, share, pull)
             moved[layout.place(f"{name}_modes")] += shift.ravel()
@@ -97,15 +102,16 @@ def test_relabelling_parties_and_regions_changes_the_density_by_nothing(election
 
 def test_another_weeks_polls_need_no_new_compilation(election: CompiledElection) -> None:
     """More polls go into the compiled density as data; the outcome is that of a density compiled for them."""
-    arrays = made_up_arrays(4, **{**FULL, "polls": 55})[0]
-    anew = compile_log_density(build_election_model(arrays, geometry=build_geometry(arrays), priors=Priors()))
+    arrays = _full(polls=55, messy=election.arrays.counted is not None)
+    geometry = build_geometry(arrays, priors=Priors())
+    anew = compile_log_density(build_election_model(arrays, geometry=geometry, priors=Priors()))
     point = _common_point(election)
     assert _density_of(election, arrays, point) == pytest.approx(anew(point)[0], rel=1e-10)
 
 
 def test_the_prior_can_be_drawn_from_and_gives_plausible_registers() -> None:
     arrays, _ = made_up_arrays(4, parties=4, polls=25, weeks=20)
-    model = build_election_model(arrays, geometry=build_geometry(arrays), priors=Priors())
+    model = build_election_model(arrays, geometry=build_geometry(arrays, priors=Priors()), priors=Priors())
     with model:
         drawn = pm.sample_prior_predictive(60, random_seed=5)
     answers = drawn["prior_predictive"]["answers"].to_numpy()
@@ -120,7 +126,7 @@ def test_the_prior_can_be_drawn_from_and_gives_plausible_registers() -> None:
 def test_modes_drawn_from_the_prior_have_the_scale_of_their_party() -> None:
     arrays, _ = made_up_arrays(4, parties=4, polls=25, weeks=20)
     priors = replace(Priors(), drift_log_sd=1e-9, party_spread=1e-9)
-    model = build_election_model(arrays, geometry=build_geometry(arrays), priors=priors)
+    model = build_election_model(arrays, geometry=build_geometry(arrays, priors=Priors()), priors=priors)
     with model:
         modes = pm.draw(model["national_modes"], draws=400, random_seed=3)
     expected = 0.035 * np.sqrt(SCALE_SHARE / arrays.country.reference_share)
@@ -136,7 +142,7 @@ def test_the_shared_lean_keeps_its_variance_and_correlates_its_ends_as_assumed()
 def test_the_shared_lean_has_one_size_in_points_for_a_party_and_for_any_sum_of_parties() -> None:
     """sd c·√(p(1−p)) of a share, by the delta method over independent log-support errors."""
     share = np.array([0.4, 0.3, 0.2, 0.1])
-    scale = lean_scale(shared_lean=0.05, reference_share=share, house_scale=np.zeros(4), house_count=5)
+    scale = lean_scale(lean_size=0.05, reference_share=share, house_scale=np.zeros(4), house_count=5)
     for members in ([0], [1, 3], [0, 2]):
         inside = np.isin(np.arange(4), members)
         total = share[inside].sum()
@@ -145,7 +151,7 @@ def test_the_shared_lean_has_one_size_in_points_for_a_party_and_for_any_sum_of_p
 
 
 def test_few_houses_add_their_unseen_common_mean_to_the_shared_lean() -> None:
-    lean = lean_scale(shared_lean=0.05, reference_share=0.25, house_scale=0.06, house_count=2)
+    lean = lean_scale(lean_size=0.05, reference_share=0.25, house_scale=0.06, house_count=2)
     assert lean == pytest.approx(np.sqrt(0.05**2 / 0.25 + 0.06**2 / 2))
 
 
@@ -171,15 +177,15 @@ def test_regional_swings_leave_every_partys_national_sum_alone(seed: int, size: 
     ],
 )
 def test_arrays_that_contradict_each_other_are_refused_by_name(change: dict, named: str) -> None:
-    arrays, _ = made_up_arrays(4, **FULL)
+    arrays = _full()
     broken = replace(arrays, rows=replace(arrays.rows, **change))
     with pytest.raises(ModelInputError, match=named):
-        build_election_model(broken, geometry=build_geometry(arrays), priors=Priors())
+        build_election_model(broken, geometry=build_geometry(arrays, priors=Priors()), priors=Priors())
 
 
 def _density_of(election: CompiledElection, arrays: ElectionArrays, point: np.ndarray) -> float:
     """Log density of other arrays through the compiled function, their pulls zero."""
-    other = build_election_model(arrays, geometry=build_geometry(arrays), priors=Priors())
+    other = build_election_model(arrays, geometry=build_geometry(arrays, priors=Priors()), priors=Priors())
     shared = [variable for variable in election.model.data_vars if variable.name in other.named_vars]
     before = [variable.get_value() for variable in shared]
     try:
@@ -193,9 +199,11 @@ def _density_of(election: CompiledElection, arrays: ElectionArrays, point: np.nd
 
 def _common_point(election: CompiledElection) -> np.ndarray:
     """A point with other scales; whatever has a party or a house of its own stays at zero, free of labels."""
-    point = np.zeros(election.density.layout.size)
-    for name, value in (("drift_log", -3.1), ("house_scale_log", -3.0), ("region_ratio_own", 0.4)):
-        point[election.density.layout.place(name)] = value
+    layout = election.density.layout
+    point = np.zeros(layout.size)
+    values = {"drift_log": -3.1, "house_scale_log": -3.0, "region_ratio_own": 0.4, "ramp_log_height": 0.3}
+    for name in values.keys() & set(layout.names):
+        point[layout.place(name)] = values[name]
     return point
 
 
@@ -206,9 +214,6 @@ def _reorder_rows(arrays: ElectionArrays, order: np.ndarray) -> ElectionArrays:
         for name in (
             "poll_of_row",
             "house_of_row",
-            "national_weight",
-            "region_weight",
-            "region_mix",
             "respondents",
             "poll_respondents",
             "weighting_known",
@@ -217,29 +222,40 @@ def _reorder_rows(arrays: ElectionArrays, order: np.ndarray) -> ElectionArrays:
             "used",
         )
     }
-    return replace(arrays, rows=replace(rows, **by_row, small_row=np.argsort(order)[rows.small_row]))
+    place = np.argsort(order)
+    by_row |= {"small_row": place[rows.small_row], "row_of_part": place[rows.row_of_part]}
+    leans = replace(arrays.leans, terms_of_row=arrays.leans.terms_of_row[order])
+    return replace(arrays, rows=replace(rows, **by_row), leans=leans)
 
 
 def _reorder_parties(arrays: ElectionArrays, order: list[int]) -> ElectionArrays:
     country = arrays.country
-    return ElectionArrays(
+    leans = arrays.leans
+    counted = arrays.counted
+    return replace(
+        arrays,
+        leans=replace(leans, formation_members=leans.formation_members[:, order]),
+        counted=counted and replace(counted, share=counted.share[:, order]),
         country=replace(
             country,
             parties=tuple(country.parties[i] for i in order),
             standing=country.standing[:, order],
             start_log_share=country.start_log_share[:, order],
             reference_share=country.reference_share[order],
+            lean_size=country.lean_size[order],
             pilot_share=country.pilot_share[order],
             free_party=np.argsort(order)[country.free_party],
         ),
-        knots=arrays.knots,
         rows=replace(arrays.rows, partition=arrays.rows.partition[:, :, order]),
     )
 
 
 def _reorder_regions(arrays: ElectionArrays, order: list[int]) -> ElectionArrays:
     country = arrays.country
-    return ElectionArrays(
+    counted = arrays.counted
+    return replace(
+        arrays,
+        counted=counted and replace(counted, region=np.argsort(order)[counted.region]),
         country=replace(
             country,
             regions=tuple(country.regions[i] for i in order),
@@ -247,6 +263,5 @@ def _reorder_regions(arrays: ElectionArrays, order: list[int]) -> ElectionArrays
             standing=country.standing[order],
             start_log_share=country.start_log_share[order],
         ),
-        knots=arrays.knots,
         rows=replace(arrays.rows, region_mix=arrays.rows.region_mix[:, order]),
     )
