@@ -102,9 +102,7 @@ class Jolt(_Frozen):
     """A day on which opinion may have jumped: a leader goes, an alliance breaks."""
 
     date: Day = Field(description="the day, like 2031-02-03")
-    weeks: float = Field(
-        default=4.0, gt=0, le=52, description="usual weeks' worth of movement on that day, up to 52"
-    )
+    weeks: float = Field(default=4.0, gt=0, le=52, description="a number of weeks, above 0 and up to 52")
     name: str = Field(default="", description="what happened, as text")
 
 

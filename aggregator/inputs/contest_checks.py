@@ -28,6 +28,8 @@ def check_contest(contest: Contest) -> list[Problem]:
         *_check_alliances(contest),
         *_check_regions(contest),
         *_check_polling_days(contest),
+        *_check_counts(contest),
+        *_check_jolts(contest),
         *_check_silence(contest),
     ]
 
@@ -194,6 +196,40 @@ def _check_polling_days(contest: Contest) -> Iterator[Problem]:
                 f"region[{i}].polling_day", day.isoformat(),
                 f"a day within {WIDEST_PHASES.days} days of the contest's ({contest.polling_day})",
                 "Check month and year.", Rule.POLLING_DAYS, Severity.WARNING,
+            )  # fmt: skip
+
+
+def _check_counts(contest: Contest) -> Iterator[Problem]:
+    for i, region in enumerate(contest.regions, start=1):
+        polling_day = contest.polling_day_of(region.code)
+        if region.counted is not None and region.counted < polling_day:
+            yield _problem(
+                f"region[{i}].counted", region.counted.isoformat(),
+                f"the region's polling day ({polling_day}) or later",
+                "Correct either; leave counted out until the count is published.", Rule.COUNT_DAY,
+            )  # fmt: skip
+
+
+def _check_jolts(contest: Contest) -> Iterator[Problem]:
+    last = contest.last_result.date if contest.last_result is not None else None
+    first_of: dict[date, int] = {}
+    for i, jolt in enumerate(contest.jolts, start=1):
+        key = f"jolt[{i}].date"
+        if last is not None and jolt.date <= last:
+            yield _problem(
+                key, jolt.date.isoformat(), f"a day after the last election ({last})",
+                "Correct the date, or delete the jolt: the last result has it already.", Rule.JOLT,
+            )  # fmt: skip
+        elif jolt.date > contest.last_polling_day:
+            yield _problem(
+                key, jolt.date.isoformat(), f"polling day ({contest.last_polling_day}) or a day before it",
+                "Correct the date, or delete the jolt.", Rule.JOLT,
+            )  # fmt: skip
+        earlier = first_of.setdefault(jolt.date, i)
+        if earlier != i:
+            yield _problem(
+                key, f"{jolt.date}, already the date of jolt[{earlier}]", "one jolt a day",
+                "Make one of the two, with all their weeks.", Rule.JOLT,
             )  # fmt: skip
 
 

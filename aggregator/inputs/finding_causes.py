@@ -10,7 +10,7 @@ from aggregator.inputs.reading_rules import Rule
 from aggregator.problems import Problem, Severity
 
 # Keys of a party, alliance or region on which no code and no figure in another file rests.
-_HARMLESS_KEYS = re.compile(r"(party|alliance|region)\[\d+\]\.(name|colour|electorate|polling_day)")
+_HARMLESS_KEYS = re.compile(r"(party|alliance|region)\[\d+\]\.(name|colour|electorate|polling_day|counted)")
 
 _OF_FIGURES = {
     Rule.TOO_FEW_CODES, Rule.SUM_OFF, Rule.SUM_SHORT, Rule.UNDECIDED, Rule.UNDECIDED_OUTSIDE,
@@ -20,6 +20,7 @@ _OF_FIGURES = {
 _OF_CODES = _OF_FIGURES | {
     Rule.COLUMN_UNKNOWN, Rule.ROW_REGION, Rule.COUNTED_TWICE, Rule.ALLIANCE_PERIOD, Rule.NOT_STANDING,
     Rule.INHERITS, Rule.REGION_WITHOUT_RESULT, Rule.VOTES_NOT_STANDING, Rule.PARTY_WITHOUT_VOTES,
+    Rule.COUNT_REGIONS, Rule.COUNT_PLACES, Rule.PAST_CODE,
 }  # fmt: skip
 
 

@@ -10,7 +10,10 @@ from aggregator.inputs.reading_rules import Rule
 from aggregator.problems import Problem, Severity
 
 # Ways of reporting that a house keeps to, and a register that reaches back beyond the last election.
-_HABITS = {Rule.UNDECIDED_OUTSIDE, Rule.NO_REMAINDER, Rule.WINDOWS_OVERLAP, Rule.EARLIER_CONTEST}
+_HABITS = {
+    Rule.UNDECIDED_OUTSIDE, Rule.NO_REMAINDER, Rule.WINDOWS_OVERLAP, Rule.EARLIER_CONTEST, Rule.HAD_VOTED,
+    Rule.ASKED_THERE_TOO, Rule.MANY_UNDECIDED,
+}  # fmt: skip
 
 
 def gather_habits(problems: Iterable[Problem], *, house_of_row: Mapping[int, str]) -> list[Problem]:

@@ -75,6 +75,7 @@ def _filled_in(name: str, *, today: date) -> str:
         "polling_day": polling_day,
         "silence_day": polling_day - timedelta(days=7),
         "alliance_day": today - timedelta(weeks=30),
+        "jolt_day": today - timedelta(days=30),
         "last_election": polling_day - timedelta(weeks=4 * 52),
     }
     days |= {f"d{n}": today - timedelta(days=int(n)) for n in re.findall(r"\$d([0-9]+)", text)}

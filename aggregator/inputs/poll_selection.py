@@ -69,20 +69,22 @@ def check_span(row: PollRow, *, contest: Contest, file: str) -> list[Problem]:
                 "before and after an election are not one poll.", Rule.EARLIER_CONTEST,
             )
         )  # fmt: skip
-    if row.use is Use.YES and row.end > polling_day:
+    if row.use is Use.YES and row.end > contest.last_polling_day:
         problems.append(
             Problem(
                 file, row.row, "use", f"yes for fieldwork that ended on {row.end}",
-                f"fieldwork that ended by polling day ({polling_day})",
+                f"fieldwork that ended by polling day ({contest.last_polling_day})",
                 "Correct the date, or set use = no and say why.", Rule.USED_ON_POLLING_DAY,
             )
         )  # fmt: skip
-    elif row.use is Use.YES and row.end == polling_day:
+    elif row.use is Use.YES and row.end >= polling_day:
+        late = row.end > polling_day
+        when, what = (f"on {row.end}, after", ", as of polling day") if late else ("on", "")
         problems.append(
             Problem(
-                file, row.row, "use", f"yes for fieldwork that ended on polling day ({polling_day})",
-                "fieldwork that ended before", "It enters as the desk says so.", Rule.USED_ON_POLLING_DAY,
-                Severity.WARNING,
+                file, row.row, "use", f"yes for fieldwork that ended {when} polling day ({polling_day})",
+                "fieldwork that ended before", f"It enters as the desk says so{what}.",
+                Rule.USED_ON_POLLING_DAY, Severity.WARNING,
             )
         )  # fmt: skip
     return problems

@@ -42,3 +42,6 @@ REGISTER_NEEDED = ("house", "end", "sample")
 REGISTER_DATES = ("start", "end", "published", "status_date")
 
 RESULT_COLUMNS = ("seat", "name", "region")
+
+RECORD_NEEDED = ("election", "code", "polled", "result")
+RECORD_COLUMNS = (*RECORD_NEEDED, "source", "note")

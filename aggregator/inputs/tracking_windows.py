@@ -3,13 +3,16 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from datetime import date, timedelta
+from itertools import combinations
 
 from aggregator.inputs.poll_breakdowns import rows_by_poll
 from aggregator.inputs.poll_row import PollRow
 from aggregator.inputs.reading_rules import Rule
 from aggregator.problems import Problem, Severity
+
+type _Poll = list[PollRow]
 
 
 def check_windows(rows: Sequence[PollRow], *, file: str) -> tuple[dict[str, float], list[Problem]]:
@@ -27,12 +30,9 @@ def check_windows(rows: Sequence[PollRow], *, file: str) -> tuple[dict[str, floa
     -------
     Part kept (0–1) by poll, polls without overlap left out, and a finding for each overlap.
     """
-    series: dict[tuple[object, ...], list[list[PollRow]]] = defaultdict(list)
+    series: dict[tuple[object, ...], list[_Poll]] = defaultdict(list)
     for group in rows_by_poll(rows).values():
-        first = group[0]
-        regions = frozenset(r for row in group for r in row.regions)
-        label = (first.house, regions, first.method, first.mode, first.population, first.sponsor)
-        series[label].append(group)
+        series[*_labels(group), _regions(group)].append(group)
     kept: dict[str, float] = {}
     problems: list[Problem] = []
     for groups in series.values():
@@ -47,6 +47,18 @@ def check_windows(rows: Sequence[PollRow], *, file: str) -> tuple[dict[str, floa
                 problems.append(_overlap(first, taken[shared[-1]], len(shared), len(days), file))
             taken |= {d: first for d in days if d not in taken}
     return kept, problems
+
+
+def _labels(group: _Poll) -> tuple[object, ...]:
+    """List what polls of one series have in common beside their regions."""
+    first = group[0]
+    # The rows of a poll agree on the other labels, not on who paid for each.
+    sponsors = frozenset(row.sponsor for row in group)
+    return first.house, first.method, first.mode, first.population, sponsors
+
+
+def _regions(group: _Poll) -> frozenset[str]:
+    return frozenset(r for row in group for r in row.regions)
 
 
 def _days(row: PollRow) -> list[date]:
@@ -69,3 +81,66 @@ def _overlap(row: PollRow, earlier: PollRow, shared: int, days: int, file: str) 
         "The respondents of the shared days are counted in the earlier poll only.",
         Rule.WINDOWS_OVERLAP, Severity.WARNING,
     )  # fmt: skip
+
+
+def check_listed_twice(rows: Sequence[PollRow], *, file: str) -> list[Problem]:
+    """Find polls that stand in the register a second time under another identifier.
+
+    Same house, days, sample and figures in the same regions are one poll, whatever sponsor, mode, method
+    or population the two listings give: nothing is left of the second one.
+
+    Parameters
+    ----------
+    rows
+        All rows of polls that enter, also a national row whose regional rows enter in its place.
+    """
+    places: dict[tuple[object, ...], list[PollRow]] = defaultdict(list)
+    for row in sorted(rows, key=lambda r: r.row):
+        places[row.house, row.start, row.end, row.sample, row.regions].append(row)
+    problems, said = [], set[str]()
+    for group in places.values():
+        for earlier, later in combinations(group, 2):
+            if later.poll != earlier.poll and later.poll not in said and _same_figures(earlier, later):
+                said.add(later.poll)
+                problems.append(
+                    Problem(
+                        file, later.row, None, f"house, days, sample and figures of row {earlier.row} "
+                        f"({earlier.poll})", "interviews of its own",
+                        "If it is that poll, delete this row or set use = no; if other people answered, "
+                        "enter both as one poll, their samples added.", Rule.LISTED_TWICE,
+                    )
+                )  # fmt: skip
+    return problems
+
+
+def _same_figures(one: PollRow, other: PollRow) -> bool:
+    """Tell whether two rows agree in every figure both give, and one gives no code the other lacks."""
+    fewer, more = sorted((one.shares, other.shares), key=len)
+    return len(fewer) > 1 and fewer.items() <= more.items()
+
+
+def check_asked_there_too(rows: Sequence[PollRow], *, file: str) -> Iterator[Problem]:
+    """Warn of a poll in some regions on days on which another poll of its series asked there as well.
+
+    A house's regional figures are often those of its national poll: then these people count twice, once
+    under each identifier. Only the desk can know.
+    """
+    series: dict[tuple[object, ...], list[_Poll]] = defaultdict(list)
+    for group in rows_by_poll(rows).values():
+        series[_labels(group)].append(group)
+    for groups in series.values():
+        said = set[str]()
+        # The poll in fewer regions is the one that may be a part of the other.
+        by_size = sorted(groups, key=lambda g: (-len(_regions(g)), g[0].end, g[0].poll))
+        for wide, narrow in combinations(by_size, 2):
+            first, other = narrow[0], wide[0]
+            both = [r for r in first.regions if r in _regions(wide)]
+            start, end = max(first.start, other.start), min(first.end, other.end)
+            if both and start <= end and _regions(narrow) != _regions(wide) and first.poll not in said:
+                said.add(first.poll)
+                yield Problem(
+                    file, first.row, "poll", f"{first.poll} in {'+'.join(both)}, where {other.poll} (row "
+                    f"{other.row}) asked from {start} to {end} too", "respondents that are counted once",
+                    "Both count in full; if these people are in both, give the rows one identifier, or set "
+                    "use = no.", Rule.ASKED_THERE_TOO, Severity.WARNING,
+                )  # fmt: skip

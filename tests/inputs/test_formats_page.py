@@ -13,6 +13,7 @@ from aggregator.inputs.contest import (
     Contest,
     Counting,
     CountingRule,
+    Jolt,
     LastResult,
     ModelOverrides,
     Party,
@@ -23,6 +24,8 @@ from aggregator.inputs.contest import (
 from aggregator.inputs.contest_file import known_keys
 from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.inputs.register_columns import (
+    RECORD_COLUMNS,
+    RECORD_NEEDED,
     REGISTER_COLUMNS,
     REGISTER_NEEDED,
     RESULT_COLUMNS,
@@ -30,6 +33,7 @@ from aggregator.inputs.register_columns import (
     Status,
     Use,
 )
+from tests.inputs.desk_folder import read, write_folder
 
 PAGE = (Path(__file__).parents[2] / "docs" / "formats.md").read_text(encoding="utf-8")
 INPUT_HALF = PAGE.split("## What a release holds")[0]
@@ -40,6 +44,7 @@ TABLES = {
     "`[[alliance]]`": Alliance,
     "`[[region]]`": Region,
     "`[last_result]`": LastResult,
+    "`[[jolt]]`": Jolt,
     "`[counting]`": Counting,
     "`[release]`": ReleaseRules,
     "`[[release.silence]]`": Silence,
@@ -75,8 +80,23 @@ def test_every_column_of_the_register_is_in_its_table():
     assert {c for c, needed in documented.items() if needed == "yes"} == set(REGISTER_NEEDED)
 
 
-def test_every_column_of_the_last_result_is_in_its_table():
-    assert [c for c in schema_under("### result_last.csv") if c != "code"] == list(RESULT_COLUMNS)
+@pytest.mark.parametrize("heading", ["### result_last.csv", "### result_counted.csv"])
+def test_every_column_of_a_result_is_in_its_table(heading):
+    assert [c for c in schema_under(heading) if c != "code"] == list(RESULT_COLUMNS)
+
+
+def test_every_column_of_the_record_is_in_its_table():
+    documented = schema_under("### past_errors.csv")
+    assert list(documented) == list(RECORD_COLUMNS)
+    assert {c for c, needed in documented.items() if needed == "yes"} == set(RECORD_NEEDED)
+
+
+def test_the_example_of_a_record_is_read_as_it_says(tmp_path):
+    """The party that is no more is named in the page, and warned about."""
+    text = re.search(r"^```csv\n(election,.*?)^```$", INPUT_HALF, re.MULTILINE | re.DOTALL)
+    record = read(write_folder(tmp_path / "c", past_errors_csv=text[1]))
+    assert list(record.past_errors["code"]) == ["HU", "UP", "RF"]
+    assert [p.rule.value for p in record.warnings] == ["R88"]
 
 
 @pytest.mark.parametrize("words", [Question, Status, Use, CountingRule])

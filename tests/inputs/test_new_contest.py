@@ -16,6 +16,7 @@ from aggregator.inputs.contest import (
     Alliance,
     Contest,
     Counting,
+    Jolt,
     LastResult,
     ModelOverrides,
     Party,
@@ -54,7 +55,7 @@ def test_a_new_contest_still_reads_when_its_polling_day_has_passed(tmp_path):
 def test_every_key_is_explained(tmp_path):
     text = new_contest(tmp_path / "lakes", today=TODAY)[0].read_text(encoding="utf-8")
     for model in (
-        Contest, Party, Alliance, Region, LastResult, Counting, ReleaseRules, Silence, ModelOverrides,
+        Contest, Party, Alliance, Region, LastResult, Jolt, Counting, ReleaseRules, Silence, ModelOverrides,
     ):  # fmt: skip
         for key in known_keys(model):
             assert re.search(rf"\b{key}\b", text), key
