@@ -99,6 +99,7 @@ def refresh(
         seats = count_seats(
             fit.draws,
             last_result=inputs.last_result,
+            counted_result=inputs.counted_result,
             contest=inputs.contest,
             rng=np.random.default_rng([fit.settings.seed, SEATS_STREAM]),
         )

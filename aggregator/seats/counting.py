@@ -20,6 +20,7 @@ import xarray as xr
 from aggregator.errors import UsageError
 from aggregator.inputs.contest import Contest, CountingRule
 from aggregator.seats.baseline import BaselinePriors, build_baseline
+from aggregator.seats.counted_seats import find_counted_seats, put_counts_in
 from aggregator.seats.local_swing import LocalPriors, draw_local_strength, region_starts
 from aggregator.seats.plurality import count_by_plurality
 from aggregator.seats.recentring import solve_multipliers
@@ -35,6 +36,7 @@ def count_seats(
     last_result: pd.DataFrame,
     contest: Contest,
     rng: np.random.Generator,
+    counted_result: pd.DataFrame | None = None,
     baseline_priors: BaselinePriors | None = None,
     local_priors: LocalPriors | None = None,
 ) -> xr.Dataset:
@@ -51,6 +53,9 @@ def count_seats(
         The contest: its parties, regions and counting rule.
     rng
         Source of randomness for slopes, local noise and lots.
+    counted_result
+        Votes of the regions that have been counted, in the same form; their seats are given, from their
+        region's polling day on.
     baseline_priors, local_priors
         Scales of the local swing.
 
@@ -80,12 +85,17 @@ def count_seats(
     n_draws = support.shape[0]
     local = draw_local_strength(baseline, draws=n_draws, rng=rng, priors=local_priors)
     start = region_starts(baseline)
+    done = find_counted_seats(counted_result, baseline=baseline)
+    local, weight = put_counts_in(local, weight=baseline["weight"].to_numpy(), counted=done)
     recentred = solve_multipliers(
         local.strength,
         support=_with_region_deviation(support, local.region_deviation),
-        weight=baseline["weight"].to_numpy().astype(np.float32),
+        weight=weight.astype(np.float32),
         region_start=start,
     )
+    for region in done.region:
+        # A count is no draw: no last digit of a re-centring may turn a narrow seat.
+        recentred.multiplier[:, _since_voting(draws, baseline, contest, region), region] = 1
     votes = SeatVotes(
         strength=local.strength,
         multiplier=recentred.multiplier,
@@ -118,6 +128,15 @@ def count_seats(
         .reindex({PARTY: draws[PARTY]})
         .transpose(CHAIN, DRAW, DATE, SEAT, PARTY)
     )
+
+
+def _since_voting(
+    draws: xr.Dataset, baseline: xr.Dataset, contest: Contest, region: int
+) -> npt.NDArray[np.bool_]:
+    """Whether a region had voted, by date, polling day last."""
+    name = str(baseline["seat_region"].to_numpy()[region_starts(baseline)[region]])
+    voted = draws[DATE].to_numpy() >= np.datetime64(contest.polling_day_of(name))
+    return np.append(voted, True)
 
 
 def _support_of_seat_regions(draws: xr.Dataset, baseline: xr.Dataset) -> npt.NDArray[np.float32]:

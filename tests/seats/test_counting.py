@@ -173,3 +173,41 @@ def test_support_for_a_party_where_it_does_not_stand_is_refused() -> None:
     draws["support"].loc[{"region": "SKERRY", "party": "HED"}] = 0.1
     with pytest.raises(ValueError, match="where it does not stand"):
         count(draws)
+
+
+def test_counted_seats_are_the_count_from_polling_day_on_and_estimates_before() -> None:
+    draws, result, contest = made_up_draws(draws=60, dates=4), made_up_last_result(), made_up_contest()
+    parties = list(draws["party"].to_numpy())
+    counted = result[result["region"] == "DOWNS"].copy()
+    votes = counted.reindex(columns=parties).fillna(0.0).to_numpy()
+    # A count unlike the last result: every seat's votes handed on to the next seat, one party doubled.
+    counted[parties] = np.roll(votes, 1, axis=0) * np.where(np.array(parties) == "HED", 2, 1)
+    share = xr.DataArray((counted[parties].sum() / counted[parties].sum().sum()).to_numpy(), dims="party")
+    voted = draws["date"].to_numpy()[2]
+    known = (draws["region"] == "DOWNS") & (draws["date"] >= voted)
+    draws["support"] = xr.where(known, share, draws["support"])
+    draws["support_polling_day"] = xr.where(draws["region"] == "DOWNS", share, draws["support_polling_day"])
+    early = pd.Timestamp(voted).date()
+    regions = [
+        region.model_copy(update={"polling_day": early}) if region.code == "DOWNS" else region
+        for region in contest.regions
+    ]
+    seats = count_seats(
+        draws,
+        last_result=result,
+        counted_result=counted,
+        contest=contest.model_copy(update={"regions": tuple(regions)}),
+        rng=np.random.default_rng(1),
+    )
+    winners = counted.set_index("seat")[parties].idxmax(axis=1)
+    for seat, party in winners.items():
+        assert seats["seat_chance"].sel(seat=seat, party=party) == 1
+    np.testing.assert_allclose(
+        seats["seat_share"].sel(seat=winners.index.to_numpy()).transpose("seat", "party"),
+        counted[parties].div(counted[parties].sum(axis=1), axis=0),
+        atol=1e-5,
+    )
+    assert (seats["seats"].sum("party") == len(result)).all()
+    # HED was doubled by the count: before it, the draws did not know.
+    jump = seats["seats"].sel(party="HED").mean(("chain", "draw")).diff("date")
+    assert jump.sel(date=voted) > 1
