@@ -146,7 +146,7 @@ def _sample(
         arrays=arrays,
         eras=eras,
         chains=settings.chains,
-        calendar=_calendar(inputs),
+        calendar=release_calendar(inputs),
         shared_lean=contest.model.shared_lean,
         priors=election.priors,
         rng=np.random.default_rng(streams[OUTPUT_STREAM]),
@@ -172,7 +172,8 @@ def _sample(
     )
 
 
-def _calendar(inputs: DeskInputs) -> Calendar:
+def release_calendar(inputs: DeskInputs) -> Calendar:
+    """Lay out the days a contest's release speaks of."""
     contest = inputs.contest
     return Calendar(
         dates=series_dates(first_fieldwork=inputs.polls["start"].min().date(), run_date=inputs.run_date),

@@ -27,18 +27,19 @@ import pytest
 import xarray as xr
 from threadpoolctl import threadpool_limits
 
+from aggregator.estimate.compiled_election import PULLS
+from aggregator.estimate.fit import release_calendar
 from aggregator.estimate.log_density import LogDensity, compile_log_density
-from aggregator.estimate.model_arrays import build_arrays
+from aggregator.estimate.model_arrays import ContestArrays, build_arrays
 from aggregator.estimate.parameters import Parameters, read_parameters
 from aggregator.estimate.pilot import centre_on_pilot
 from aggregator.estimate.poll_fit import pareto_k_by_poll
 from aggregator.estimate.sampler_checks import Convergence, check_convergence
 from aggregator.estimate.sampling import ChainPlan, sample_chains
-from aggregator.estimate.support import series_dates, summarise_support
+from aggregator.estimate.support import summarise_support
 from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.settings import RunSettings
-from models.arrays import ElectionArrays
 from models.block_geometry import Geometry, build_geometry
 from models.election_model import build_election_model
 from models.priors import Priors
@@ -60,7 +61,6 @@ TEXTBOOK_CHAINS, TEXTBOOK_TUNE, TEXTBOOK_DRAWS = 2, 500, 500
 # After this long the reference is stopped and judged by the draws it has.
 TEXTBOOK_SECONDS = 480
 FEWEST_DRAWS = 50
-PULLS = ("national_pull", "region_pull", "house_pull")
 
 
 class Stopwatch:
@@ -81,23 +81,24 @@ def cpu_seconds() -> float:
     return sum(u.ru_utime + u.ru_stime for u in used)
 
 
-def demo() -> tuple[DeskInputs, ElectionArrays, Geometry]:
+def demo() -> tuple[DeskInputs, ContestArrays, Geometry]:
     inputs = read_contest_folder(DEMO, today=date.today())
-    arrays = build_arrays(inputs)
-    return inputs, arrays, build_geometry(arrays)
+    contest = build_arrays(inputs, priors=PRIORS)
+    return inputs, contest, build_geometry(contest.arrays, priors=PRIORS)
 
 
 def published(
-    parameters: Parameters, *, inputs: DeskInputs, arrays: ElectionArrays, chains: int
+    parameters: Parameters, *, inputs: DeskInputs, contest: ContestArrays, chains: int
 ) -> xr.Dataset:
     """All published quantities, without the regional part of the shared lean."""
     return summarise_support(
         parameters,
-        arrays=arrays,
+        arrays=contest.arrays,
+        eras=contest.eras,
         chains=chains,
-        dates=series_dates(first_fieldwork=inputs.polls["start"].min().date(), run_date=inputs.run_date),
-        polling_day=inputs.contest.polling_day,
-        shared_lean=0.0,
+        calendar=release_calendar(inputs),
+        shared_lean=False,
+        priors=PRIORS,
         rng=np.random.default_rng(1),
     )
 
@@ -110,7 +111,8 @@ def microseconds_per_evaluation(density: LogDensity, point: np.ndarray) -> float
 def compile_demo() -> None:
     """Print the seconds of compiling the demo's density, first call included; run in a process of its own."""
     with threadpool_limits(1):
-        _, arrays, geometry = demo()
+        _, contest, geometry = demo()
+        arrays = contest.arrays
         model = build_election_model(arrays, geometry=geometry, priors=PRIORS)
         clock = Stopwatch()
         density = compile_log_density(model)
@@ -140,7 +142,8 @@ def in_process(call: str, *, environment: dict[str, str]) -> str:
 
 def sample_textbook(folder: str) -> None:
     """Run the reference and leave its draws in a folder; run in a process of its own."""
-    _, arrays, _ = demo()
+    _, contest, _ = demo()
+    arrays = contest.arrays
     signal.signal(signal.SIGALRM, signal.default_int_handler)
     signal.alarm(TEXTBOOK_SECONDS)
     start, processor = perf_counter(), cpu_seconds()
@@ -180,7 +183,8 @@ def fit_demo() -> tuple[dict[str, float], dict[str, float], Convergence]:
     settings = RunSettings()
     clock = Stopwatch()
     with threadpool_limits(1):
-        inputs, arrays, geometry = demo()
+        inputs, contest, geometry = demo()
+        arrays = contest.arrays
         clock.lap("read and arrange")
         processor = cpu_seconds()
         model = build_election_model(arrays, geometry=geometry, priors=PRIORS)
@@ -206,7 +210,7 @@ def fit_demo() -> tuple[dict[str, float], dict[str, float], Convergence]:
             geometry=geometry,
             priors=PRIORS,
         )
-        draws = published(parameters, inputs=inputs, arrays=arrays, chains=settings.chains)
+        draws = published(parameters, inputs=inputs, contest=contest, chains=settings.chains)
         clock.lap("summary")
         check_convergence(draws.drop_vars(["kappa", "rho"]), divergences=0)
         clock.lap("checks")
@@ -261,7 +265,8 @@ def test_seconds_of_the_fit_by_stage_and_effective_draws_per_second(tmp_path: Pa
     print(f"{facts['microseconds per evaluation']:.0f} microseconds per evaluation of density and gradient")
 
     in_process(f"sample_textbook({str(tmp_path)!r})", environment={})
-    inputs, arrays, _ = demo()
+    inputs, contest, _ = demo()
+    arrays = contest.arrays
     reference = json.loads((tmp_path / "facts.json").read_text())
     print(
         f"pm.sample() on the textbook model: {TEXTBOOK_CHAINS} x ({TEXTBOOK_TUNE} + {TEXTBOOK_DRAWS}) draws, "
@@ -271,7 +276,7 @@ def test_seconds_of_the_fit_by_stage_and_effective_draws_per_second(tmp_path: Pa
         print(pd.Series(column(facts, found)).to_string(float_format=lambda x: f"{x:.4g}"))
         return
     parameters = natural_parameters(xr.load_dataset(tmp_path / "draws.nc", engine="h5netcdf"))
-    draws = published(parameters, inputs=inputs, arrays=arrays, chains=TEXTBOOK_CHAINS)
+    draws = published(parameters, inputs=inputs, contest=contest, chains=TEXTBOOK_CHAINS)
     reference_found = check_convergence(draws[PUBLISHED], divergences=reference["divergences"])
     table = pd.DataFrame({"ours": column(facts, found), "pm.sample()": column(reference, reference_found)})
     table["ours / pm.sample()"] = table["ours"] / table["pm.sample()"]

@@ -25,6 +25,7 @@ CASES = {
     "no last result": {"anchored": False},
     "one region": {"regions": 1, "free": 1},
     "one house": {"houses": 1},
+    "messy": {"messy": True, "free": 1},
 }
 PRIORS = Priors()
 Point = dict[str, np.ndarray]
@@ -42,12 +43,12 @@ def small_election(**case: int | bool) -> ElectionArrays:
 
 
 def random_point(model: pm.Model, rng: np.random.Generator) -> Point:
-    """Standard normals without the part that centring over regions and houses takes away."""
+    """Standard normals without the part that centring over regions, houses, eras or modes takes away."""
     point = {
         name: np.asarray(value + 0.5 * rng.normal(size=np.shape(value)))
         for name, value in sorted(model.initial_point().items())
     }
-    for name in ("region_steps", "house_effects"):
+    for name in ("region_steps", "house_effects", "era_effects", "mode_effects"):
         if name in point:
             point[name] -= point[name].mean(axis=-2, keepdims=True)
     return point
@@ -69,20 +70,20 @@ def in_natural_modes(model: pm.Model) -> pm.Model:
     return remove_value_transforms(model)
 
 
-def modes_at(natural: Point, *, arrays: ElectionArrays, geometry: Geometry, free_start: np.ndarray) -> Point:
+def modes_at(natural: Point, *, arrays: ElectionArrays, geometry: Geometry) -> Point:
     """The election model's modes at the textbook model's natural parameters."""
-    walk = natural["walk"] - natural["walk"][0]
-    modes = {"national_modes": np.linalg.solve(geometry.national.basis, walk[1:])}
+
+    def unit_steps(walk: np.ndarray, level: str) -> np.ndarray:
+        step, jolt, up = (getattr(arrays.knots, f"{level}_{part}") for part in ("step", "jolt", "ramp"))
+        time = step * np.exp(natural["ramp"] * up) + jolt
+        return np.diff(walk, axis=0) / np.sqrt(time).reshape(-1, *[1] * (walk.ndim - 1))
+
+    modes = {"national_modes": geometry.national.basis.T @ unit_steps(natural["walk"], "national")}
     if geometry.region is not None:
-        deviation = natural["region"][1:] - free_start
-        contrast = np.linalg.pinv(geometry.region_contrast) @ deviation
-        modes["region_modes"] = np.linalg.solve(
-            geometry.region.basis, contrast.reshape(-1, len(arrays.country.parties))
-        )
-    if geometry.house is not None:
-        modes["house_modes"] = np.linalg.lstsq(
-            geometry.house_contrast @ geometry.house.basis, natural["house"], rcond=None
-        )[0]
+        contrast = np.linalg.pinv(geometry.region_contrast) @ unit_steps(natural["region"], "region")
+        modes["region_modes"] = geometry.region.basis.T @ contrast.reshape(-1, len(arrays.country.parties))
+    if geometry.lean is not None:
+        modes["lean_modes"] = np.linalg.lstsq(geometry.lean.basis, natural["terms"][:-1], rcond=None)[0]
     return modes
 
 
@@ -96,7 +97,7 @@ def free_starts_at(point: Point, *, arrays: ElectionArrays) -> Point:
 @pytest.mark.parametrize("case", CASES)
 def test_textbook_model_has_the_same_posterior(case: str) -> None:
     arrays = small_election(**CASES[case])
-    geometry = build_geometry(arrays)
+    geometry = build_geometry(arrays, priors=PRIORS)
     ours = in_natural_modes(build_election_model(arrays, geometry=geometry, priors=PRIORS))
     textbook = build_textbook_model(arrays, priors=PRIORS)
     our_values = [ours.rvs_to_values[variable] for variable in ours.free_RVs]
@@ -109,18 +110,19 @@ def test_textbook_model_has_the_same_posterior(case: str) -> None:
         density, *values = textbook_at(point)
         natural = dict(zip(NATURAL, values, strict=True))
         at = point | free_starts_at(point, arrays=arrays)
-        at |= modes_at(natural, arrays=arrays, geometry=geometry, free_start=natural["region"][0])
+        at |= modes_at(natural, arrays=arrays, geometry=geometry)
         # Ours is a density of modes in units of log support, the textbook's of standard normals.
         scales = {
             "national_modes": natural["drift"],
             "region_modes": natural["drift"] * natural["region_ratio"],
-            "house_modes": natural["house_scale"],
+            "lean_modes": natural["house_scale"],
         }
         jacobian = sum(at[name].shape[0] * np.log(s).sum() for name, s in scales.items() if name in at)
         gaps.append(density - float(our_density(*[at[v.name] for v in ours.free_RVs])) - jacobian)
     # What remains are the standard normals that centring removes: a constant.
     parties = len(arrays.country.parties)
-    removed = parties * ((len(arrays.knots.region_day) - 1) * (geometry.region is not None) + 1)
+    centred = 1 + len(set(arrays.leans.era_house)) + (len(arrays.leans.modes) > 0)
+    removed = parties * ((len(arrays.knots.region_day) - 1) * (geometry.region is not None) + centred)
     assert gaps == pytest.approx([-0.5 * np.log(2 * np.pi) * removed] * 3, abs=1e-6)
 
 

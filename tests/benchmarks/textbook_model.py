@@ -23,10 +23,11 @@ NATURAL = (
     "house_scale",
     "lean_scale",
     "region_ratio",
+    "ramp",
     "walk",
     "region",
     "lean",
-    "house",
+    "terms",
     "kappa",
     "rho",
 )
@@ -34,7 +35,7 @@ NATURAL = (
 
 def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
     """The model of ``models.election_model`` with its shared lean; natural parameters are deterministics."""
-    country, knots, rows = arrays.country, arrays.knots, arrays.rows
+    country, knots, rows, leans = arrays.country, arrays.knots, arrays.rows, arrays.leans
     P, R, H = len(country.parties), len(country.regions), len(rows.houses)
     K, L = len(knots.national_day), len(knots.region_day)
     with pm.Model() as model:
@@ -51,7 +52,7 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
 
         # The error all polls share, turning from the last result to polling day
         lean_scale = pm.Deterministic(
-            "lean_scale", pt.sqrt(priors.shared_lean**2 / country.reference_share + house_scale**2 / H)
+            "lean_scale", pt.sqrt(country.lean_size**2 / country.reference_share + house_scale**2 / H)
         )
         ends = pm.Normal("shared_lean_ends", 0, 1, shape=(2, P))
 
@@ -72,9 +73,15 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
                 own = pm.Normal("free_region_baseline_own", 0, 1, shape=(R, len(free)))
                 region_start = pt.set_subtensor(region_start[:, free], priors.free_region_log_sd * own)
 
+        # Opinion time: weeks, those that jolts add, and a ramp towards polling day
+        ramp = pm.Normal("ramp_log_height", 0, priors.ramp_log_sd) if knots.has_ramp else pt.zeros(())
+        pm.Deterministic("ramp", ramp)
+        national_time = knots.national_step * pt.exp(ramp * knots.national_ramp) + knots.national_jolt
+        region_time = knots.region_step * pt.exp(ramp * knots.region_ramp) + knots.region_jolt
+
         # National walk
         steps = pm.Normal("national_steps", 0, 1, shape=(K - 1, P))
-        walk = pt.cumsum(np.sqrt(knots.national_step)[:, None] * steps, axis=0) * drift
+        walk = pt.cumsum(pt.sqrt(national_time)[:, None] * steps, axis=0) * drift
         walk = pm.Deterministic("walk", start + pt.concatenate([pt.zeros((1, P)), walk]))
 
         # Regional walks, their turnout-weighted mean zero
@@ -86,14 +93,30 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
             ratio = priors.region_ratio_most * pm.math.sigmoid(logit)
             steps = pm.Normal("region_steps", 0, 1, shape=(L - 1, R, P))
             steps = steps - (country.turnout[:, None] * steps).sum(axis=1, keepdims=True)
-            paths = pt.cumsum(np.sqrt(knots.region_step)[:, None, None] * steps, axis=0) * drift * ratio
+            paths = pt.cumsum(pt.sqrt(region_time)[:, None, None] * steps, axis=0) * drift * ratio
             region = pt.concatenate([pt.zeros((1, R, P)), paths])
         pm.Deterministic("region_ratio", ratio)
         region = pm.Deterministic("region", region + region_start)
 
-        # House effects, summing to zero over houses
+        # House effects sum to zero over houses, eras within their house, modes over houses by their share
         effects = pm.Normal("house_effects", 0, 1, shape=(H, P))
-        house = pm.Deterministic("house", house_scale * (effects - effects.mean(axis=0)))
+        parts = [effects - effects.mean(axis=0)]
+        if len(leans.eras):
+            effects = pm.Normal("era_effects", 0, 1, shape=(len(leans.eras), P))
+            same_house = leans.era_house[:, None] == leans.era_house
+            within = same_house / same_house.sum(axis=1, keepdims=True)
+            parts.append(priors.era_part * (effects - pt.dot(within, effects)))
+        if len(leans.modes):
+            effects = pm.Normal("mode_effects", 0, 1, shape=(len(leans.modes), P))
+            parts.append(priors.mode_part * (effects - pt.dot(leans.mode_share, effects)))
+        if len(leans.populations):
+            effects = pm.Normal("population_effects", 0, 1, shape=(len(leans.populations), P))
+            parts.append(priors.population_part * effects)
+        if len(leans.formations):
+            effects = pm.Normal("formation_effects", 0, 1, shape=(len(leans.formations), P))
+            parts.append(priors.formation_part * effects)
+        terms = pm.Deterministic("terms", house_scale * pt.concatenate([*parts, pt.zeros((1, P))]))
+        row_lean = terms[leans.terms_of_row].sum(axis=1)
 
         # Design effects
         loss = pm.Normal(
@@ -106,7 +129,7 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
         rho = pm.Deterministic("rho", pt.exp(floor))
 
         # Expected shares: log support moves in straight lines nationally, support itself by region
-        seen = pt.dot(rows.national_weight, walk + lean) + house[rows.house_of_row]
+        seen = pt.dot(rows.national_weight, walk + lean) + row_lean[rows.row_of_part]
         # Regional swings leave a region's sum at one and a party's national sum as it was at the start
         start_share = country.standing * np.exp(country.start_log_share)
         before = (country.turnout[:, None] * start_share / start_share.sum(axis=1, keepdims=True)).sum(axis=0)
@@ -114,10 +137,12 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
         for _ in range(2):
             own = own / own.sum(axis=2, keepdims=True)
             own = own * (before / (country.turnout[:, None] * own).sum(axis=1))[:, None, :]
-        own = pt.dot(rows.region_weight, own.reshape((L, R * P))).reshape((-1, R, P))
+        own_at_knots = own.reshape((L, R * P))
+        own = pt.dot(rows.region_weight, own_at_knots).reshape((-1, R, P))
         support = pt.exp(seen)[:, None, :] * own
         support = support / support.sum(axis=2, keepdims=True)
-        expected = (rows.region_mix[:, :, None] * support).sum(axis=1)
+        part_of_row = (np.arange(len(rows.respondents))[:, None] == rows.row_of_part).astype(float)
+        expected = pt.dot(part_of_row, (rows.region_mix[:, :, None] * support).sum(axis=1))
         cells = (rows.partition * expected[:, None, :]).sum(axis=2)
         cells = cells * rows.used / (cells * rows.used).sum(axis=1, keepdims=True)
 
@@ -143,6 +168,17 @@ def build_textbook_model(arrays: ElectionArrays, *, priors: Priors) -> pm.Model:
             b = precision[i][:, None] - a
             terms = small.log_count_weight + betaln(y + a, n[i][:, None] - y + b) - betaln(a, b)
             pm.Potential("small_answers", pt.logsumexp(terms, axis=1))
+
+        # Regions that have been counted, as a sample of people without any lean
+        counted = arrays.counted
+        if counted is not None:
+            own = pt.dot(counted.region_weight, own_at_knots).reshape((-1, R, P))
+            true = (
+                pt.exp(pt.dot(counted.national_weight, walk))
+                * own[np.arange(len(counted.region)), counted.region]
+            )
+            log_share = pt.log(pt.maximum(true / true.sum(axis=1, keepdims=True), 1e-12))
+            pm.Potential("counts", counted.people * (counted.share * log_share).sum(axis=1))
     return model
 
 

@@ -21,6 +21,7 @@ from aggregator.estimate.knots import build_knots, knot_weights
 from aggregator.estimate.sampling import ChainPlan
 from models.arrays import CountryArrays, ElectionArrays, RowArrays
 from models.priors import Priors
+from tests.models.made_up_arrays import plain_leans
 
 WEEKS = 26
 WEEKS_BEFORE_FIRST_POLL = 10
@@ -39,6 +40,7 @@ def two_party_race() -> ElectionArrays:
         first_fieldwork=POLLING_DAY - timedelta(weeks=WEEKS),
         middle_fieldwork=POLLING_DAY - timedelta(weeks=WEEKS // 2),
         polling_day=POLLING_DAY,
+        ramp=False,
     )
     sd = 0.035 * np.sqrt(2 * 0.15 / 0.5)
     log_ratio = np.cumsum(sd * np.sqrt(knots.national_step) * rng.normal(size=len(knots.national_step)))
@@ -57,6 +59,7 @@ def two_party_race() -> ElectionArrays:
             standing=np.ones((1, 2), dtype=bool),
             start_log_share=np.log(half)[None],
             reference_share=half,
+            lean_size=np.zeros(2),
             pilot_share=half,
             free_party=np.empty(0, dtype=np.int64),
         ),
@@ -66,6 +69,7 @@ def two_party_race() -> ElectionArrays:
             houses=("Tarvick",),
             poll_of_row=np.arange(rows),
             house_of_row=np.zeros(rows, dtype=np.int64),
+            row_of_part=np.arange(rows),
             national_weight=knot_weights(knots.national_day, first_day=day, last_day=day),
             region_weight=knot_weights(knots.region_day, first_day=day, last_day=day),
             region_mix=np.ones((rows, 1)),
@@ -80,6 +84,7 @@ def two_party_race() -> ElectionArrays:
             small_low=np.empty(0),
             small_high=np.empty(0),
         ),
+        leans=plain_leans(np.zeros(rows, dtype=np.int64), houses=1, parties=2),
     )
 
 
