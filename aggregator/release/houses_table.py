@@ -1,4 +1,4 @@
-"""Which way each house leans, and how noisy its polls are."""
+"""Which way each house leans, era by era of its ways of working, and how noisy its polls are."""
 
 from __future__ import annotations
 
@@ -7,41 +7,65 @@ import pandas as pd
 import xarray as xr
 
 from aggregator.release.draw_summaries import stack_samples, summarise_samples
-from aggregator.release.table_schemas import HOUSES
-from models.dimensions import HOUSE, PARTY
+from aggregator.release.lean_schemas import HOUSES
+from models.dimensions import ERA, HOUSE, PARTY
+
+POINTS = 100.0
 
 
 def build_houses_table(draws: xr.Dataset) -> pd.DataFrame:
-    """Summarise house effects, one row per house and party; houses in alphabetical order.
+    """Summarise house effects, one row per way of working of a house and party.
+
+    Houses are in alphabetical order, the ways of working of one house in the order of their last polls.
 
     Parameters
     ----------
     draws
-        Posterior draws with ``house_lean`` (chain, draw, house, party; 0 to 1), ``design_effect`` (chain,
-        draw, house), ``usual_sample`` and ``poll_count`` (house).
+        Posterior draws with ``era_lean`` and ``era_own_lean`` (chain, draw, era, party; 0 to 1), the
+        coordinates ``era_house``, ``era_method``, ``era_mode``, ``era_population``, ``era_polls`` and
+        ``era_last`` (era), ``design_effect`` (chain, draw, house) and ``usual_sample`` (house).
 
     Returns
     -------
     pandas.DataFrame
         Columns of the schema ``HOUSES``, leans in percentage points.
     """
-    houses = sorted((str(house) for house in draws[HOUSE].values), key=lambda name: (name.casefold(), name))
-    ordered = draws[["house_lean", "design_effect", "usual_sample", "poll_count"]].sel({HOUSE: houses})
+    eras = _eras_in_order(draws)
+    ordered = draws[["era_lean", "era_own_lean"]].sel({ERA: eras["era"].tolist()})
     parties = [str(code) for code in draws[PARTY].values]
-    lean = summarise_samples(100.0 * stack_samples(ordered["house_lean"], dims=(HOUSE, PARTY)))
-    effect = stack_samples(ordered["design_effect"], dims=(HOUSE,)).mean(axis=-1, dtype=np.float64)
-    count = len(parties)
-    table = pd.DataFrame(
+    lean = summarise_samples(POINTS * stack_samples(ordered["era_lean"], dims=(ERA, PARTY)))
+    own = summarise_samples(POINTS * stack_samples(ordered["era_own_lean"], dims=(ERA, PARTY)))
+    houses = {HOUSE: eras["house"].tolist()}
+    effect = stack_samples(draws["design_effect"].sel(houses), dims=(HOUSE,)).mean(axis=-1, dtype=np.float64)
+    per_era = eras.assign(design_effect=effect, usual_sample=draws["usual_sample"].sel(houses).values).drop(
+        columns=["era", "last"]
+    )
+    table = per_era.loc[per_era.index.repeat(len(parties))].reset_index(drop=True)
+    return table.assign(
+        code=parties * len(eras),
+        lean=lean["mean"].ravel(),
+        q05=lean["q05"].ravel(),
+        q95=lean["q95"].ravel(),
+        own_lean=own["mean"].ravel(),
+        own_q05=own["q05"].ravel(),
+        own_q95=own["q95"].ravel(),
+    )[list(HOUSES.column_names)]
+
+
+def _eras_in_order(draws: xr.Dataset) -> pd.DataFrame:
+    eras = pd.DataFrame(
         {
-            "house": np.repeat(np.array(houses, dtype=object), count),
-            "method": "",
-            "code": parties * len(houses),
-            "lean": lean["mean"].ravel(),
-            "q05": lean["q05"].ravel(),
-            "q95": lean["q95"].ravel(),
-            "polls": np.repeat(ordered["poll_count"].values, count),
-            "design_effect": np.repeat(effect, count),
-            "usual_sample": np.repeat(ordered["usual_sample"].values, count),
+            "era": draws[ERA].values.astype(str),
+            "house": draws["era_house"].values.astype(str),
+            "method": draws["era_method"].values.astype(str),
+            "mode": draws["era_mode"].values.astype(str),
+            "population": draws["era_population"].values.astype(str),
+            "polls": draws["era_polls"].values.astype(int),
+            "last": draws["era_last"].values,
         }
     )
-    return table[list(HOUSES.column_names)]
+    return (
+        eras.assign(folded=eras["house"].str.casefold())
+        .sort_values(["folded", "house", "last", "method"], kind="stable", ignore_index=True)
+        .drop(columns="folded")
+    )

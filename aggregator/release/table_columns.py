@@ -6,7 +6,8 @@ from dataclasses import dataclass
 from enum import StrEnum
 from typing import NamedTuple
 
-from aggregator.release.rounding import SHARE_DECIMALS_TABLE
+from aggregator.release.rounding import CHANCE_DECIMALS, SHARE_DECIMALS_TABLE
+from aggregator.release.table_words import Level
 
 
 class ColumnType(StrEnum):
@@ -73,6 +74,7 @@ class TableSchema:
 
 
 PERCENT = Bounds(0.0, 100.0)
+POINTS = Bounds(-100.0, 100.0)
 PROBABILITY = Bounds(0.0, 1.0)
 ANY_COUNT = Bounds(0.0, float("inf"))
 
@@ -103,3 +105,24 @@ def typed_column(name: str, meaning: str, *, blank: str | None = None) -> Column
 def date_column(name: str, meaning: str, *, blank: str | None = None) -> Column:
     """Describe a column of days."""
     return Column(name, ColumnType.DATE, "ISO 8601", meaning, blank=blank)
+
+
+def chance_column(name: str, meaning: str, *, blank: str | None = None) -> Column:
+    """Describe a column of chances."""
+    return number_column(name, "0 to 1", meaning, decimals=CHANCE_DECIMALS, bounds=PROBABILITY, blank=blank)
+
+
+def points_column(name: str, meaning: str, *, blank: str | None = None) -> Column:
+    """Describe a column of differences between shares."""
+    return number_column(name, "percentage points", meaning, bounds=POINTS, blank=blank)
+
+
+CODE = Column("code", ColumnType.CODE, "–", "Party, alliance or `OTH`, as in `contest.toml`")
+LEVEL = Column(
+    "level",
+    ColumnType.TEXT,
+    "–",
+    "What `code` stands for. `party` and `others` together make the whole; an alliance counts its members "
+    "again",
+    allowed=tuple(Level),
+)

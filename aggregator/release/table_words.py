@@ -18,3 +18,11 @@ class Kind(StrEnum):
 
     ON_DATE = "on_date"
     ON_POLLING_DAY = "on_polling_day"
+
+
+class LeanKind(StrEnum):
+    """What may make a poll lean beside its house."""
+
+    MODE = "mode"
+    POPULATION = "population"
+    ASKED_TOGETHER = "asked_together"
