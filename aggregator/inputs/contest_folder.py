@@ -30,7 +30,12 @@ from aggregator.inputs.register_file import Register, read_all_shares, read_regi
 from aggregator.inputs.register_frames import build_polls, build_unused
 from aggregator.inputs.result_files import read_counted_file, read_last_result_file, read_record_file
 from aggregator.inputs.run_day import RunDay, check_future, choose_run_day
-from aggregator.inputs.tracking_windows import check_asked_there_too, check_listed_twice, check_windows
+from aggregator.inputs.tracking_windows import (
+    check_asked_there_too,
+    check_listed_twice,
+    check_windows,
+    regions_by_poll,
+)
 from aggregator.inputs.voting_phases import check_phases
 from aggregator.problems import Problem, Severity
 
@@ -101,7 +106,9 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
     run_day = choose_run_day(register.rows, entering=entering, contest=contest, as_of=as_of, today=today)
     twice = check_listed_twice(_rows_of_polls(register, entering), file=register.file)
     second = {row.poll for row in register.rows if row.row in {p.row for p in twice}}
-    kept, more = check_windows([row for row in entering if row.poll not in second], file=register.file)
+    once = [row for row in entering if row.poll not in second]
+    asked_in = regions_by_poll(register.rows)
+    kept, more = check_windows(once, asked_in=asked_in, file=register.file)
     problems += twice + more
     problems += check_future(register.rows, run_day=run_day, file=register.file)
     if not entering and not _errors(problems):
@@ -118,7 +125,7 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
     )
     problems += check_labels(entering, contest=contest, file=register.file)
     problems += check_phases(entering, contest=contest, file=register.file)
-    problems += check_asked_there_too(entering, file=register.file)
+    problems += check_asked_there_too(entering, asked_in=asked_in, file=register.file)
     if run_day.live:
         problems += check_counted_later(contest, day=run_day.day)
     out = {row.row for row, _ in unused}

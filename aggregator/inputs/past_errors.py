@@ -146,11 +146,14 @@ def _check_fractions(rows: list[_Row], file: str) -> Iterator[Problem]:
 
 def _check_codes(rows: list[_Row], file: str, contest: Contest) -> Iterator[Problem]:
     first = {row.code: row.row for row in reversed(rows) if row.code not in contest.party_codes}
-    there = {row.code for row in rows}
+    elections: dict[str, set[date]] = {}
+    for row in rows:
+        elections.setdefault(row.code, set()).add(row.election)
     gone = []
     for code in sorted(first, key=lambda c: first[c]):
         near = close_spelling(code, contest.party_codes)
-        if near is None or near in there:
+        # Whoever has a row of its own in the same election is another party.
+        if near is None or elections[code] & elections.get(near, set()):
             gone.append(code)
             continue
         yield _no_party(file, first[code], f'"{code}"', f'If "{near}" is meant, correct it.')

@@ -3,19 +3,28 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from datetime import date, timedelta
 from itertools import combinations
 
 from aggregator.inputs.poll_breakdowns import rows_by_poll
 from aggregator.inputs.poll_row import PollRow
 from aggregator.inputs.reading_rules import Rule
+from aggregator.inputs.register_columns import Question
 from aggregator.problems import Problem, Severity
 
 type _Poll = list[PollRow]
 
 
-def check_windows(rows: Sequence[PollRow], *, file: str) -> tuple[dict[str, float], list[Problem]]:
+def regions_by_poll(rows: Sequence[PollRow]) -> dict[str, frozenset[str]]:
+    """Find the regions each poll asked in, by all rows of its vote question: also those that do not enter."""
+    votes = [row for row in rows if row.question is Question.VOTE]
+    return {p: frozenset(r for row in group for r in row.regions) for p, group in rows_by_poll(votes).items()}
+
+
+def check_windows(
+    rows: Sequence[PollRow], *, asked_in: Mapping[str, frozenset[str]], file: str
+) -> tuple[dict[str, float], list[Problem]]:
     """Find the part of each poll's respondents that no earlier poll of its series already has.
 
     Polls are one series where house, regions, method, mode, population and sponsor are the same. Answers
@@ -25,6 +34,9 @@ def check_windows(rows: Sequence[PollRow], *, file: str) -> tuple[dict[str, floa
     ----------
     rows
         The rows that enter the fit.
+    asked_in
+        Regions that each poll asked in, by poll: a wave whose row of one region does not enter still is of
+        its series.
 
     Returns
     -------
@@ -32,7 +44,7 @@ def check_windows(rows: Sequence[PollRow], *, file: str) -> tuple[dict[str, floa
     """
     series: dict[tuple[object, ...], list[_Poll]] = defaultdict(list)
     for group in rows_by_poll(rows).values():
-        series[*_labels(group), _regions(group)].append(group)
+        series[*_labels(group), asked_in[group[0].poll]].append(group)
     kept: dict[str, float] = {}
     problems: list[Problem] = []
     for groups in series.values():
@@ -55,10 +67,6 @@ def _labels(group: _Poll) -> tuple[object, ...]:
     # The rows of a poll agree on the other labels, not on who paid for each.
     sponsors = frozenset(row.sponsor for row in group)
     return first.house, first.method, first.mode, first.population, sponsors
-
-
-def _regions(group: _Poll) -> frozenset[str]:
-    return frozenset(r for row in group for r in row.regions)
 
 
 def _days(row: PollRow) -> list[date]:
@@ -119,11 +127,18 @@ def _same_figures(one: PollRow, other: PollRow) -> bool:
     return len(fewer) > 1 and fewer.items() <= more.items()
 
 
-def check_asked_there_too(rows: Sequence[PollRow], *, file: str) -> Iterator[Problem]:
+def check_asked_there_too(
+    rows: Sequence[PollRow], *, asked_in: Mapping[str, frozenset[str]], file: str
+) -> Iterator[Problem]:
     """Warn of a poll in some regions on days on which another poll of its series asked there as well.
 
     A house's regional figures are often those of its national poll: then these people count twice, once
     under each identifier. Only the desk can know.
+
+    Parameters
+    ----------
+    asked_in
+        Regions that each poll asked in, by poll.
     """
     series: dict[tuple[object, ...], list[_Poll]] = defaultdict(list)
     for group in rows_by_poll(rows).values():
@@ -131,12 +146,13 @@ def check_asked_there_too(rows: Sequence[PollRow], *, file: str) -> Iterator[Pro
     for groups in series.values():
         said = set[str]()
         # The poll in fewer regions is the one that may be a part of the other.
-        by_size = sorted(groups, key=lambda g: (-len(_regions(g)), g[0].end, g[0].poll))
+        by_size = sorted(groups, key=lambda g: (-len(asked_in[g[0].poll]), g[0].end, g[0].poll))
         for wide, narrow in combinations(by_size, 2):
             first, other = narrow[0], wide[0]
-            both = [r for r in first.regions if r in _regions(wide)]
+            here, there = asked_in[first.poll], asked_in[other.poll]
+            both = sorted({r for row in narrow for r in row.regions if r in there})
             start, end = max(first.start, other.start), min(first.end, other.end)
-            if both and start <= end and _regions(narrow) != _regions(wide) and first.poll not in said:
+            if both and start <= end and here != there and first.poll not in said:
                 said.add(first.poll)
                 yield Problem(
                     file, first.row, "poll", f"{first.poll} in {'+'.join(both)}, where {other.poll} (row "
