@@ -8,6 +8,7 @@ import numpy as np
 import pandas as pd
 
 from data_demo.made_up_scenery import OTHERS, Scenery
+from data_demo.made_up_time import opinion_days, still_after_voting
 
 SIGMA_AT_15_PERCENT = 0.035
 """Log points per square root of a week that a party of 15 % drifts."""
@@ -19,6 +20,8 @@ LEAN_SCALE = 0.025 / np.sqrt(0.24)
 LEAN_TURN = np.arccos(1 / 3)
 """Angle by which the shared lean turns between two elections: correlation 1/3."""
 REGIONAL_LEAN_RATIO = 0.4
+UNDECIDED_STRAY = 0.15 / np.sqrt(0.24)
+"""How far the undecided break from the decided, over the root of the share: 15 points at 40 %."""
 NEW_PARTY_SPREAD = 0.5
 SEAT_VOTES = 21_000
 
@@ -41,10 +44,14 @@ class Country:
         Log of the true support, dims (day, region, party).
     sigma
         National drift, log points per square root of a week, dims (party,).
-    lean_scale
-        Sd of the shared lean, log points, dims (party,).
+    opinion_days
+        Opinion time that passes up to each day since its eve, in usual days, dims (day,).
+    lean_scale, undecided_scale
+        Sd of the shared lean, and of what the undecided add to it, log points, dims (party,).
     lean
-        Shared lean, log points, dims (day, region, party), regional part included.
+        Shared lean, log points, dims (day, region, party), regional part and undecided included.
+    undecided_lean
+        The part of it that is due to the undecided, dims (day, region, party).
     """
 
     scenery: Scenery
@@ -54,8 +61,11 @@ class Country:
     days: pd.DatetimeIndex
     log_support: np.ndarray
     sigma: np.ndarray
+    opinion_days: np.ndarray
     lean_scale: np.ndarray
+    undecided_scale: np.ndarray
     lean: np.ndarray
+    undecided_lean: np.ndarray
 
     @property
     def last_shares(self) -> np.ndarray:
@@ -87,12 +97,30 @@ def draw_country(scenery: Scenery, *, shared_lean: bool, rng: np.random.Generato
     usual_sigma = scenery.drift * SIGMA_AT_15_PERCENT * np.sqrt(0.15 / shares)
     sigma = usual_sigma * np.exp(PARTY_NOISE * rng.normal(size=shares.size))
     days = pd.date_range(scenery.last_election, scenery.polling_day, freq="D")
-    log_support = _walk(baseline, weights=weights, sigma=sigma, days=days.size, rng=rng)
+    passed = opinion_days(scenery, days=days)
+    log_support = _walk(baseline, weights=weights, sigma=sigma, opinion_days=passed, rng=rng)
     lean_scale = LEAN_SCALE / np.sqrt(shares)
     lean = draw_shared_lean(lean_scale, weights=weights, days=days.size, rng=rng)
+    # A generator of its own: what is switched on leaves everything else as it was.
+    (undecided_rng,) = rng.spawn(1)
+    undecided_scale = scenery.undecided_stray * scenery.undecided * UNDECIDED_STRAY / np.sqrt(shares)
+    undecided_lean = draw_shared_lean(undecided_scale, weights=weights, days=days.size, rng=undecided_rng)
     if not shared_lean:
-        lean = np.zeros_like(lean)
-    return Country(scenery, votes, baseline, weights, days, log_support, sigma, lean_scale, lean)
+        lean, undecided_lean = np.zeros_like(lean), np.zeros_like(lean)
+    return Country(
+        scenery=scenery,
+        last_votes=votes,
+        baseline=baseline,
+        weights=weights,
+        days=days,
+        log_support=still_after_voting(log_support, scenery=scenery, days=days),
+        sigma=sigma,
+        opinion_days=passed,
+        lean_scale=lean_scale,
+        undecided_scale=undecided_scale,
+        lean=lean + undecided_lean,
+        undecided_lean=undecided_lean,
+    )
 
 
 def draw_last_votes(scenery: Scenery, *, rng: np.random.Generator) -> pd.DataFrame:
@@ -163,12 +191,20 @@ def _baseline(
 
 
 def _walk(
-    baseline: np.ndarray, *, weights: np.ndarray, sigma: np.ndarray, days: int, rng: np.random.Generator
+    baseline: np.ndarray,
+    *,
+    weights: np.ndarray,
+    sigma: np.ndarray,
+    opinion_days: np.ndarray,
+    rng: np.random.Generator,
 ) -> np.ndarray:
     regions, parties = baseline.shape
+    steps = opinion_days.size - 1
     daily = sigma / np.sqrt(7)
-    national = np.cumsum(rng.normal(size=(days - 1, 1, parties)) * daily, axis=0)
-    regional = np.cumsum(rng.normal(size=(days - 1, regions, parties)) * daily * REGIONAL_DRIFT_RATIO, axis=0)
+    pace = np.sqrt(opinion_days[1:, None, None])
+    national = np.cumsum(rng.normal(size=(steps, 1, parties)) * daily * pace, axis=0)
+    regional = rng.normal(size=(steps, regions, parties)) * daily * REGIONAL_DRIFT_RATIO * pace
+    regional = np.cumsum(regional, axis=0)
     regional -= np.einsum("r,trp->tp", weights, regional)[:, None]
     start = np.zeros((1, regions, parties))
     return log_softmax(baseline + np.concatenate([start, national + regional]))
@@ -180,7 +216,9 @@ def draw_shared_lean(
     """Lean of all houses together, log points, dims (day, region, party).
 
     Its variance is the same on every day; between the two polling days it turns by an angle whose
-    cosine is their correlation. A smaller part that never moves is each region's own.
+    cosine is their correlation. A smaller part that never moves is each region's own. What the undecided
+    add to it follows the same law: as a part u of all respondents that breaks otherwise by η in log points,
+    they move everyone's support by about u η.
     """
     first, second = rng.normal(size=(2, lean_scale.size))
     angle = LEAN_TURN * np.linspace(0, 1, days)[:, None]

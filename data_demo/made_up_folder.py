@@ -8,21 +8,31 @@ from pathlib import Path
 import pandas as pd
 
 from data_demo.made_up_election import MadeUpElection
-from data_demo.made_up_scenery import MadeUpAlliance, MadeUpParty, Scenery
+from data_demo.made_up_scenery import MadeUpAlliance, MadeUpJolt, MadeUpParty, MadeUpRegion, Scenery
 
 
 def write_contest_folder(election: MadeUpElection, folder: Path) -> None:
-    """Write contest, register, last result, outcome and (in ``truth/``) the truth; the folder may exist."""
+    """Write contest, register, results and (in ``truth/``) the truth; the folder may exist.
+
+    ``result_counted.csv`` and ``past_errors.csv`` are written where the election has them.
+    """
     folder.mkdir(parents=True, exist_ok=True)
     (folder / "contest.toml").write_text(contest_text(election.scenery), encoding="utf-8")
     write_table(election.polls.dropna(axis="columns", how="all"), folder / "polls.csv")
     write_table(_slate_only(election.result_last, scenery=election.scenery), folder / "result_last.csv")
     write_table(_slate_only(election.outcome, scenery=election.scenery), folder / "result_outcome.csv")
+    if not election.counted.empty:
+        counted = _slate_only(election.counted, scenery=election.scenery)
+        write_table(counted, folder / "result_counted.csv")
+    if not election.past_errors.empty:
+        write_table(election.past_errors, folder / "past_errors.csv")
     (folder / "truth").mkdir(exist_ok=True)
     first_day = str(election.scenery.first_fieldwork)
     for name, table in election.truth.tables().items():
         # Before the first poll the path is of no use to anyone, and most of the file.
         kept = table[table["date"] >= first_day] if "date" in table else table
+        if table.empty:
+            continue
         write_table(kept, folder / "truth" / f"{name}.csv")
 
 
@@ -57,7 +67,15 @@ def contest_text(scenery: Scenery) -> str:
         )
     blocks += [
         "# Regions. Their weights come from the turnout in the last result.\n"
-        + "\n".join(f"[[region]]\ncode = {_text(r.code)}\nname = {_text(r.name)}\n" for r in scenery.regions),
+        + "\n".join(_region(r) for r in scenery.regions),
+    ]
+    if scenery.jolts:
+        blocks.append(
+            "# Days on which opinion may have jumped: older polls say less after such a day. Which way it\n"
+            "# went is for the polls to show. `weeks`: how many weeks' usual movement may lie in that day.\n"
+            + "\n".join(_jolt(j) for j in scenery.jolts)
+        )
+    blocks += [
         f'[last_result]\ndate = {scenery.last_election}\nfile = "result_last.csv"\n',
         "[counting]\n"
         'rule = "plurality"    # the most votes in a seat win it\n'
@@ -79,6 +97,23 @@ def _party(party: MadeUpParty) -> str:
     if party.is_new:
         lines.append("# founded since the last election: no last votes, so its start is estimated freely")
     return "\n".join(lines) + "\n"
+
+
+def _region(region: MadeUpRegion) -> str:
+    lines = ["[[region]]", f"code = {_text(region.code)}", f"name = {_text(region.name)}"]
+    if region.polling_day is not None:
+        lines.append(
+            f"polling_day = {region.polling_day}    # votes before the others; its support stands still then"
+        )
+    if region.counted is not None:
+        lines.append(
+            f"counted = {region.counted}    # its count came out that day: result_counted.csv, taken as it is"
+        )
+    return "\n".join(lines) + "\n"
+
+
+def _jolt(jolt: MadeUpJolt) -> str:
+    return f"[[jolt]]\ndate = {jolt.day}\nweeks = {jolt.weeks:g}\nname = {_text(jolt.name)}\n"
 
 
 def _alliance(alliance: MadeUpAlliance) -> str:

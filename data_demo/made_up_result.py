@@ -11,6 +11,8 @@ from data_demo.made_up_country import Country, handed_on, log_softmax, softmax
 
 TURNOUT_NOISE = 0.04
 """Log sd of a region's weight on polling day about its last one."""
+TURNOUT_TILT = 0.2
+"""Sd over parties of how much more, in log points, regions turn out per unit of the party's share there."""
 SLOPE_SD = 0.12
 LOCAL_SD = 0.15
 LOCAL_SD_NOISE = 0.25
@@ -29,6 +31,8 @@ class PollingDay:
         Votes by seat: columns seat, name, region, then the parties.
     turnout_weights
         Share of the turnout by region, dims (region,).
+    turnout_tilt
+        How much more, in log points, a region turned out per unit of a party's share there, dims (party,).
     slope
         How much stronger than its log share a party moved where it was strong, dims (party,).
     local_sd
@@ -37,6 +41,7 @@ class PollingDay:
 
     votes: pd.DataFrame
     turnout_weights: np.ndarray
+    turnout_tilt: np.ndarray
     slope: np.ndarray
     local_sd: np.ndarray
 
@@ -49,7 +54,10 @@ def draw_polling_day(country: Country, *, rng: np.random.Generator) -> PollingDa
     """
     scenery = country.scenery
     codes = list(scenery.codes)
-    turnout_weights = country.weights * np.exp(TURNOUT_NOISE * rng.normal(size=country.weights.size))
+    turnout_noise = TURNOUT_NOISE * rng.normal(size=country.weights.size)
+    (tilt_rng,) = rng.spawn(1)
+    tilt = scenery.turnout_tilt * TURNOUT_TILT * tilt_rng.normal(size=len(codes))
+    turnout_weights = country.weights * np.exp(turnout_noise + _above_country(country) @ tilt)
     turnout_weights /= turnout_weights.sum()
     slope = SLOPE_SD * rng.normal(size=len(codes))
     local_sd = LOCAL_SD * np.exp(LOCAL_SD_NOISE * rng.normal(size=len(codes)))
@@ -70,7 +78,13 @@ def draw_polling_day(country: Country, *, rng: np.random.Generator) -> PollingDa
         )
         table = pd.DataFrame(np.rint(shares * turnout[:, None]).astype(int), columns=codes)
         frames.append(pd.concat([seats[["seat", "name", "region"]], table], axis=1))
-    return PollingDay(pd.concat(frames, ignore_index=True), turnout_weights, slope, local_sd)
+    return PollingDay(pd.concat(frames, ignore_index=True), turnout_weights, tilt, slope, local_sd)
+
+
+def _above_country(country: Country) -> np.ndarray:
+    """How far each party's support in a region lies above the country's, dims (region, party)."""
+    support = np.exp(country.log_support[-1])
+    return np.asarray(support - country.weights @ support)
 
 
 def _last_strength(

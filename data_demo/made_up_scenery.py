@@ -1,17 +1,19 @@
 """What stands before anything is drawn: the calendar, parties, regions and houses of an invented election.
 
-:class:`ElectionSize` asks for a nameless election of some size; a :class:`Scenery` written by hand
-gives it names. Both lead to the same simulation.
+A :class:`Scenery` written by hand names everything; ``made_up_size`` draws a nameless one of some size.
+Both lead to the same simulation.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from datetime import date, timedelta
+from datetime import date
 
 import numpy as np
 
 OTHERS = "OTH"
+TARGET_POPULATION = "voters"
+"""Whom the result is about: a house that asks them has no population lean."""
 
 
 @dataclass(frozen=True)
@@ -56,11 +58,60 @@ class MadeUpAlliance:
 
 @dataclass(frozen=True)
 class MadeUpRegion:
-    """A region and the names of its seats."""
+    """A region and the names of its seats.
+
+    Attributes
+    ----------
+    polling_day
+        The day it votes where that is before the contest's; its support stands still from then on.
+    counted
+        The day its count is published, before the contest's polling day.
+    """
 
     code: str
     name: str
     seat_names: tuple[str, ...]
+    polling_day: date | None = None
+    counted: date | None = None
+
+
+@dataclass(frozen=True)
+class MadeUpJolt:
+    """A day on which opinion jumps as far as it otherwise does in some weeks."""
+
+    day: date
+    name: str
+    weeks: float = 4.0
+
+
+@dataclass(frozen=True)
+class MethodChange:
+    """A house works in another way from a day on, under a label of its own; None leaves its mode."""
+
+    day: date
+    method: str
+    mode: str | None = None
+
+
+@dataclass(frozen=True)
+class MadeUpTracker:
+    """Interviews every day of a campaign's end, published as windows that overlap.
+
+    Attributes
+    ----------
+    first_day
+        First day of interviews; they go on until the register ends.
+    window_days, every_days
+        Days of a window, and how often one is published; each on the day after its last interview.
+    sample
+        Interviews of a whole window.
+    """
+
+    first_day: date
+    window_days: int = 5
+    every_days: int = 2
+    sample: int = 1000
+    sponsor: str = ""
 
 
 @dataclass(frozen=True)
@@ -81,16 +132,28 @@ class MadeUpHouse:
         Chance that a poll of its asks in one region only.
     breakdown
         Chance that a national poll of its is published region by region.
+    breakdown_regions
+        Regions it then prints beside the national figures; None is all.
     lists_others
         It prints the others' share; otherwise they are what is missing to 100.
     activity
         Relative number of polls.
+    method
+        Its label for its way of working, before any change.
+    changes
+        Days from which it works in another way, in order.
+    second_mode, second_mode_part
+        A mode it uses now and then, and the part of its polls that do.
+    gives_effective
+        It publishes the effective size of its samples.
+    tracker
+        A tracking poll that it runs beside its other polls, in place of those during the last weeks.
     """
 
     name: str
     label: str
     mode: str = "online"
-    population: str = "voters"
+    population: str = TARGET_POPULATION
     usual_sample: int = 1200
     grid: float = 0.1
     undecided: float | None = None
@@ -98,9 +161,30 @@ class MadeUpHouse:
     pools: tuple[str, ...] = ()
     regional: float = 0.0
     breakdown: float = 0.0
+    breakdown_regions: tuple[str, ...] | None = None
     lists_others: bool = True
     activity: float = 1.0
     sponsors: tuple[str, ...] = ("",)
+    method: str = ""
+    changes: tuple[MethodChange, ...] = ()
+    second_mode: str | None = None
+    second_mode_part: float = 0.3
+    gives_effective: bool = False
+    tracker: MadeUpTracker | None = None
+
+    @property
+    def methods(self) -> tuple[str, ...]:
+        """Labels of its ways of working, the first one first."""
+        return (self.method, *(change.method for change in self.changes))
+
+    def era_on(self, day: date) -> int:
+        """Position in ``methods`` of the way it works on a day."""
+        return sum(change.day <= day for change in self.changes)
+
+    def main_mode(self, era: int) -> str:
+        """Mode of most of its polls in an era."""
+        named = [self.mode, *(change.mode for change in self.changes[:era])]
+        return next(mode for mode in reversed(named) if mode is not None)
 
 
 @dataclass(frozen=True)
@@ -111,10 +195,25 @@ class Scenery:
     ----------
     first_fieldwork, register_end
         First day a poll may start, last day one may be published.
+    polls
+        Polls of the register, those of trackers not among them.
     dissolved
         Party that stood last time only: code and usual share.
     drift
         Factor on the usual scales of drift: below one for a calmer country.
+    jolts
+        Days on which opinion jumps; those of the contest file, and true.
+    ramp_log_height
+        Log of how much faster than usual opinion moves on polling day; zero is steady.
+    mode_leans, population_leans, formation_leans
+        Whether the mode, a population other than the target, and asking about an alliance as one make
+        figures differ.
+    undecided_stray
+        Whether the undecided may in the end break otherwise than the decided.
+    turnout_tilt
+        Whether regions where a party is strong turn out more or less than others.
+    past_elections
+        Days of the elections in the record of past polling errors.
     """
 
     title: str
@@ -130,6 +229,14 @@ class Scenery:
     dissolved: tuple[str, float] | None = None
     others_share: float = 0.05
     drift: float = 1.0
+    jolts: tuple[MadeUpJolt, ...] = ()
+    ramp_log_height: float = 0.0
+    mode_leans: bool = False
+    population_leans: bool = False
+    formation_leans: bool = False
+    undecided_stray: bool = False
+    turnout_tilt: bool = False
+    past_elections: tuple[date, ...] = ()
 
     @property
     def codes(self) -> tuple[str, ...]:
@@ -146,6 +253,12 @@ class Scenery:
         """Seats of the chamber."""
         return sum(len(r.seat_names) for r in self.regions)
 
+    @property
+    def undecided(self) -> float:
+        """Usual part of the respondents without an answer, 0–1, over the houses that publish it."""
+        said = [(h.undecided, h.activity) for h in self.houses if h.undecided is not None]
+        return sum(u * a for u, a in said) / sum(a for _, a in said) / 100 if said else 0.0
+
     def standing(self) -> np.ndarray:
         """Which party stands where: booleans, dims (region, party), others everywhere."""
         rows = [
@@ -153,145 +266,6 @@ class Scenery:
         ]
         return np.array(rows)
 
-
-@dataclass(frozen=True)
-class ElectionSize:
-    """How large a nameless election is.
-
-    Attributes
-    ----------
-    parties
-        Parties besides others. The last two of them become the regional and the new party where those
-        are asked for, so that four plain parties are ``parties=4, regional_party=False, new_party=False``.
-    weeks, polled_weeks
-        Weeks from the last election to polling day, and how many of the last of them see polls.
-    special_rows
-        Whether houses lump small parties, pool alliances, ask in one region, break down by region and
-        publish undecided; without them each poll is national and lists every party.
-    """
-
-    parties: int = 7
-    regions: int = 8
-    seats: int = 200
-    houses: int = 9
-    polls: int = 250
-    weeks: int = 209
-    polled_weeks: int = 78
-    regional_party: bool = True
-    new_party: bool = True
-    dissolved_party: bool = True
-    alliances: bool = True
-    special_rows: bool = True
-
-
-SMALL_ELECTION = ElectionSize(
-    parties=4,
-    regions=3,
-    seats=30,
-    houses=5,
-    polls=60,
-    weeks=40,
-    polled_weeks=38,
-    regional_party=False,
-    new_party=False,
-    dissolved_party=False,
-    alliances=False,
-    special_rows=False,
-)
-
-
-def draw_scenery(size: ElectionSize, *, rng: np.random.Generator) -> Scenery:
-    """Draw the habits of a nameless election of a given size.
-
-    Raises
-    ------
-    ValueError
-        Where the size leaves no plain party, fewer seats than regions, or no room for the polls.
-    """
-    _check_size(size)
-    polling_day = date(2030, 6, 2)
-    regions = tuple(
-        MadeUpRegion(f"R{i + 1}", f"Region {i + 1}", tuple(f"R{i + 1} seat {k + 1}" for k in range(count)))
-        for i, count in enumerate(_split(size.seats, parts=size.regions))
-    )
-    parties = _nameless_parties(size, regions=regions)
-    alliances: tuple[MadeUpAlliance, ...] = ()
-    if size.alliances:
-        start = polling_day - timedelta(weeks=max(size.polled_weeks * 2 // 3, 1))
-        alliances = (MadeUpAlliance("AL", "Alliance of two", (parties[0].code, parties[2].code), start),)
-    return Scenery(
-        title="A made-up election",
-        last_election=polling_day - timedelta(weeks=size.weeks),
-        polling_day=polling_day,
-        first_fieldwork=polling_day - timedelta(weeks=size.polled_weeks),
-        register_end=polling_day - timedelta(days=8),
-        parties=parties,
-        regions=regions,
-        houses=_nameless_houses(size, parties=parties, alliances=alliances, rng=rng),
-        polls=size.polls,
-        alliances=alliances,
-        dissolved=("OLD", 0.05) if size.dissolved_party else None,
-    )
-
-
-def _check_size(size: ElectionSize) -> None:
-    plain = size.parties - size.regional_party - size.new_party
-    if plain < (3 if size.alliances else 1):
-        raise ValueError(f"{size.parties} parties leave {plain} plain ones; ask for more, or for less else.")
-    if size.seats < size.regions:
-        raise ValueError(f"{size.seats} seats are too few for {size.regions} regions.")
-    if size.polled_weeks > size.weeks or size.polled_weeks < 3:
-        raise ValueError(f"polled_weeks must lie between 3 and weeks = {size.weeks}: {size.polled_weeks}.")
-
-
-def _split(total: int, *, parts: int) -> list[int]:
-    return [total // parts + (i < total % parts) for i in range(parts)]
-
-
-def _nameless_parties(size: ElectionSize, *, regions: tuple[MadeUpRegion, ...]) -> tuple[MadeUpParty, ...]:
-    plain = size.parties - size.regional_party - size.new_party
-    shares = 0.72 ** np.arange(plain)
-    shares *= 0.95 / shares.sum()
-    inherits: list[tuple[tuple[str, float], ...]] = [()] * plain
-    if size.dissolved_party:
-        inherits[-1] = (("OLD", 0.8),)
-    parties = [
-        MadeUpParty(f"P{i + 1}", f"Party {i + 1}", float(shares[i]), inherits=inherits[i])
-        for i in range(plain)
-    ]
-    if size.regional_party:
-        where = tuple(r.code for r in regions[:2])
-        parties.append(MadeUpParty("PR", "Regional party", 0.04, regions=where))
-    if size.new_party:
-        parties.append(MadeUpParty("PN", "New party", 0.03, is_new=True))
-    return tuple(parties)
-
-
-def _nameless_houses(
-    size: ElectionSize,
-    *,
-    parties: tuple[MadeUpParty, ...],
-    alliances: tuple[MadeUpAlliance, ...],
-    rng: np.random.Generator,
-) -> tuple[MadeUpHouse, ...]:
-    small = tuple(p.code for p in parties if p.usual_share < 0.06)
-    houses = []
-    for i in range(size.houses):
-        special = size.special_rows
-        houses.append(
-            MadeUpHouse(
-                name=f"House {chr(ord('A') + i)}" if size.houses <= 26 else f"House {i + 1}",
-                label=f"H{i + 1}",
-                mode=str(rng.choice(["online", "telephone", "face_to_face", "mixed"])),
-                usual_sample=int(rng.integers(700, 2400)),
-                grid=float(rng.choice([1.0, 0.5, 0.1])),
-                undecided=float(rng.uniform(6, 16)) if special and i % 3 == 1 else None,
-                lumps=small if special and i % 4 == 2 else (),
-                pools=tuple(a.code for a in alliances) if special and i % 5 == 3 else (),
-                regional=0.3 if special and size.regions > 1 and i % 3 == 0 else 0.0,
-                breakdown=0.15 if special and size.regions > 1 and i % 4 == 1 else 0.0,
-                lists_others=bool(rng.random() < 0.7),
-                activity=float(rng.uniform(0.5, 1.5)),
-            )
-        )
-    return tuple(houses)
+    def regions_voting_after(self, day: date) -> tuple[str, ...]:
+        """Codes of the regions that have not voted by the end of a day."""
+        return tuple(r.code for r in self.regions if (r.polling_day or self.polling_day) > day)

@@ -9,6 +9,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 from scipy.stats import chi2
 
+from data_demo.made_up_answers import draw_answers, expected_answers
 from data_demo.made_up_country import draw_country, handed_on, softmax
 from data_demo.made_up_election import (
     SMALL_ELECTION,
@@ -17,8 +18,11 @@ from data_demo.made_up_election import (
     simulate_election,
     simulate_scenery,
 )
-from data_demo.made_up_polls import draw_answers, draw_house_truth, draw_polls, expected_answers
-from data_demo.made_up_scenery import OTHERS, draw_scenery
+from data_demo.made_up_leans import draw_house_truth
+from data_demo.made_up_polls import draw_polls
+from data_demo.made_up_scenery import OTHERS
+from data_demo.made_up_schedule import draw_schedule
+from data_demo.made_up_size import draw_scenery
 
 
 @pytest.fixture(scope="module")
@@ -196,8 +200,10 @@ def test_polls_of_a_whole_register_stray_from_what_they_should_say_by_their_desi
     scenery = draw_scenery(size, rng=np.random.default_rng(8))
     fine = replace(scenery, houses=tuple(replace(h, grid=0.1, lists_others=True) for h in scenery.houses))
     country = draw_country(fine, shared_lean=True, rng=np.random.default_rng(9))
-    houses = draw_house_truth(country, rng=np.random.default_rng(10))
-    polls = draw_polls(country, houses=houses, rng=np.random.default_rng(11))
+    rng = np.random.default_rng(11)
+    schedule = draw_schedule(country, rng=rng)
+    houses = draw_house_truth(country, schedule=schedule, rng=np.random.default_rng(10))
+    polls = draw_polls(country, houses=houses, schedule=schedule, rng=rng).polls
     number = {h.name: k for k, h in enumerate(fine.houses)}
     statistics = []
     for row in polls.to_dict("records"):
@@ -243,6 +249,9 @@ def test_seats_move_with_their_region_and_by_the_local_noise() -> None:
         (replace(SMALL_ELECTION, seats=2), "seats"),
         (replace(SMALL_ELECTION, polled_weeks=80), "polled_weeks"),
         (replace(SMALL_ELECTION, polls=3000), "fewer polls"),
+        (replace(SMALL_ELECTION, formation_leans=True), "alliances"),
+        (replace(SMALL_ELECTION, regions=1, phases=True), "two regions"),
+        (replace(SMALL_ELECTION, polled_weeks=8, tracker=True), "tracker"),
     ],
 )
 def test_an_impossible_size_is_refused_with_its_reason(size: ElectionSize, words: str) -> None:
