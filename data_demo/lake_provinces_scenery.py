@@ -7,7 +7,16 @@ from __future__ import annotations
 
 from datetime import date
 
-from data_demo.made_up_scenery import MadeUpAlliance, MadeUpHouse, MadeUpParty, MadeUpRegion, Scenery
+from data_demo.made_up_scenery import (
+    MadeUpAlliance,
+    MadeUpHouse,
+    MadeUpJolt,
+    MadeUpParty,
+    MadeUpRegion,
+    MadeUpTracker,
+    MethodChange,
+    Scenery,
+)
 
 PARTIES = (
     MadeUpParty("HU", "Harbour Union", 0.29, colour="#0072B2", seat_spread=0.40),
@@ -36,6 +45,9 @@ _REGIONS = (
     ("HIGH", "High Pastures", 22),
 )
 
+_VOTES_EARLY = {"ISLE": (date(2026, 5, 3), date(2026, 5, 6))}
+"""Polling day, and the day its count is published, of a region that votes before the others."""
+
 _STEMS = (
     "Abrel", "Arvo", "Beska", "Brunda", "Calvi", "Corra", "Dalmo", "Drevi", "Elgo",
     "Emba", "Farru", "Fenlo", "Galdi", "Gorva", "Halmi", "Havro", "Irsel", "Jorvu",
@@ -52,7 +64,9 @@ def _regions() -> tuple[MadeUpRegion, ...]:
     names = [_STEMS[k % stems] + _ENDINGS[(k % stems + k // stems) % len(_ENDINGS)] for k in range(total)]
     regions, start = [], 0
     for code, name, count in _REGIONS:
-        regions.append(MadeUpRegion(code, name, tuple(sorted(names[start : start + count]))))
+        polling_day, counted = _VOTES_EARLY.get(code, (None, None))
+        seats = tuple(sorted(names[start : start + count]))
+        regions.append(MadeUpRegion(code, name, seats, polling_day, counted))
         start += count
     return tuple(regions)
 
@@ -70,6 +84,8 @@ HOUSES = (
         undecided=11.0,
         activity=1.3,
         sponsors=("The Lakeshore Courier", "The Lakeshore Courier", "Channel Six Delta"),
+        method="calls to landlines and mobiles",
+        changes=(MethodChange(date(2025, 7, 1), "calls and own web panel", mode="mixed"),),
     ),
     MadeUpHouse(
         "Pelloran Panel",
@@ -81,6 +97,7 @@ HOUSES = (
         breakdown=0.20,
         activity=1.5,
         sponsors=("", "Mere Morning"),
+        tracker=MadeUpTracker(date(2026, 4, 11), sample=1500, sponsor="Mere Morning"),
     ),
     MadeUpHouse(
         "Veldane Institute",
@@ -91,6 +108,7 @@ HOUSES = (
         0.5,
         undecided=16.0,
         activity=0.6,
+        gives_effective=True,
         sponsors=("Chamber of Growers", "", "Board of Lake Ports"),
     ),
     MadeUpHouse(
@@ -101,6 +119,8 @@ HOUSES = (
         1250,
         0.5,
         regional=0.35,
+        breakdown=0.15,
+        breakdown_regions=("NORTH", "HARB", "REED"),
         sponsors=("Evening Anchor", "Radio Reedlands", "Upland Gazette"),
     ),
     MadeUpHouse(
@@ -119,7 +139,7 @@ HOUSES = (
         "Ostrelle Polls",
         "OST",
         "telephone",
-        "voters",
+        "registered",
         900,
         1.0,
         lumps=_SMALL,
@@ -135,6 +155,7 @@ HOUSES = (
         0.5,
         undecided=9.0,
         pools=("HILL",),
+        second_mode="telephone",
         sponsors=("Evening Anchor", ""),
     ),
     MadeUpHouse(
@@ -176,4 +197,18 @@ LAKE_PROVINCES = Scenery(
     dissolved=("RF", 0.04),
     others_share=0.035,
     drift=0.75,
+    jolts=(MadeUpJolt(date(2025, 10, 6), "The leader of Harbour Union resigned"),),
+    ramp_log_height=0.45,
+    mode_leans=True,
+    population_leans=True,
+    formation_leans=True,
+    undecided_stray=True,
+    turnout_tilt=True,
+    past_elections=(
+        date(2006, 5, 14),
+        date(2010, 5, 16),
+        date(2014, 5, 18),
+        date(2018, 5, 13),
+        date(2022, 5, 15),
+    ),
 )

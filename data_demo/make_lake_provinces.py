@@ -15,11 +15,32 @@ from data_demo.lake_provinces_scenery import LAKE_PROVINCES
 from data_demo.made_up_election import MadeUpElection, simulate_scenery
 from data_demo.made_up_folder import contest_text, write_contest_folder
 
-SEED = 3342
+SEED = 1288
 """Chosen for a close race: an alliance near the line, no party near it alone."""
 
 HEADER = """\
 # An invented country. Its polls and results were simulated; what was true all along is in truth/.
+#
+# Notes of the desk on polls.csv and the files beside this one
+#
+# method      Tarvick Surveys only called people until the end of June 2025; since then part of its sample
+#             comes from its own web panel. The label in `method` changed with that, so that it is compared
+#             anew, and a jump of its figures is not read as a jump of opinion.
+# mode        Online, telephone, face to face, mixed. Marrimund uses two of them.
+# population  Most houses ask voters, whom the result is about. Veldane and Marrimund ask adults, Ostrelle
+#             people on the electoral roll: their figures may differ for that reason alone.
+# alliances   Marrimund and Brislow often ask about a pact as one choice (columns LAKE, HILL). People may
+#             answer that otherwise than they answer about its members.
+# effective   Veldane prints the effective size of its samples beside the number of interviews.
+# region      Some polls are of one region. Pelloran breaks some national polls down by all regions, Umbrick
+#             by three: there the national row counts, and the three are kept for reference.
+# tracking    PEL-T01 to PEL-T12: Pelloran interviews every day and prints the last five days, every other
+#             day, for Mere Morning. Days that two windows share count once; each overlap is reported.
+# undecided   Set aside, with the chance that in the end they break otherwise than those who chose.
+#
+# result_counted.csv  The Hundred Isles, which have voted already: votes by seat, as counted.
+# past_errors.csv     Our average of the last polls before five elections, and what came out: how far all
+#                     houses together have been wrong.
 
 """
 
@@ -35,11 +56,21 @@ until = 2026-05-17
 time_zone = "UTC"
 law = "Lake Provinces Election Act, section 41"
 
+# The same law, for the region that votes two weeks early.
+[[release.silence]]
+from = 2026-04-26
+until = 2026-05-03
+time_zone = "UTC"
+regions = ["ISLE"]
+law = "Lake Provinces Election Act, section 41"
+
 # The model's settings may be overridden here; left out, the defaults hold.
 # [model]
 # shared_lean = true             # an error all houses share, which polls alone cannot show
-# shared_lean_points = 2.5       # its sd for a party of 40 %
+# shared_lean_points = 2.5       # its sd for a party of 40 %, where past_errors.csv does not say
 # shared_lean_correlation = 0.33 # between the last election's and this one's
+# ramp = true                    # opinion may move faster or slower in the last 60 days
+# target_population = "voters"   # whom the result is about: other populations are measured against them
 """
 
 

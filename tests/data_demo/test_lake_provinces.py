@@ -8,6 +8,7 @@ import pytest
 
 import data_demo
 from aggregator.inputs.contest_folder import read_contest_folder
+from aggregator.inputs.reading_rules import Rule
 from data_demo.lake_provinces_scenery import LAKE_PROVINCES
 from data_demo.make_lake_provinces import write_lake_provinces
 
@@ -31,9 +32,14 @@ def test_the_script_makes_every_file_again_byte_for_byte(made_again: Path) -> No
     assert kept == set(made)
 
 
-def test_the_reader_takes_the_demo_with_a_single_warning_about_the_new_party() -> None:
+def test_the_reader_takes_the_demo_and_doubts_only_what_is_meant_to_be_doubtful() -> None:
+    """Windows that share days, polls from after the Isles had voted, and the new party."""
     inputs = read_contest_folder(FOLDER, today=date(2026, 5, 9))
-    assert [(w.file, w.column) for w in inputs.warnings] == [("result_last.csv", "NL")]
+    assert {w.rule for w in inputs.warnings} == {
+        Rule.WINDOWS_OVERLAP,
+        Rule.HAD_VOTED,
+        Rule.PARTY_WITHOUT_VOTES,
+    }
     assert inputs.contest.counting.majority == 101
     reasons = " ".join(inputs.unused_polls["why_not"])
     for word in ("corrected", "withdrawn", "hypothetical", "no sample was drawn"):
@@ -42,15 +48,54 @@ def test_the_reader_takes_the_demo_with_a_single_warning_about_the_new_party() -
 
 def test_the_register_shows_what_a_desk_meets() -> None:
     polls = pd.read_csv(FOLDER / "polls.csv", keep_default_na=False)
-    assert 240 <= polls["poll"].nunique() <= 260
+    assert 250 <= polls["poll"].nunique() <= 300
     assert polls.loc[polls["use"].ne("no"), "house"].nunique() == 9
-    assert polls["published"].max() <= "2026-05-09"
+    assert polls["published"].max() == "2026-05-09"
     whole = polls.drop_duplicates("poll")
     assert (whole["region"] != "").mean() > 0.05
     assert (polls["HILL"] != "").any() and (polls["LAKE"] != "").any()
     pooled = polls[polls["HILL"] != ""]
     assert (pooled[["UP", "TL"]] == "").all(axis=None)
     assert (pooled["start"] >= "2025-03-01").all()
+
+
+def test_the_register_shows_what_makes_figures_differ() -> None:
+    polls = pd.read_csv(FOLDER / "polls.csv", keep_default_na=False)
+    used = polls[polls["use"].ne("no")]
+    tarvick = used[used["house"] == "Tarvick Surveys"].groupby("method")["start"]
+    assert tarvick.max()["calls to landlines and mobiles"] < "2025-07-01"
+    assert tarvick.min()["calls and own web panel"] >= "2025-07-01"
+    assert set(used["mode"]) == {"online", "telephone", "face_to_face", "mixed"}
+    assert set(used["population"]) == {"voters", "adults", "registered"}
+    assert used.groupby("house")["mode"].nunique()["Marrimund"] == 2
+    assert set(used.loc[used["effective"] != "", "house"]) == {"Veldane Institute"}
+    broken_down = used[used["poll"].duplicated(keep=False)].groupby("poll")["region"].agg(set)
+    assert {"", "NORTH", "HARB", "REED"} in list(broken_down)
+    windows = used[used["poll"].str.startswith("PEL-T")].sort_values("end")
+    assert len(windows) == 12
+    assert (windows["start"].iloc[1:].to_numpy() <= windows["end"].iloc[:-1].to_numpy()).all()
+
+
+def test_the_isles_have_voted_and_been_counted_when_the_register_ends() -> None:
+    inputs = read_contest_folder(FOLDER, today=date(2026, 5, 9))
+    assert inputs.contest.polling_day_of("ISLE") == date(2026, 5, 3)
+    assert inputs.counted_result is not None
+    outcome = pd.read_csv(FOLDER / "result_outcome.csv").set_index("seat")
+    counted = pd.read_csv(FOLDER / "result_counted.csv").set_index("seat")
+    assert len(counted) == 13
+    pd.testing.assert_frame_equal(counted, outcome.loc[counted.index])
+    support = pd.read_csv(FOLDER / "truth" / "support_over_time.csv")
+    isles = support[support["region"].eq("ISLE") & support["date"].ge("2026-05-03")]
+    assert isles.groupby("code")["share"].nunique().max() == 1
+
+
+def test_the_contest_knows_the_jolt_and_the_record() -> None:
+    inputs = read_contest_folder(FOLDER, today=date(2026, 5, 9))
+    assert [(j.date, j.weeks) for j in inputs.contest.jolts] == [(date(2025, 10, 6), 4.0)]
+    moved = pd.read_csv(FOLDER / "truth" / "jolts.csv").set_index("code")["moved"]
+    assert moved["HU"] < -0.5
+    assert inputs.past_errors is not None
+    assert inputs.past_errors["election"].nunique() == 5
 
 
 def test_the_winners_in_the_outcome_are_the_seats_of_the_truth() -> None:

@@ -19,7 +19,7 @@ def shuffled(folder: Path, *, seed: int) -> Path:
     folder.mkdir()
     order = random.Random(seed)
     (folder / "contest.toml").write_bytes((DEMO / "contest.toml").read_bytes())
-    for name in ("polls.csv", "result_last.csv"):
+    for name in ("polls.csv", "result_last.csv", "result_counted.csv", "past_errors.csv"):
         header, *rows = (DEMO / name).read_text(encoding="utf-8").splitlines()
         order.shuffle(rows)
         (folder / name).write_text("\n".join([header, *rows]) + "\n", encoding="utf-8")
