@@ -198,6 +198,14 @@ def _check_polling_days(contest: Contest) -> Iterator[Problem]:
                 "Check month and year.", Rule.POLLING_DAYS, Severity.WARNING,
             )  # fmt: skip
 
+    days = {contest.polling_day_of(region) for region in contest.region_codes}
+    if contest.polling_day not in days:
+        yield _problem(
+            "polling_day", f"{contest.polling_day}, on which no region votes",
+            "a day on which some region votes", "Correct it, or the polling_day of a region.",
+            Rule.POLLING_DAYS, Severity.WARNING,
+        )  # fmt: skip
+
 
 def _check_counts(contest: Contest) -> Iterator[Problem]:
     for i, region in enumerate(contest.regions, start=1):

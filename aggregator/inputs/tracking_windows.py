@@ -150,9 +150,11 @@ def check_asked_there_too(
         for wide, narrow in combinations(by_size, 2):
             first, other = narrow[0], wide[0]
             here, there = asked_in[first.poll], asked_in[other.poll]
-            both = sorted({r for row in narrow for r in row.regions if r in there})
             start, end = max(first.start, other.start), min(first.end, other.end)
-            if both and start <= end and here != there and first.poll not in said:
+            if here == there or start > end or first.poll in said:
+                continue
+            both = sorted({r for row in narrow for r in row.regions if r in there})
+            if both:
                 said.add(first.poll)
                 yield Problem(
                     file, first.row, "poll", f"{first.poll} in {'+'.join(both)}, where {other.poll} (row "

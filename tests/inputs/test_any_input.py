@@ -25,6 +25,25 @@ ODD_VALUES = st.sampled_from(
      "2031-05-18", "2031-05-18T10:00:00", "0001-01-01", "9999-12-31", '"2031-05-18"', "10:00:00", "[{}]"]
 )  # fmt: skip
 
+# The sound contest with one region voting, and counted, before the other, and every kind of table in it.
+PHASES = CONTEST.replace(
+    'name = "Northern Shore"', 'name = "Northern Shore"\npolling_day = 2031-04-25\ncounted = 2031-04-27'
+) + (
+    '\n[[jolt]]\ndate = 2031-03-01\nweeks = 2\nname = "The chancellor resigned"\n'
+    '\n[model]\nramp = true\ntarget_population = "voters"\nshared_lean_points = 2\n'
+)
+COUNT = """\
+seat,name,region,HU,UP,OL,OTH
+N1,Northgate,NORTH,9300,7200,,990
+N2,Pier Head,NORTH,10900,5300,,870
+"""
+RECORD = """\
+election,code,polled,result,source,note
+2027-05-16,HU,38,41.5,State Gazette,
+2027-05-16,UP,36.5,34,,
+2023-05-21,HU,40,37.1,,
+"""
+
 SLOW_SETUP = [HealthCheck.function_scoped_fixture]
 
 
@@ -53,14 +72,28 @@ def test_any_cells_in_the_last_result(changes, tmp_path):
     findings(write_folder(tmp_path / "c", result_last_csv=text))
 
 
-@settings(max_examples=60, deadline=None, suppress_health_check=SLOW_SETUP)
+@settings(max_examples=40, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(changes=CHANGES)
+def test_any_cells_in_a_count(changes, tmp_path):
+    text = with_cells(COUNT, changes).encode("utf-8", "replace")
+    findings(write_folder(tmp_path / "c", contest_toml=PHASES, **{"result_counted.csv": text}))
+
+
+@settings(max_examples=40, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(changes=CHANGES)
+def test_any_cells_in_the_record(changes, tmp_path):
+    text = with_cells(RECORD, changes).encode("utf-8", "replace")
+    findings(write_folder(tmp_path / "c", **{"past_errors.csv": text}))
+
+
+@settings(max_examples=80, deadline=None, suppress_health_check=SLOW_SETUP)
 @given(line=st.integers(0, 60), value=ODD_VALUES)
 def test_any_value_in_the_contest(line, value, tmp_path):
-    lines = CONTEST.splitlines()
+    lines = PHASES.splitlines()
     keyed = [i for i, text in enumerate(lines) if "=" in text]
     place = keyed[line % len(keyed)]
     lines[place] = f"{lines[place].split('=')[0]}= {value}"
-    findings(write_folder(tmp_path / "c", contest_toml="\n".join(lines)))
+    findings(write_folder(tmp_path / "c", contest_toml="\n".join(lines), **{"result_counted.csv": COUNT}))
 
 
 @settings(max_examples=30, deadline=None, suppress_health_check=SLOW_SETUP)
@@ -76,7 +109,10 @@ def test_any_torn_file(start, length, tmp_path):
     )
 
 
-@pytest.mark.parametrize("name", ["contest.toml", "polls.csv", "polls.xlsx", "result_last.csv"])
+@pytest.mark.parametrize(
+    "name",
+    ["contest.toml", "polls.csv", "polls.xlsx", "result_last.csv", "result_counted.csv", "past_errors.csv"],
+)
 @settings(max_examples=15, deadline=None, suppress_health_check=SLOW_SETUP)
 @given(data=st.binary(max_size=200))
 @example(data=b"\xa0")
