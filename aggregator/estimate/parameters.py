@@ -118,7 +118,7 @@ def read_parameters(
     national = modes("national", geometry.national, drift, lean + start[:, None, :])
     walk = np.zeros((samples, len(knots.national_day), parties))
     walk[:, 1:] = np.cumsum(
-        _root_of_time(knots, "national", ramp) * (geometry.national.basis @ national), axis=1
+        root_of_time(knots, "national", ramp) * (geometry.national.basis @ national), axis=1
     )
     region = np.zeros((samples, len(knots.region_day), len(country.regions), parties))
     ratio = np.ones(samples)
@@ -129,7 +129,7 @@ def read_parameters(
             region += region_start[:, None]
         ratio = region_ratio(part("region_ratio_own"), priors=priors, exp=np.exp)
         steps = geometry.region.basis @ modes("region", geometry.region, drift * ratio[:, None], region_start)
-        steps = _root_of_time(knots, "region", ramp) * steps.reshape(samples, len(knots.region_step), -1)
+        steps = root_of_time(knots, "region", ramp) * steps.reshape(samples, len(knots.region_step), -1)
         contrasts = np.cumsum(steps, axis=1).reshape(samples, len(knots.region_step), -1, parties)
         region[:, 1:] += geometry.region_contrast @ contrasts
     terms = np.zeros((samples, term_total(arrays.leans, houses=len(rows.houses)) + 1, parties))
@@ -152,7 +152,7 @@ def read_parameters(
     )
 
 
-def _root_of_time(knots: KnotArrays, level: str, ramp: Floats) -> Floats:
+def root_of_time(knots: KnotArrays, level: str, ramp: Floats) -> Floats:
     """Square root of the opinion time of each step, dims (sample, step, one)."""
     weeks = opinion_weeks(
         getattr(knots, f"{level}_step"),

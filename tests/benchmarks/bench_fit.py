@@ -266,7 +266,6 @@ def test_seconds_of_the_fit_by_stage_and_effective_draws_per_second(tmp_path: Pa
 
     in_process(f"sample_textbook({str(tmp_path)!r})", environment={})
     inputs, contest, _ = demo()
-    arrays = contest.arrays
     reference = json.loads((tmp_path / "facts.json").read_text())
     print(
         f"pm.sample() on the textbook model: {TEXTBOOK_CHAINS} x ({TEXTBOOK_TUNE} + {TEXTBOOK_DRAWS}) draws, "
