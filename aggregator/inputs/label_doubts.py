@@ -103,13 +103,13 @@ def _check_target_population(rows: Sequence[PollRow], contest: Contest) -> Itera
     counts = Counter(row.population for row in rows if row.population)
     if not counts or target in counts:
         return
-    labels = [label for label, _ in counts.most_common()]
+    labels = sorted(counts, key=lambda label: (-counts[label], label))
     near = close_spelling(target, labels)
     meant = f'Did you mean "{near}"? ' if near is not None else ""
     more = f", … ({len(labels)} in total)" if len(labels) > 5 else ""
     yield warning(
         CONTEST_FILE, None, "model.target_population",
-        f'"{target}", which no poll asks; the register has {", ".join(labels[:5])}{more}',
+        f'"{target}", while the register says {", ".join(labels[:5])}{more}',
         "a label of the register's population column",
         f"{meant}Set it to the label nearest to those who vote; as it is, all of these are read as leaning "
         f"away from {target}, by amounts no poll can show.", Rule.TARGET_POPULATION,

@@ -94,7 +94,7 @@ class TestTargetPopulation:
         assert [(p.file, p.column, p.rule.value) for p in found] == [
             ("contest.toml", "model.target_population", "R97")
         ]
-        assert "the register has adults" in found[0].found
+        assert "the register says adults" in found[0].found
 
     def test_naming_it_in_the_contest_settles_it(self, tmp_path):
         contest = CONTEST + '\n[model]\ntarget_population = "adults"\n'
