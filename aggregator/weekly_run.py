@@ -1,4 +1,4 @@
-"""The weekly refresh, start to finish: read, fit, count, weigh, write."""
+"""The weekly refresh, start to finish: read, fit, count, weigh, screen, write."""
 
 from __future__ import annotations
 
@@ -17,12 +17,13 @@ from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.problems import Problem
 from aggregator.release.folder import check_place_is_free
 from aggregator.release.write_release import write_release
+from aggregator.screens.screen_polls import screen_polls
 from aggregator.seats.counting import count_seats
 from aggregator.settings import RunSettings
 from aggregator.shelf_life.worth import headline_code, polls_worth, summarise_shelf_life
 
-# A stream of random numbers of its own, so that seats do not move when the fit draws more.
-SEATS_STREAM = 2
+# Streams of random numbers of their own, so that nothing else moves when the fit draws more.
+SEATS_STREAM, SCREENS_STREAM = 2, 3
 
 
 @dataclass(frozen=True)
@@ -116,6 +117,7 @@ def refresh(
         seats=seats,
         shelf_life=shelf_life,
         polls_worth=worth,
+        screens=screen_polls(inputs, rng=np.random.default_rng([fit.settings.seed, SCREENS_STREAM])),
         verdict=fit.verdict,
         settings=_disclosed_settings(inputs, fit),
         out=out,

@@ -221,6 +221,20 @@ def made_up_draws(
     )
 
 
+def rename_houses(draws: xr.Dataset, names: dict[str, str]) -> xr.Dataset:
+    """The same draws, with other names for some houses and their eras."""
+    houses = [names.get(str(house), str(house)) for house in draws["house"].values]
+    era_houses = [names.get(str(house), str(house)) for house in draws["era_house"].values]
+    labels = draws["era_method"].values
+    eras = [f"{house} · {label}" if label else house for house, label in zip(era_houses, labels, strict=True)]
+    return draws.assign_coords(house=houses, era=eras, era_house=("era", era_houses))
+
+
+def only_houses(draws: xr.Dataset, houses: list[str]) -> xr.Dataset:
+    """The draws of some houses alone."""
+    return draws.sel(house=houses).isel(era=draws["era_house"].isin(houses).values)
+
+
 def calendar_clock(draws: xr.Dataset) -> xr.Dataset:
     """The same draws, with opinion time that runs with the calendar from first to last."""
     weeks = (draws["day"] - draws["day"][0]) / np.timedelta64(7, "D")

@@ -88,7 +88,7 @@ PREDICTIVE = TableSchema(
             ColumnType.YES_NO,
             "–",
             "Whether the figures of the house are too far from, or too near to, what was expected: their "
-            "ranks leave the band that would hold them with chance 99 %, all houses taken together",
+            "ranks leave the band that would hold them with chance 98 %, all houses taken together",
             allowed=("yes", "no"),
             blank="said of a house as a whole only",
         ),
@@ -101,7 +101,13 @@ PRIOR_SENSITIVITY = TableSchema(
     "desk/prior_sensitivity.csv",
     "quantity and code",
     (
-        Column("quantity", ColumnType.TEXT, "–", "The number, in words"),
+        Column(
+            "quantity",
+            ColumnType.TEXT,
+            "–",
+            "Support on the day of the run, support or seats on polling day, of the largest parties",
+            allowed=("support_on_date", "support_on_polling_day", "seats_on_polling_day"),
+        ),
         CODE,
         number_column(
             "prior",

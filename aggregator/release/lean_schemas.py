@@ -1,4 +1,4 @@
-"""What the tables of leans hold: houses with their ways of working, modes, populations, alliances asked as one."""
+"""What the tables of leans hold: houses by way of working, modes, populations, alliances asked as one."""
 
 from __future__ import annotations
 

@@ -9,6 +9,7 @@ import pandas as pd
 from aggregator.inputs.contest import Contest
 from aggregator.problems import Problem
 from aggregator.release.table_schemas import POLLS_USED, POLLS_WEIGHED
+from aggregator.screens.questions import screens_by_poll
 
 REGISTER = "polls."
 """How the register's file name begins, whatever its format."""
@@ -68,7 +69,12 @@ def _disclose(rows: pd.DataFrame, regions: Sequence[str]) -> dict[str, object]:
 
 
 def build_polls_weighed_table(
-    polls: pd.DataFrame, *, unused_polls: pd.DataFrame, polls_worth: pd.DataFrame, warnings: Sequence[Problem]
+    polls: pd.DataFrame,
+    *,
+    unused_polls: pd.DataFrame,
+    polls_worth: pd.DataFrame,
+    warnings: Sequence[Problem],
+    screens: pd.DataFrame,
 ) -> pd.DataFrame:
     """Every row of the register: whether it is in the fit and why not, what it is worth, what was doubtful.
 
@@ -80,6 +86,8 @@ def build_polls_weighed_table(
         Columns ``poll``, ``worth_today`` and, where worked out, ``pareto_k``; one row per poll.
     warnings
         Findings of the reading; those about a row of the register are put beside it.
+    screens
+        Questions that polls in the fit raise, as ``screen_polls`` gives them.
 
     Returns
     -------
@@ -90,8 +98,9 @@ def build_polls_weighed_table(
     used = polls.reindex(columns=[*names]).assign(used="yes", why_not="")
     used["worth_today"] = used["poll"].astype(str).map(_by_poll(polls_worth, "worth_today")).astype(float)
     used["pareto_k"] = used["poll"].astype(str).map(_by_poll(polls_worth, "pareto_k")).astype(float)
+    used["screens"] = used["poll"].astype(str).map(screens_by_poll(screens)).fillna("")
     unused = unused_polls.reindex(columns=names).assign(
-        used="no", respondents=float("nan"), worth_today=float("nan"), pareto_k=float("nan")
+        used="no", screens="", respondents=float("nan"), worth_today=float("nan"), pareto_k=float("nan")
     )
     table = pd.concat([part for part in (used, unused) if len(part)] or [used], ignore_index=True)
     for name in ("start", "end"):

@@ -6,10 +6,15 @@ them by a test, so that neither can drift away.
 
 from __future__ import annotations
 
+from aggregator.release.check_schemas import ASSUMPTIONS, PREDICTIVE, PRIOR_SENSITIVITY
+from aggregator.release.lean_schemas import HOUSES, MODE_LEANS
 from aggregator.release.likelihood_words import LIKELIHOOD_WORDS
 from aggregator.release.rounding import CHANCE_DECIMALS, SHARE_DECIMALS_TABLE
+from aggregator.release.screens_schema import SCREENS
 from aggregator.release.table_columns import (
     ANY_COUNT,
+    CODE,
+    LEVEL,
     PERCENT,
     PROBABILITY,
     Bounds,
@@ -21,7 +26,7 @@ from aggregator.release.table_columns import (
     typed_column,
     whole_column,
 )
-from aggregator.release.table_words import Kind, Level
+from aggregator.release.table_words import Kind
 from aggregator.seats.majorities import Outcome
 
 CAUTION = Column(
@@ -34,15 +39,6 @@ CAUTION = Column(
 
 
 _DATE = date_column("date", "The day the estimate is for; for `on_polling_day` the polling day of the region")
-_CODE = Column("code", ColumnType.CODE, "–", "Party, alliance or `OTH`, as in `contest.toml`")
-_LEVEL = Column(
-    "level",
-    ColumnType.TEXT,
-    "–",
-    "What `code` stands for. `party` and `others` together make the whole; an alliance counts its members "
-    "again",
-    allowed=tuple(Level),
-)
 _KIND = Column(
     "kind",
     ColumnType.TEXT,
@@ -72,8 +68,8 @@ SUPPORT = TableSchema(
     (
         _DATE,
         Column("region", ColumnType.CODE, "–", "Region code", blank="the whole country"),
-        _CODE,
-        _LEVEL,
+        CODE,
+        LEVEL,
         _KIND,
         *_quantiles(
             "percent of the vote", of="support", bounds=PERCENT, decimals=SHARE_DECIMALS_TABLE, whole=False
@@ -86,8 +82,8 @@ SEATS = TableSchema(
     "date, code and kind",
     (
         _DATE,
-        _CODE,
-        _LEVEL,
+        CODE,
+        LEVEL,
         _KIND,
         *_quantiles("seats", of="the number of seats", bounds=ANY_COUNT, decimals=2, whole=True),
     ),
@@ -148,7 +144,7 @@ SEAT_CHANCES = TableSchema(
         Column("seat", ColumnType.CODE, "–", "Seat code, as in `result_last.csv`", from_register=True),
         typed_column("name", "Name of the seat", blank="not given"),
         Column("region", ColumnType.CODE, "–", "Region of the seat"),
-        _CODE,
+        CODE,
         number_column(
             "last_share", "percent of the vote", "Share at the last election", blank="did not stand there"
         ),
@@ -160,43 +156,6 @@ SEAT_CHANCES = TableSchema(
             decimals=CHANCE_DECIMALS,
             bounds=PROBABILITY,
         ),
-    ),
-)
-
-HOUSES = TableSchema(
-    "public/houses.csv",
-    "house, method and code",
-    (
-        typed_column("house", "The polling organisation"),
-        typed_column(
-            "method", "The house's label for its way of working", blank="one way of working, or none given"
-        ),
-        _CODE,
-        number_column(
-            "lean",
-            "percentage points",
-            "What the house reports minus what the average of the houses would report (posterior mean). "
-            "A difference, not an error",
-            bounds=Bounds(-100.0, 100.0),
-        ),
-        number_column(
-            "q05", "percentage points", "The lean is below this with chance 5 %", bounds=Bounds(-100.0, 100.0)
-        ),
-        number_column(
-            "q95",
-            "percentage points",
-            "The lean is below this with chance 95 %",
-            bounds=Bounds(-100.0, 100.0),
-        ),
-        whole_column("polls", "polls", "Polls of the house in the fit"),
-        number_column(
-            "design_effect",
-            "ratio",
-            "Posterior mean of the variance of a poll of the house's usual size, over that of a simple "
-            "random sample of that size",
-            bounds=ANY_COUNT,
-        ),
-        whole_column("usual_sample", "respondents", "The house's usual sample size"),
     ),
 )
 
@@ -216,8 +175,8 @@ SHELF_LIFE = TableSchema(
             "days",
             "Age of a poll of 1,000 respondents of a typical house, on the day of the run",
         ),
-        _CODE,
-        _LEVEL,
+        CODE,
+        LEVEL,
         *(
             number_column(
                 f"{name}{end}",
@@ -324,7 +283,28 @@ POLLS_WEIGHED = TableSchema(
             blank="not worked out",
         ),
         typed_column("warnings", "What was doubtful about the row when it was read", blank="nothing"),
+        Column(
+            "screens",
+            ColumnType.TEXT,
+            "–",
+            "Screens of `screens.csv` in which the poll appears, joined by `; `",
+            blank="none, or not in the fit",
+        ),
     ),
 )
 
-ALL_SCHEMAS = (SUPPORT, SEATS, CHANCES, SEAT_CHANCES, HOUSES, SHELF_LIFE, POLLS_USED, POLLS_WEIGHED)
+ALL_SCHEMAS = (
+    SUPPORT,
+    SEATS,
+    CHANCES,
+    SEAT_CHANCES,
+    HOUSES,
+    MODE_LEANS,
+    SHELF_LIFE,
+    ASSUMPTIONS,
+    POLLS_USED,
+    POLLS_WEIGHED,
+    SCREENS,
+    PREDICTIVE,
+    PRIOR_SENSITIVITY,
+)

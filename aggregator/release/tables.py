@@ -9,18 +9,26 @@ import pandas as pd
 import xarray as xr
 
 from aggregator.inputs.desk_inputs import DeskInputs
+from aggregator.release.assumptions_table import build_assumptions_table
 from aggregator.release.chances_table import build_chances_table
 from aggregator.release.codes import contest_codes
 from aggregator.release.houses_table import build_houses_table
+from aggregator.release.mode_leans_table import build_mode_leans_table
+from aggregator.release.model_checks import NO_CHECKS, ModelChecks
 from aggregator.release.poll_tables import build_polls_used_table, build_polls_weighed_table
 from aggregator.release.seats_tables import build_seat_chances_table, build_seats_table
 from aggregator.release.support_table import build_support_table
 from aggregator.release.table_columns import TableSchema
 from aggregator.release.table_schemas import (
+    ASSUMPTIONS,
     CHANCES,
     HOUSES,
+    MODE_LEANS,
     POLLS_USED,
     POLLS_WEIGHED,
+    PREDICTIVE,
+    PRIOR_SENSITIVITY,
+    SCREENS,
     SEAT_CHANCES,
     SEATS,
     SHELF_LIFE,
@@ -36,16 +44,23 @@ class ReleaseTables:
     ----------
     seats, seat_chances
         None where nothing is counted in seats.
+    predictive, prior_sensitivity
+        None where they were not worked out.
     """
 
     support: pd.DataFrame
     chances: pd.DataFrame
     houses: pd.DataFrame
+    mode_leans: pd.DataFrame
     shelf_life: pd.DataFrame
+    assumptions: pd.DataFrame
     polls_used: pd.DataFrame
     polls_weighed: pd.DataFrame
+    screens: pd.DataFrame
     seats: pd.DataFrame | None = None
     seat_chances: pd.DataFrame | None = None
+    predictive: pd.DataFrame | None = None
+    prior_sensitivity: pd.DataFrame | None = None
 
     def with_schemas(self) -> Iterator[tuple[TableSchema, pd.DataFrame]]:
         """Every table there is, with its schema."""
@@ -55,9 +70,14 @@ class ReleaseTables:
             (CHANCES, self.chances),
             (SEAT_CHANCES, self.seat_chances),
             (HOUSES, self.houses),
+            (MODE_LEANS, self.mode_leans),
             (SHELF_LIFE, self.shelf_life),
+            (ASSUMPTIONS, self.assumptions),
             (POLLS_USED, self.polls_used),
             (POLLS_WEIGHED, self.polls_weighed),
+            (SCREENS, self.screens),
+            (PREDICTIVE, self.predictive),
+            (PRIOR_SENSITIVITY, self.prior_sensitivity),
         )
         return ((schema, table) for schema, table in pairs if table is not None)
 
@@ -69,6 +89,8 @@ def build_tables(
     seats: xr.Dataset | None,
     shelf_life: pd.DataFrame,
     polls_worth: pd.DataFrame,
+    screens: pd.DataFrame,
+    checks: ModelChecks = NO_CHECKS,
 ) -> ReleaseTables:
     """Summarise a run as the tables of its release.
 
@@ -85,6 +107,10 @@ def build_tables(
     polls_worth
         Worth today of each poll in the fit, one row per poll: ``poll``, ``worth_today``, and ``pareto_k``
         where it was worked out.
+    screens
+        Questions that polls raise, as the schema ``SCREENS`` has them.
+    checks
+        Tests of the fit beside its convergence.
     """
     contest = inputs.contest
     codes = contest_codes(contest)
@@ -92,14 +118,20 @@ def build_tables(
         support=build_support_table(draws, contest=contest, codes=codes),
         chances=build_chances_table(draws, seats=seats, contest=contest),
         houses=build_houses_table(draws),
+        mode_leans=build_mode_leans_table(draws),
         shelf_life=shelf_life[list(SHELF_LIFE.column_names)],
+        assumptions=build_assumptions_table(checks.alternatives, contest=contest, codes=codes),
         polls_used=build_polls_used_table(inputs.polls, polls_worth=polls_worth, contest=contest),
         polls_weighed=build_polls_weighed_table(
             inputs.polls,
             unused_polls=inputs.unused_polls,
             polls_worth=polls_worth,
             warnings=inputs.warnings,
+            screens=screens,
         ),
+        screens=screens,
         seats=None if seats is None else build_seats_table(seats, contest=contest, codes=codes),
         seat_chances=None if seats is None else build_seat_chances_table(seats),
+        predictive=checks.predictive,
+        prior_sensitivity=checks.prior_sensitivity,
     )

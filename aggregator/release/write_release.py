@@ -28,6 +28,7 @@ from aggregator.release.manifest import (
     write_manifest,
 )
 from aggregator.release.method_note import build_method_note
+from aggregator.release.model_checks import NO_CHECKS, ModelChecks
 from aggregator.release.page import build_page
 from aggregator.release.seats_tables import seats_in_chamber
 from aggregator.release.table_files import round_table, write_table
@@ -73,8 +74,10 @@ def write_release(
     seats: xr.Dataset | None,
     shelf_life: pd.DataFrame,
     polls_worth: pd.DataFrame,
+    screens: pd.DataFrame,
     verdict: Verdict,
     settings: Mapping[str, object],
+    checks: ModelChecks = NO_CHECKS,
     out: Path | None = None,
 ) -> ReleaseWritten:
     """Write one release, whole or not at all.
@@ -92,11 +95,15 @@ def write_release(
         Worth of a poll of 1,000 by age and code.
     polls_worth
         One row per poll in the fit: ``poll``, ``worth_today``, and ``pareto_k`` where it was worked out.
+    screens
+        Questions that polls raise, one row each; they stay in the desk's half.
     verdict
         The judgement on the fit. A release whose checks failed says so in every file a reader may open, and
         lies under ``releases/failed/``.
     settings
         Settings of the run for the note and the manifest, ``seed`` among them.
+    checks
+        Tests of the fit beside its convergence; they inform, and fail nothing.
     out
         Where to put the release instead of ``releases/``; must not hold anything yet.
 
@@ -120,8 +127,10 @@ def write_release(
         seats=seats,
         shelf_life=shelf_life,
         polls_worth=polls_worth,
+        screens=screens,
         verdict=verdict,
         settings=settings,
+        checks=checks,
     )
     reader_half = EMBARGOED if contents.status.unpublished else PUBLIC
 
@@ -167,14 +176,24 @@ def build_contents(
     seats: xr.Dataset | None,
     shelf_life: pd.DataFrame,
     polls_worth: pd.DataFrame,
+    screens: pd.DataFrame,
     verdict: Verdict,
     settings: Mapping[str, object],
+    checks: ModelChecks = NO_CHECKS,
 ) -> ReleaseContents:
     """Work out everything a release says, without writing anything; parameters as for ``write_release``."""
     contest = inputs.contest
     counted = None if contest.counting.rule is CountingRule.NONE or inputs.last_result is None else seats
     tables = _rounded(
-        build_tables(inputs, draws=draws, seats=counted, shelf_life=shelf_life, polls_worth=polls_worth)
+        build_tables(
+            inputs,
+            draws=draws,
+            seats=counted,
+            shelf_life=shelf_life,
+            polls_worth=polls_worth,
+            screens=screens,
+            checks=checks,
+        )
     )
     chamber = None if counted is None else seats_in_chamber(counted)
     majority = None if chamber is None else majority_line(contest, chamber=chamber)

@@ -10,9 +10,13 @@ import numpy as np
 import pandas as pd
 import xarray as xr
 
+from aggregator.alternatives import Alternative
 from aggregator.inputs.contest import Contest, CountingRule
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.problems import Problem, Severity
+from aggregator.release.check_schemas import PRIOR_SENSITIVITY
+from aggregator.release.model_checks import ModelChecks
+from aggregator.screens.questions import Question, Screen, questions_table
 from aggregator.verdict import Verdict
 from tests.made_up_draws import RUN_DATE, made_up_contest, made_up_draws, made_up_last_result
 
@@ -185,6 +189,52 @@ def made_up_polls_worth(inputs: DeskInputs) -> pd.DataFrame:
     )
 
 
+def made_up_screens(inputs: DeskInputs) -> pd.DataFrame:
+    """One question about the first poll."""
+    first = inputs.polls.iloc[0]
+    question = Question(
+        screen=Screen.SAMPLE_SIZE,
+        house=first["house"],
+        code="",
+        polls=first["poll"],
+        found="5000 respondents",
+        usual="1000 respondents",
+        question="Was a digit added on the way into the register?",
+    )
+    return questions_table([question])
+
+
+def made_up_checks(draws: xr.Dataset, seats: xr.Dataset) -> ModelChecks:
+    """Other assumptions that widen or narrow polling day, one that needs a fit; figures; weight of priors."""
+    names = ["national_support_polling_day", "support_polling_day", "turnout_weight"]
+    used = draws[names]
+    middle = used.mean(("chain", "draw"))
+    narrow = middle + 0.5 * (used - middle)
+    size = "size of the shared lean"
+    alternatives = (
+        Alternative("correlation of the shared lean between elections", "0", False, None, None, 0.9),
+        Alternative("correlation of the shared lean between elections", "1/3", True, used, seats, 0.0),
+        Alternative(size, "in use", True, used, seats, 0.0),
+        Alternative(size, "none", False, narrow, seats, 0.2),
+    )
+    figures = [
+        ("", "", 120, 48.3, 88.3, 0.02, 1.04, ""),
+        ("Plumb Line", "", 60, 51.0, 91.0, 0.01, 0.98, "no"),
+        ("Weathercock", "", 60, 20.0, 55.0, 0.05, 2.6, "yes"),
+        ("Plumb Line", "FER", 12, 50.0, 91.7, 0.1, 0.9, ""),
+    ]
+    columns = ["house", "code", "figures", "inside_50", "inside_90", "mean_z", "spread_z", "stands_out"]
+    grounds = [
+        ("support_on_date", "FER", float("nan"), 0.07, float("nan"), 88.0, 0.0, 12.0, "Words on the date."),
+        ("support_on_polling_day", "FER", 0.03, 0.08, 0.06, 61.0, 30.0, 9.0, "Words on polling day."),
+    ]
+    return ModelChecks(
+        alternatives=alternatives,
+        predictive=pd.DataFrame(figures, columns=columns),
+        prior_sensitivity=pd.DataFrame(grounds, columns=list(PRIOR_SENSITIVITY.column_names)),
+    )
+
+
 def made_up_verdict(*, passed: bool = True) -> Verdict:
     """A judgement with one check."""
     table = pd.DataFrame(
@@ -220,12 +270,15 @@ def made_up_run(
     inputs = replace(
         made_up_inputs(folder, draws=draws, polls=sizes.get("polls", 30)), unpublished=unpublished
     )
+    seats = made_up_seats(draws)
     return {
         "inputs": inputs,
         "draws": draws,
-        "seats": made_up_seats(draws),
+        "seats": seats,
+        "checks": made_up_checks(draws, seats),
         "shelf_life": made_up_shelf_life(inputs.contest),
         "polls_worth": made_up_polls_worth(inputs),
+        "screens": made_up_screens(inputs),
         "verdict": made_up_verdict(passed=passed),
         "settings": {"seed": 1, "chains": 2, "draws": 60},
     }

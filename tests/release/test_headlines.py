@@ -2,6 +2,7 @@
 
 import re
 from dataclasses import replace
+from pathlib import Path
 
 import pandas as pd
 import pytest
@@ -18,6 +19,7 @@ from tests.release.made_up_desk import (
     contest_without_seats,
     made_up_inputs,
     made_up_polls_worth,
+    made_up_screens,
     made_up_seats,
     made_up_shelf_life,
 )
@@ -38,13 +40,10 @@ def tables(inputs):
         seats=made_up_seats(draws),
         shelf_life=made_up_shelf_life(inputs.contest),
         polls_worth=made_up_polls_worth(inputs),
+        screens=made_up_screens(inputs),
     )
-    names = [
-        ("support", 0), ("seats", 1), ("chances", 2), ("seat_chances", 3),
-        ("houses", 4), ("shelf_life", 5), ("polls_used", 6), ("polls_weighed", 7),
-    ]  # fmt: skip
-    pairs = list(built.with_schemas())
-    return ReleaseTables(**{name: round_table(pairs[k][1], schema=pairs[k][0]) for name, k in names})
+    pairs = ((Path(schema.path).stem, schema, table) for schema, table in built.with_schemas())
+    return ReleaseTables(**{name: round_table(table, schema=schema) for name, schema, table in pairs})
 
 
 def with_chance(tables: ReleaseTables, outcome: Outcome, probability: float, word: str) -> ReleaseTables:

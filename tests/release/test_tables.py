@@ -1,5 +1,6 @@
 """The tables of a release: what they add up to, and what may stand in them."""
 
+import csv
 from dataclasses import replace
 
 import numpy as np
@@ -17,8 +18,10 @@ from aggregator.seats.majorities import Outcome
 from tests.made_up_draws import made_up_contest, made_up_draws
 from tests.release.made_up_desk import (
     contest_without_seats,
+    made_up_checks,
     made_up_inputs,
     made_up_polls_worth,
+    made_up_screens,
     made_up_seats,
     made_up_shelf_life,
 )
@@ -42,6 +45,8 @@ def tables(run):
         seats=seats,
         shelf_life=made_up_shelf_life(inputs.contest),
         polls_worth=made_up_polls_worth(inputs),
+        screens=made_up_screens(inputs),
+        checks=made_up_checks(draws, seats),
     )
 
 
@@ -94,6 +99,7 @@ def test_an_alliance_has_rows_only_for_the_days_on_which_it_exists(run):
         seats=seats,
         shelf_life=made_up_shelf_life(contest),
         polls_worth=made_up_polls_worth(inputs),
+        screens=made_up_screens(inputs),
     )
     for table in (found.support[found.support["region"] == ""], found.seats):
         there = table[(table["code"] == "GLOW") & (table["kind"] == Kind.ON_DATE)]["date"]
@@ -120,6 +126,7 @@ def test_regional_polling_days_date_the_regional_rows(run, tables):
         seats=None,
         shelf_life=made_up_shelf_life(contest),
         polls_worth=made_up_polls_worth(inputs),
+        screens=made_up_screens(inputs),
     ).support
     final = found[found["kind"] == Kind.ON_POLLING_DAY]
     assert {d.date() for d in final[final["region"] == "PORT"]["date"]} == {early}
@@ -185,6 +192,7 @@ def test_nothing_is_said_about_seats_where_nothing_is_counted(run):
         seats=None,
         shelf_life=made_up_shelf_life(contest),
         polls_worth=made_up_polls_worth(inputs),
+        screens=made_up_screens(inputs),
     )
     assert found.seats is None
     assert found.seat_chances is None
@@ -214,6 +222,7 @@ def test_the_desk_sees_every_row_of_the_register_with_its_reason_and_doubts(run)
         inputs.polls,
         unused_polls=inputs.unused_polls,
         polls_worth=made_up_polls_worth(inputs),
+        screens=made_up_screens(inputs),
         warnings=[doubt],
     )
     assert len(table) == len(inputs.polls) + 1
@@ -221,6 +230,7 @@ def test_the_desk_sees_every_row_of_the_register_with_its_reason_and_doubts(run)
     left_out = table[table["used"] == "no"].iloc[0]
     assert (left_out["why_not"], left_out["poll"]) == ("exit poll", "X1")
     assert table.set_index("row").loc[3, "warnings"] == "sample: found 40000; expected below 20,000"
+    assert table["screens"].tolist() == ["sample_size", *[""] * (len(table) - 1)]
 
 
 @pytest.mark.parametrize(
@@ -248,9 +258,9 @@ def test_a_cell_that_a_spreadsheet_would_run_gets_an_apostrophe(text):
 def test_numbers_keep_their_minus_sign_and_only_typed_text_gets_the_apostrophe(tables):
     schema = next(s for s in ALL_SCHEMAS if s.path.endswith("houses.csv"))
     table = round_table(tables.houses.assign(house="-5 Surveys"), schema=schema)
-    first = csv_text(table, schema=schema, caution=None).splitlines()[1].split(",")
-    assert first[0] == "'-5 Surveys"
-    assert first[4].startswith("-")
+    first = next(csv.DictReader(csv_text(table, schema=schema, caution=None).splitlines()))
+    assert first["house"] == "'-5 Surveys"
+    assert first["q05"].startswith("-")
     assert "caution" not in csv_text(table, schema=schema, caution=None).splitlines()[0]
     assert csv_text(table, schema=schema, caution="CHECKS FAILED").splitlines()[0].endswith(",caution")
 
@@ -264,6 +274,7 @@ def test_order_of_draws_and_chains_changes_no_table(run, tables):
         seats=seats.isel(draw=slice(None, None, -1), chain=slice(None, None, -1)),
         shelf_life=made_up_shelf_life(inputs.contest),
         polls_worth=made_up_polls_worth(inputs),
+        screens=made_up_screens(inputs),
     )
     pd.testing.assert_frame_equal(
         round_table(found.support, schema=SUPPORT), round_table(tables.support, schema=SUPPORT), atol=0.011
