@@ -12,6 +12,7 @@ import xarray as xr
 from threadpoolctl import threadpool_limits
 
 from aggregator.estimate.compiled_election import CompiledElection, compile_election
+from aggregator.estimate.log_density import Layout
 from aggregator.estimate.model_arrays import build_arrays
 from aggregator.estimate.parameters import Parameters
 from aggregator.estimate.poll_fit import pareto_k_by_poll
@@ -28,7 +29,7 @@ from aggregator.inputs.contest import ModelOverrides
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.settings import RunSettings
 from aggregator.verdict import Verdict
-from models.arrays import ElectionArrays
+from models.arrays import ElectionArrays, Floats
 from models.priors import Priors, shared_lean_scale
 
 Progress = Callable[[str, float], None]
@@ -51,6 +52,8 @@ class Fit:
         What the model assumed.
     parameters
         Draws of the model's parameters, sample = chain · draws + draw.
+    positions, layout
+        The same draws as the sampler made them, dims (sample, coordinate), and where each variable lies.
     convergence, verdict
         The checks.
     pareto_k
@@ -63,6 +66,8 @@ class Fit:
     arrays: ElectionArrays
     priors: Priors
     parameters: Parameters
+    positions: Floats
+    layout: Layout
     convergence: Convergence
     verdict: Verdict
     pareto_k: dict[str, float]
@@ -165,6 +170,8 @@ def _sample(
         arrays=arrays,
         priors=election.priors,
         parameters=parameters,
+        positions=chains["position"].to_numpy().reshape(-1, election.density.layout.size),
+        layout=election.density.layout,
         convergence=convergence,
         verdict=judge_fit(convergence, limits=limits),
         pareto_k=pareto_k_by_poll(parameters, arrays=arrays, chains=settings.chains),
