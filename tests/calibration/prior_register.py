@@ -117,7 +117,7 @@ def draw_register(rng: np.random.Generator) -> Register:
     house = rng.permutation(np.arange(polls) % len(HOUSES))
     first = rng.integers(FIRST_FIELDWORK, POLLING_DAY - 6, size=polls).astype(float)
     # Polls with figures by region come before the early vote: afterwards nobody asks there alone.
-    first[COUNTRYWIDE:] = rng.integers(FIRST_FIELDWORK, COUNTED_DAY - 6, size=polls - COUNTRYWIDE)
+    first[COUNTRYWIDE:] = rng.integers(FIRST_FIELDWORK, int(COUNTED_DAY) - 6, size=polls - COUNTRYWIDE)
     by_telephone = (house == TELEPHONE_HOUSE) | ((house == TWO_MODES_HOUSE) & (rng.random(polls) < 0.5))
     together = (first > FIRST_ALLIANCE_DAY) & (rng.random(polls) < 0.3)
     register = Register(
