@@ -83,10 +83,11 @@ def repetition_chance(share: Floats, *, respondents: Floats, step: Floats) -> Fl
     # Determinant of a diagonal matrix less a vector times itself.
     less = 1 - (size * share**2 / diagonal).sum(axis=1)
     log_determinant = np.log(diagonal).sum(axis=1) + np.log(less)
+    # A share of n people is a multiple of 1/n, which may be coarser than the step of rounding.
+    finest = np.maximum(step, 1 / respondents).min(axis=1)
     free = share.shape[1]
-    return np.minimum(
-        1, np.exp(free * np.log(step.min(axis=1)) - free / 2 * np.log(2 * np.pi) - log_determinant / 2)
-    )
+    log_chance = free * (np.log(finest) - np.log(2 * np.pi) / 2) - log_determinant / 2
+    return np.minimum(1, np.exp(log_chance))
 
 
 def _pairs(rows: pd.DataFrame, codes: Sequence[str]) -> _Pairs:

@@ -6,6 +6,7 @@ names the innocent explanations, and asks. The table stays at the desk; it moves
 
 from __future__ import annotations
 
+import numpy as np
 import pandas as pd
 
 from aggregator.inputs.desk_inputs import DeskInputs
@@ -17,7 +18,9 @@ from aggregator.screens.repeated_figures import ask_about_repeated_figures
 from aggregator.screens.spread import ExpectedFigures, ask_about_spread
 
 
-def screen_polls(inputs: DeskInputs, *, expected: ExpectedFigures | None = None) -> pd.DataFrame:
+def screen_polls(
+    inputs: DeskInputs, *, expected: ExpectedFigures | None = None, rng: np.random.Generator
+) -> pd.DataFrame:
     """Look for polls whose figures deserve a question.
 
     Parameters
@@ -27,6 +30,8 @@ def screen_polls(inputs: DeskInputs, *, expected: ExpectedFigures | None = None)
     expected
         What a fit expects each row to print. Without it the spread of a house's figures is taken about their
         mean within windows of six weeks.
+    rng
+        Draws honest figures to hold rare spreads against.
 
     Returns
     -------
@@ -39,7 +44,7 @@ def screen_polls(inputs: DeskInputs, *, expected: ExpectedFigures | None = None)
     table = poll_table(polls, regions=regions)
     return questions_table(
         [
-            *ask_about_spread(polls, codes=codes, regions=regions, expected=expected),
+            *ask_about_spread(polls, codes=codes, regions=regions, expected=expected, rng=rng),
             *ask_about_repeated_figures(polls, codes=codes),
             *ask_about_pooled_samples(table),
             *ask_about_sample_sizes(table),

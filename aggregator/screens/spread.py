@@ -10,6 +10,12 @@ houses. At a draw of the posterior the statistic has the full number of degrees 
 codes, without a correction for what was fitted (Johnson 2004); its chances over draws are combined as twice
 their mean, which is a valid chance whatever their dependence (Vovk & Wang 2020).
 
+The chi-square distribution knows no grid: in whole points a few polls of a small party agree exactly far
+more often than it says. A look that it calls rare, and that has few degrees of freedom, is therefore held
+against honest figures that are drawn and printed with the same samples and steps of rounding too, and the
+larger of the two chances counts. Printed figures are made to sum to 100, which ties the rounding of all codes
+together in ways that differ by house: at all codes together only the variance of sampling is counted.
+
 Every house, the whole field and every code of each is a look. Half the level goes to looks at all codes
 together, half to looks at single codes; in each half chances are adjusted by Benjamini & Hochberg's
 procedure, as scipy has it.
@@ -35,7 +41,11 @@ from aggregator.screens.questions import LEVEL, Question, Screen, joined_polls
 from aggregator.screens.register_series import WINDOW_DAYS, window_of_row, without_shared_interviews
 from aggregator.screens.spread_statistic import (
     Answers,
+    Flags,
+    Floats,
     Places,
+    draw_printed,
+    draw_window_spreads,
     read_answers,
     shows_sampling,
     spread_about,
@@ -46,6 +56,12 @@ from aggregator.screens.spread_statistic import (
 LEAST_DEGREES = 5
 # Draws of the posterior that a chance is averaged over.
 DRAWS_FOR_CHANCE = 200
+# From here on the grid of rounding averages out.
+MOST_DEGREES_DRAWN = 60
+# Enough to tell a chance of one in some thousand, which a hundred looks need.
+HONEST_DRAWS = 20_000
+# Figures on one grid tie exactly, up to rounding of the arithmetic.
+_TIE = 1e-9
 
 
 @dataclass(frozen=True)
@@ -100,12 +116,13 @@ def ask_about_spread(
     codes: Sequence[str],
     regions: Sequence[str],
     expected: ExpectedFigures | None = None,
+    rng: np.random.Generator,
 ) -> list[Question]:
     """Ask where figures spread less than sampling and rounding alone would make them.
 
     Parameters as for :func:`spread_looks`.
     """
-    looks = spread_looks(polls, codes=codes, regions=regions, expected=expected)
+    looks = spread_looks(polls, codes=codes, regions=regions, expected=expected, rng=rng)
     questions = []
     for family in ([x for x in looks if not x.code], [x for x in looks if x.code]):
         if not family:
@@ -125,6 +142,7 @@ def spread_looks(
     codes: Sequence[str],
     regions: Sequence[str],
     expected: ExpectedFigures | None = None,
+    rng: np.random.Generator,
 ) -> list[Look]:
     """All looks at a register, whether they lead to a question or not.
 
@@ -138,18 +156,23 @@ def spread_looks(
         All regions of the contest: rows that ask in all of them are compared between houses.
     expected
         Expected shares of a fit; without them the means of windows are taken.
+    rng
+        Draws honest figures where chances are small.
     """
-    rows = without_shared_interviews(polls).reset_index(drop=True)
+    # In an order of their own, so that the order of the register changes nothing.
+    rows = without_shared_interviews(polls).sort_values(["house", "end", "poll"], kind="stable")
+    rows = rows.reset_index(drop=True)
     answers = read_answers(rows, codes=codes)
     looks: list[Look] = []
     for house, of_house in rows.groupby("house", sort=False):
         if expected is None:
-            looks += _looks_by_window(answers, _windows(of_house), house=str(house))
+            looks += _looks_by_window(answers, _windows(of_house), house=str(house), rng=rng)
         else:
-            looks += _looks_at_fit(answers, of_house.index.to_numpy(), house=str(house), expected=expected)
+            places = of_house.index.to_numpy()
+            looks += _looks_at_fit(answers, places, house=str(house), expected=expected, rng=rng)
     if rows["house"].nunique() > 1:
         national = rows[[set(where) == set(regions) for where in rows["regions"]]]
-        looks += _looks_by_window(answers, _windows(national), house="")
+        looks += _looks_by_window(answers, _windows(national), house="", rng=rng)
     return [look for look in looks if look.degrees >= LEAST_DEGREES]
 
 
@@ -167,12 +190,15 @@ def _split(places: Places, *, by: Places) -> list[Places]:
     return [places[by == number] for number in np.unique(by)]
 
 
-def _looks_by_window(answers: Answers, windows: list[Places], *, house: str) -> Iterator[Look]:
+def _looks_by_window(
+    answers: Answers, windows: list[Places], *, house: str, rng: np.random.Generator
+) -> Iterator[Look]:
     given = ~np.isnan(answers.share)
     for number, code in enumerate(answers.codes):
         parts = [(window[given[window, number]], np.array([number])) for window in windows]
-        yield from _look(answers, parts, house=house, code=code)
-    yield from _look(answers, [_figures_most_give(answers, w) for w in windows], house=house, code="")
+        yield from _look(answers, parts, house=house, code=code, rng=rng)
+    parts = [_figures_most_give(answers, window) for window in windows]
+    yield from _look(answers, parts, house=house, code="", rng=rng)
 
 
 def _figures_most_give(answers: Answers, window: Places) -> tuple[Places, Places]:
@@ -183,60 +209,122 @@ def _figures_most_give(answers: Answers, window: Places) -> tuple[Places, Places
     return rows, answers.free_codes(rows, codes)
 
 
-def _look(answers: Answers, parts: list[tuple[Places, Places]], *, house: str, code: str) -> Iterator[Look]:
+def _look(
+    answers: Answers, parts: list[tuple[Places, Places]], *, house: str, code: str, rng: np.random.Generator
+) -> Iterator[Look]:
     """Add windows up to one look."""
     statistic, degrees, polls = 0.0, 0, list[str]()
+    windows: list[tuple[Floats, Floats, Floats]] = []
     for rows, codes in parts:
         if len(rows) < 2:
             continue
         share, respondents = answers.share[np.ix_(rows, codes)], answers.respondents[rows]
+        step = answers.step[rows]
         middle = respondents @ share / respondents.sum()
-        shown = shows_sampling(middle, respondents=respondents, step=answers.step[rows])
+        shown = shows_sampling(middle, respondents=respondents, step=step)
         if shown.any():
-            found, free = window_spread(share[:, shown], respondents=respondents, step=answers.step[rows])
+            counted = _counted_step(step, code)
+            found, free = window_spread(share[:, shown], respondents=respondents, step=counted)
             statistic, degrees = statistic + found, degrees + free
             polls += [answers.poll[row] for row in rows]
-    if degrees:
-        yield Look(house, code, tuple(polls), statistic, degrees, float(chi2.cdf(statistic, degrees)))
+            windows.append((middle[shown], respondents, step))
+    if not degrees:
+        return
+    chance = float(chi2.cdf(statistic, degrees))
+    if chance < LEVEL and degrees < MOST_DEGREES_DRAWN:
+        drawn = np.zeros(HONEST_DRAWS)
+        for middle, respondents, step in windows:
+            drawn += draw_window_spreads(
+                middle,
+                respondents=respondents,
+                step=step,
+                counted_step=_counted_step(step, code),
+                draws=HONEST_DRAWS,
+                rng=rng,
+            )
+        chance = max(chance, _rank_chance(drawn <= statistic + _TIE))
+    yield Look(house, code, tuple(polls), statistic, degrees, chance)
 
 
-def _looks_at_fit(answers: Answers, rows: Places, *, house: str, expected: ExpectedFigures) -> Iterator[Look]:
+def _counted_step(step: Floats, code: str) -> Floats:
+    """Step of rounding whose variance counts: none at all codes together."""
+    return step if code else np.zeros_like(step)
+
+
+def _rank_chance(as_low: Flags) -> float:
+    """Chance of a value as low among honest ones; never zero, since honest draws are finite."""
+    return float((1 + as_low.sum()) / (1 + as_low.size))
+
+
+def _looks_at_fit(
+    answers: Answers,
+    rows: Places,
+    *,
+    house: str,
+    expected: ExpectedFigures,
+    rng: np.random.Generator,
+) -> Iterator[Look]:
     thin = slice(None, None, max(1, expected.share.sizes["sample"] // DRAWS_FOR_CHANCE))
     share = expected.share.isel(sample=thin).sel(code=list(answers.codes))
     shares = share.transpose("sample", "row", "code").to_numpy()
     deffs = expected.design_effect.isel(sample=thin).transpose("sample", "row").to_numpy()
     place = {row: number for number, row in enumerate(expected.share["row"].values.tolist())}
     known = [row for row in rows if answers.row[row] in place]
-    everything = np.arange(len(answers.codes))
     for number, code in [*enumerate(answers.codes), (None, "")]:
-        statistic, degrees, polls = np.zeros(len(shares)), 0, list[str]()
+        cells = []
         for row in known:
-            codes = everything if number is None else np.array([number])
-            codes = codes[~np.isnan(answers.share[row, codes])]
-            if number is None:
-                codes = answers.free_codes(np.array([row]), codes)
             at = place[answers.row[row]]
-            real, middle = answers.respondents[row] / deffs[:, at], shares[:, at, codes]
-            step = answers.step[row]
-            shown = shows_sampling(
-                middle.mean(axis=0), respondents=answers.respondents[[row]], step=answers.step[[row]]
-            )
-            if shown.any():
-                statistic += spread_about(
-                    answers.share[row, codes[shown]], expected=middle[:, shown], respondents=real, step=step
-                )
-                degrees += int(shown.sum())
-                polls.append(answers.poll[row])
-        if degrees:
-            chance = min(1.0, 2 * float(chi2.cdf(statistic, degrees).mean()))
-            yield Look(house, code, tuple(polls), float(statistic.mean()), degrees, chance)
+            codes = _codes_of_row(answers, row, number=number)
+            respondents, step = answers.respondents[[row]], answers.step[[row]]
+            middle = shares[:, at, codes].mean(axis=0)
+            shown = codes[shows_sampling(middle, respondents=respondents, step=step)]
+            if shown.size:
+                cells.append((row, shown, shares[:, at, shown], respondents / deffs[:, at]))
+        if cells:
+            yield _look_at_cells(answers, cells, house=house, code=code, rng=rng)
+
+
+def _codes_of_row(answers: Answers, row: int, *, number: int | None) -> Places:
+    """Codes of a row whose sum is free: one, or all it gives."""
+    codes = np.arange(len(answers.codes)) if number is None else np.array([number])
+    codes = codes[~np.isnan(answers.share[row, codes])]
+    return answers.free_codes(np.array([row]), codes) if number is None else codes
+
+
+def _look_at_cells(
+    answers: Answers,
+    cells: list[tuple[int, Places, Floats, Floats]],
+    *,
+    house: str,
+    code: str,
+    rng: np.random.Generator,
+) -> Look:
+    """Look at rows about what was expected of each: its codes, their expected shares, its respondents."""
+    degrees = sum(codes.size for _, codes, _, _ in cells)
+    counted = _counted_step(answers.step, code)
+    statistic = np.zeros(len(cells[0][2]))
+    for row, codes, middle, respondents in cells:
+        statistic += spread_about(
+            answers.share[row, codes], expected=middle, respondents=respondents, step=counted[row]
+        )
+    chance = min(1.0, 2 * float(chi2.cdf(statistic, degrees).mean()))
+    if chance < LEVEL and degrees < MOST_DEGREES_DRAWN:
+        drawn = np.zeros((HONEST_DRAWS // len(statistic), len(statistic)))
+        for row, _, middle, respondents in cells:
+            step = np.full(len(middle), answers.step[row])
+            printed = draw_printed(middle, respondents=respondents, step=step, draws=len(drawn), rng=rng)
+            drawn += spread_about(printed, expected=middle, respondents=respondents, step=counted[row])
+        chance = max(chance, min(1.0, 2 * _rank_chance(drawn <= statistic + _TIE)))
+    polls = tuple(answers.poll[row] for row, *_ in cells)
+    return Look(house, code, polls, float(statistic.mean()), degrees, chance)
 
 
 def _question(look: Look, *, looks: int) -> Question:
     what = f"the figures for {look.code}" if look.code else "the figures"
+    noise = "sampling and rounding" if look.code else "sampling"
     found = (
         f"X² {look.statistic:.1f} on {look.degrees} degrees of freedom, {look.ratio:.2f} of the variance of "
-        f"sampling and rounding; chance of so little {look.chance:.1g}"
+        f"{noise}; chance of so little {look.chance:.1g}"
     )
     innocent = (
         "Weighting to past votes does this and is sound work; so do rounding by a rule of the house's own, "

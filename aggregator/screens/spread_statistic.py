@@ -44,8 +44,8 @@ class Answers:
         Shares 0–1, NaN where not offered, dims (row, code).
     respondents, step
         Respondents, and step of rounding 0–1, dims (row,).
-    whole
-        Whether the given codes are all there is: their shares sum to one, dims (row,).
+    rest
+        Share 0–1 of all codes not offered, zero where the given ones are all there is, dims (row,).
     """
 
     codes: tuple[str, ...]
@@ -54,13 +54,18 @@ class Answers:
     share: Floats
     respondents: Floats
     step: Floats
-    whole: Flags
+    rest: Floats
 
     def free_codes(self, rows: Places, codes: Places) -> Places:
-        """Leave the smallest code to the rest where the codes are all there is, dims (code,)."""
-        if not codes.size or not self.whole[rows].any():
+        """Leave the smallest codes out until what is left out has enough answers to be free."""
+        if not rows.size or not codes.size:
             return codes
-        return codes[np.argsort(-self.share[np.ix_(rows, codes)].mean(axis=0), kind="stable")[:-1]]
+        size = self.respondents[rows]
+        mean = size @ self.share[np.ix_(rows, codes)] / len(rows)
+        order = np.argsort(mean, kind="stable")
+        left_out = float(size @ self.rest[rows]) / len(rows) + np.concatenate([[0.0], np.cumsum(mean[order])])
+        dropped = int(np.argmax(left_out >= LEAST_ANSWERS)) if left_out[-1] >= LEAST_ANSWERS else codes.size
+        return np.sort(codes[order[dropped:]])
 
 
 def read_answers(polls: pd.DataFrame, *, codes: Sequence[str]) -> Answers:
@@ -72,7 +77,7 @@ def read_answers(polls: pd.DataFrame, *, codes: Sequence[str]) -> Answers:
         share=polls[list(codes)].to_numpy(float) / 100,
         respondents=polls["respondents"].to_numpy(float),
         step=polls["rounding_step"].to_numpy(float) / 100,
-        whole=polls["remainder"].isna().to_numpy(),
+        rest=polls["remainder"].fillna(0.0).to_numpy(float) / 100,
     )
 
 
@@ -94,9 +99,63 @@ def window_spread(share: Floats, *, respondents: Floats, step: Floats) -> tuple[
     """
     middle = respondents @ share / respondents.sum()
     weight = np.linalg.inv(answer_variance(middle[None], respondents=respondents, step=step))
-    mean = np.linalg.solve(weight.sum(axis=0), np.einsum("icd,id->c", weight, share))
-    apart = share - mean
-    return float(np.einsum("ic,icd,id->", apart, weight, apart)), (len(share) - 1) * share.shape[1]
+    return float(_spread(share, weight)), (len(share) - 1) * share.shape[1]
+
+
+def _spread(share: Floats, weight: Floats) -> Floats:
+    """X² of shares (…, poll, code) about their mean, each poll weighted by a matrix (poll, code, code)."""
+    total = np.einsum("icd,...id->...c", weight, share)
+    mean = np.linalg.solve(weight.sum(axis=0), total[..., None])[..., 0]
+    apart = share - mean[..., None, :]
+    return (apart * np.einsum("icd,...id->...ic", weight, apart)).sum(axis=(-2, -1))
+
+
+def draw_window_spreads(
+    middle: Floats,
+    *,
+    respondents: Floats,
+    step: Floats,
+    counted_step: Floats,
+    draws: int,
+    rng: np.random.Generator,
+) -> Floats:
+    """Draw X² of honest polls of one window, sampled and printed.
+
+    Parameters
+    ----------
+    middle
+        Shares 0–1 that all polls sample, dims (code,).
+    respondents, step
+        As for :func:`window_spread`.
+    counted_step
+        The step that the variance in X² counts, dims (poll,).
+
+    Returns
+    -------
+    X², dims (draw,).
+    """
+    weight = np.linalg.inv(answer_variance(middle[None], respondents=respondents, step=counted_step))
+    printed = draw_printed(middle[None], respondents=respondents, step=step, draws=draws, rng=rng)
+    return _spread(printed, weight)
+
+
+def draw_printed(
+    share: Floats, *, respondents: Floats, step: Floats, draws: int, rng: np.random.Generator
+) -> Floats:
+    """Draw figures as they are printed: sampled, then rounded; dims (draw, poll, code).
+
+    Parameters
+    ----------
+    share
+        Shares 0–1, dims (poll or 1, code).
+    respondents, step
+        Dims (poll,).
+    """
+    root = np.linalg.cholesky(answer_variance(share, respondents=respondents, step=np.zeros_like(step)))
+    noise = rng.normal(size=(draws, len(respondents), share.shape[-1]))
+    figures = share + np.einsum("icd,nid->nic", root, noise)
+    grid = step[:, None]
+    return np.where(grid > 0, np.round(figures / np.where(grid > 0, grid, 1)) * grid, figures)
 
 
 def spread_about(share: Floats, *, expected: Floats, respondents: Floats, step: float) -> Floats:
@@ -105,7 +164,7 @@ def spread_about(share: Floats, *, expected: Floats, respondents: Floats, step: 
     Parameters
     ----------
     share
-        Shares 0–1 whose sum is free, dims (code,).
+        Shares 0–1 whose sum is free, dims (code,) or (…, sample, code).
     expected
         Expected shares, dims (sample, code).
     respondents
@@ -113,11 +172,11 @@ def spread_about(share: Floats, *, expected: Floats, respondents: Floats, step: 
 
     Returns
     -------
-    X² with as many degrees of freedom as codes, dims (sample,).
+    X² with as many degrees of freedom as codes, dims (…, sample).
     """
     variance = answer_variance(expected, respondents=respondents, step=np.full(len(expected), step))
     apart = share - expected
-    return (apart * np.linalg.solve(variance, apart[..., None])[..., 0]).sum(axis=1)
+    return (apart * np.linalg.solve(variance, apart[..., None])[..., 0]).sum(axis=-1)
 
 
 def answer_variance(share: Floats, *, respondents: Floats, step: Floats) -> Floats:
