@@ -218,3 +218,7 @@ class Contest(_Frozen):
             if alliance.code == code:
                 return alliance.members
         return (code,)
+
+    def without_jolts_after(self, day: date) -> Contest:
+        """Give the contest as it could be written on a day: nobody knew of a later jolt."""
+        return self.model_copy(update={"jolts": tuple(j for j in self.jolts if j.date <= day)})

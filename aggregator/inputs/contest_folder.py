@@ -130,6 +130,8 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
         problems += check_counted_later(contest, day=run_day.day)
     out = {row.row for row, _ in unused}
     problems = gather_habits(problems, house_of_row={row.row: row.house for row in register.rows})
+    if as_of is not None:
+        contest = contest.without_jolts_after(as_of)
     return DeskInputs(
         folder=folder,
         contest=contest,

@@ -259,3 +259,10 @@ def test_a_contest_without_regions_is_one_country(tmp_path):
     assert list(inputs.polls["regions"]) == [("ALL",)]
     assert set(inputs.last_result["region"]) == {"ALL"}
     assert {p.rule.value for p in inputs.warnings} == {"R60", "R61"}
+
+
+def test_as_of_a_day_no_later_jolt_is_known(tmp_path):
+    contest = CONTEST + "\n[[jolt]]\ndate = 2031-02-03\n\n[[jolt]]\ndate = 2031-04-07\n"
+    folder = write_folder(tmp_path / "c", contest_toml=contest)
+    assert [j.date.month for j in read(folder).contest.jolts] == [2, 4]
+    assert [j.date.month for j in read(folder, as_of=date(2031, 4, 6)).contest.jolts] == [2]
