@@ -44,8 +44,6 @@ class Answers:
         Shares 0–1, NaN where not offered, dims (row, code).
     respondents, step
         Respondents, and step of rounding 0–1, dims (row,).
-    rest
-        Share 0–1 of all codes not offered, zero where the given ones are all there is, dims (row,).
     """
 
     codes: tuple[str, ...]
@@ -54,18 +52,19 @@ class Answers:
     share: Floats
     respondents: Floats
     step: Floats
-    rest: Floats
 
     def free_codes(self, rows: Places, codes: Places) -> Places:
-        """Leave the smallest codes out until what is left out has enough answers to be free."""
+        """Leave the smallest codes out until what is left out has answers enough to be free.
+
+        Figures that make up a whole are tied: the last one is what the others leave.
+        """
         if not rows.size or not codes.size:
             return codes
-        size = self.respondents[rows]
-        mean = size @ self.share[np.ix_(rows, codes)] / len(rows)
-        order = np.argsort(mean, kind="stable")
-        left_out = float(size @ self.rest[rows]) / len(rows) + np.concatenate([[0.0], np.cumsum(mean[order])])
-        dropped = int(np.argmax(left_out >= LEAST_ANSWERS)) if left_out[-1] >= LEAST_ANSWERS else codes.size
-        return np.sort(codes[order[dropped:]])
+        respondents = self.respondents[rows]
+        answers = respondents @ self.share[np.ix_(rows, codes)] / len(rows)
+        order = np.argsort(-answers, kind="stable")
+        left_out = respondents.mean() - np.cumsum(answers[order])
+        return np.sort(codes[order[left_out >= LEAST_ANSWERS]])
 
 
 def read_answers(polls: pd.DataFrame, *, codes: Sequence[str]) -> Answers:
@@ -77,7 +76,6 @@ def read_answers(polls: pd.DataFrame, *, codes: Sequence[str]) -> Answers:
         share=polls[list(codes)].to_numpy(float) / 100,
         respondents=polls["respondents"].to_numpy(float),
         step=polls["rounding_step"].to_numpy(float) / 100,
-        rest=polls["remainder"].fillna(0.0).to_numpy(float) / 100,
     )
 
 
