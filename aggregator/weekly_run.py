@@ -3,27 +3,38 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 from datetime import date
+from functools import partial
 from pathlib import Path
 
 import numpy as np
 import pandas as pd
+import xarray as xr
+from threadpoolctl import threadpool_limits
 
+from aggregator.alternatives import Alternative
 from aggregator.estimate.fit import Fit, fit_contest
+from aggregator.estimate.lean_alternatives import lean_alternatives
+from aggregator.estimate.lean_sizes import late_undecided
+from aggregator.estimate.predictive_checks import summarise_predictive
+from aggregator.estimate.prior_sensitivity import summarise_prior_sensitivity
 from aggregator.inputs.contest import CountingRule
 from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.problems import Problem
 from aggregator.release.folder import check_place_is_free
+from aggregator.release.model_checks import ModelChecks
 from aggregator.release.write_release import write_release
 from aggregator.screens.screen_polls import screen_polls
 from aggregator.seats.counting import count_seats
 from aggregator.settings import RunSettings
 from aggregator.shelf_life.worth import headline_code, polls_worth, summarise_shelf_life
+from models.dimensions import DATE
+from models.priors import shared_lean_points
 
 # Streams of random numbers of their own, so that nothing else moves when the fit draws more.
-SEATS_STREAM, SCREENS_STREAM = 2, 3
+SEATS_STREAM, SCREENS_STREAM, LEAN_STREAM, PREDICTIVE_STREAM, PRIOR_STREAM = 2, 3, 4, 5, 6
 
 
 @dataclass(frozen=True)
@@ -94,22 +105,16 @@ def refresh(
     if out is not None:
         check_place_is_free(out)
     fit = fit_contest(inputs, settings=settings or RunSettings(), progress=progress)
-    seats = None
-    if inputs.contest.counting.rule is not CountingRule.NONE and inputs.last_result is not None:
-        progress("counting seats", 0.0)
-        seats = count_seats(
-            fit.draws,
-            last_result=inputs.last_result,
-            counted_result=inputs.counted_result,
-            contest=inputs.contest,
-            rng=np.random.default_rng([fit.settings.seed, SEATS_STREAM]),
-        )
+    progress("counting seats", 0.0)
+    seats = _count_seats(inputs, fit, fit.draws)
     progress("weighing the polls", 0.0)
     worth = _weigh_polls(inputs, fit)
+    voting = inputs.contest.last_polling_day
     shelf_life = summarise_shelf_life(
-        fit.draws,
-        alliances=[a for a in inputs.contest.alliances if a.active_on(inputs.contest.polling_day)],
+        fit.draws, alliances=[a for a in inputs.contest.alliances if a.active_on(voting)]
     )
+    progress("testing the model", 0.0)
+    checks = _test_model(inputs, fit, seats)
     progress("writing the release", 0.0)
     written = write_release(
         inputs,
@@ -117,9 +122,10 @@ def refresh(
         seats=seats,
         shelf_life=shelf_life,
         polls_worth=worth,
-        screens=screen_polls(inputs, rng=np.random.default_rng([fit.settings.seed, SCREENS_STREAM])),
+        screens=screen_polls(inputs, rng=_stream(fit, SCREENS_STREAM)),
         verdict=fit.verdict,
         settings=_disclosed_settings(inputs, fit),
+        checks=checks,
         out=out,
     )
     return RefreshOutcome(
@@ -132,6 +138,63 @@ def refresh(
     )
 
 
+def _count_seats(inputs: DeskInputs, fit: Fit, draws: xr.Dataset) -> xr.Dataset | None:
+    """Count seats from draws; None where nothing is counted."""
+    if inputs.contest.counting.rule is CountingRule.NONE or inputs.last_result is None:
+        return None
+    return count_seats(
+        draws,
+        last_result=inputs.last_result,
+        counted_result=inputs.counted_result,
+        contest=inputs.contest,
+        rng=_stream(fit, SEATS_STREAM),
+    )
+
+
+def _test_model(inputs: DeskInputs, fit: Fit, seats: xr.Dataset | None) -> ModelChecks:
+    """What informs about the fit and never fails it."""
+    stream = partial(_stream, fit)
+    with threadpool_limits(1):
+        return ModelChecks(
+            alternatives=tuple(
+                _with_seats(alternative, inputs, fit, seats)
+                for alternative in lean_alternatives(inputs, fit, rng=stream(LEAN_STREAM))
+            ),
+            predictive=summarise_predictive(
+                fit.parameters,
+                arrays=fit.arrays,
+                alliances=inputs.contest.alliances,
+                rng=stream(PREDICTIVE_STREAM),
+            ),
+            prior_sensitivity=summarise_prior_sensitivity(
+                fit.draws,
+                seats=seats,
+                positions=fit.positions,
+                layout=fit.layout,
+                parameters=fit.parameters,
+                arrays=fit.arrays,
+                priors=fit.priors,
+                contest=inputs.contest,
+                rng=stream(PRIOR_STREAM),
+            ),
+        )
+
+
+def _stream(fit: Fit, number: int) -> np.random.Generator:
+    return np.random.default_rng([fit.settings.seed, number])
+
+
+def _with_seats(
+    alternative: Alternative, inputs: DeskInputs, fit: Fit, seats: xr.Dataset | None
+) -> Alternative:
+    """Count the seats of another assumption; the run's own are those that the release shows."""
+    if alternative.draws is None or alternative.in_use:
+        return replace(alternative, seats=seats if alternative.in_use else None)
+    # Only polling day is asked for: a series without dates.
+    undated = alternative.draws["support_polling_day"].expand_dims({DATE: pd.DatetimeIndex([])})
+    return replace(alternative, seats=_count_seats(inputs, fit, alternative.draws.assign(support=undated)))
+
+
 def _weigh_polls(inputs: DeskInputs, fit: Fit) -> pd.DataFrame:
     worth = polls_worth(fit.draws, inputs.polls, code=headline_code(fit.draws))
     return worth.assign(pareto_k=worth["poll"].map(fit.pareto_k))
@@ -141,6 +204,23 @@ def _disclosed_settings(inputs: DeskInputs, fit: Fit) -> dict[str, object]:
     """Settings that the note and the manifest state."""
     return {
         **asdict(fit.settings),
+        "shared_lean": _shared_lean(inputs, fit),
         "priors": asdict(fit.priors),
         "model": inputs.contest.model.model_dump(mode="json"),
+    }
+
+
+def _shared_lean(inputs: DeskInputs, fit: Fit) -> dict[str, object]:
+    """Size of the error that all polls share, in points at 40 %, and what the undecided add to it."""
+    undecided = late_undecided(inputs.polls)
+    points = {
+        code: shared_lean_points(float(size))
+        for code, size in zip(fit.arrays.country.parties, fit.arrays.country.lean_size, strict=True)
+    }
+    most = max(points.values())
+    added = shared_lean_points(undecided * fit.priors.undecided_stray)
+    return {
+        "points_at_40": points,
+        "late_undecided": undecided,
+        "undecided_adds": most - (most**2 - added**2) ** 0.5,
     }

@@ -88,3 +88,8 @@ class Priors:
 def shared_lean_scale(points_at_40: float) -> float:
     """Log-unit scale of the shared lean, times √p, from its size in points for a party at 40 %."""
     return points_at_40 / 100 / sqrt(0.4 * 0.6)
+
+
+def shared_lean_points(scale: float) -> float:
+    """Size in points for a party at 40 % of a shared lean in log units × √p: `shared_lean_scale` reversed."""
+    return 100 * scale * sqrt(0.4 * 0.6)

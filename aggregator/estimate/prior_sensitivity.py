@@ -195,8 +195,8 @@ def explained_part(number: Floats, *, causes: list[Floats]) -> list[float]:
         columns = np.asarray(cause, dtype=float).reshape(samples, -1)
         design = np.column_stack([design, columns[:, np.ptp(columns, axis=0) > 0]])
         fitted, _, rank, _ = np.linalg.lstsq(design, number, rcond=None)
-        left = float(((number - design @ fitted) ** 2).sum()) / max(samples - rank, 1)
-        now = max(1 - left / total, explained)
+        left = float(((number - design @ fitted) ** 2).sum()) / max(samples - int(rank), 1)
+        now = max(1.0 - left / total, explained)
         parts.append(now - explained)
         explained = now
     return parts
@@ -314,15 +314,10 @@ def word_sensitivity(number: str, row: Mapping[str, object]) -> str:
         f"How sure the model is of {number} rests {'mostly ' if most >= 50 else 'first '}on {first} "
         f"({most} % of the variance{f'; {rest}' if rest else ''})"
     )
-    sizes = {
-        "the size of the shared error": row[SHARED_LEAN],
-        "the priors of the model's scales": row[PRIOR],
-    }
-    moved = [name for name, size in sizes.items() if float(size) >= SENSITIVE_FROM]  # type: ignore[arg-type]
-    still = [name for name, size in sizes.items() if name not in moved]
-    tail = [f"it would move with {' and with '.join(moved)}"] if moved else []
-    tail += [f"{'hardly' if moved else 'it would hardly move'} with {' or '.join(still)}"] if still else []
-    return f"{opening}; {', '.join(tail)}."
+    lean, prior = (float(row[name]) for name in (SHARED_LEAN, PRIOR))  # type: ignore[arg-type]
+    moved = " It would move with the size of that error." if lean >= SENSITIVE_FROM else ""
+    held = "would move it too" if prior >= SENSITIVE_FROM else "hardly matter to it"
+    return f"{opening}.{moved} The priors of the model's scales {held}."
 
 
 def _log_likelihood(parameters: Parameters, *, arrays: ElectionArrays) -> Floats:

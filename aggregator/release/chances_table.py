@@ -47,7 +47,7 @@ def build_chances_table(draws: xr.Dataset, *, seats: xr.Dataset | None, contest:
     kinds = [Kind.ON_DATE] * len(days) + [Kind.ON_POLLING_DAY]
     labels: list[dict[str, object]] = []
     chances: list[FloatArray] = []
-    for place, (day, kind) in enumerate(zip([*days, contest.polling_day], kinds, strict=True)):
+    for place, (day, kind) in enumerate(zip([*days, contest.last_polling_day], kinds, strict=True)):
         outcomes = leads_in_draws(support[place], outcome=Outcome.MOST_SUPPORT)
         if won is not None and majority is not None:
             active = [alliance for alliance in contest.alliances if alliance.active_on(day)]

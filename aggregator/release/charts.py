@@ -13,6 +13,7 @@ from aggregator.release.chart_style import CHART_READING, CodeLook, Frame, Layou
 from aggregator.release.contents import ReleaseContents
 from aggregator.release.headlines import POLL_SIZE
 from aggregator.release.interval_charts import build_houses_chart, build_seats_chart
+from aggregator.release.lean_page_tables import era_name
 from aggregator.release.over_time_chart import OverTime, build_over_time_chart
 from aggregator.release.page_tables import WORTH_AGES
 from aggregator.release.poll_points import build_poll_points
@@ -112,7 +113,7 @@ def _support_over_time(
         unit="percent of the vote",
         decimals=1,
         run_date=contents.run_date,
-        polling_day=contents.contest.polling_day,
+        polling_day=contents.contest.last_polling_day,
         points=build_poll_points(contents.inputs, codes=[look.code for look in looks]),
         silence=contents.contest.release.silence,
     )
@@ -144,7 +145,7 @@ def _shares_alt_text(title: str, rows: pd.DataFrame, looks: list[CodeLook], cont
         parts.append(part)
     return _with_alarms(
         f"{title}. Mean and 90 % interval on {date_text(contents.run_date)} "
-        f"and on {date_text(contents.contest.polling_day)}: {'; '.join(parts)}.",
+        f"and on {date_text(contents.contest.last_polling_day)}: {'; '.join(parts)}.",
         contents,
     )
 
@@ -156,14 +157,18 @@ def _houses_chart(contents: ReleaseContents, looks: dict[str, CodeLook]) -> Rele
         houses["code"].isin([c.code for c in chosen]) & ((houses["q05"] > 0) | (houses["q95"] < 0))
     ]
     names = contents.names
-    listed = [f"{r['house']}, {names[r['code']]} {points_text(r['lean'])}" for r in clear.to_dict("records")]
+    listed = [
+        f"{era_name(r['house'], r['method'])}, {names[r['code']]} {points_text(r['lean'])}"
+        for r in clear.to_dict("records")
+    ]
     title = "Which way each house leans"
     return ReleaseChart(
         name="house_leans",
         title=title,
         reading="Reported share minus what the average of the houses would report, in percentage points. "
         "Shape: estimate; line: 90 % interval; upright line: average of the houses. "
-        "A lean is a difference, not an error. Houses in alphabetical order.",
+        "A lean is a difference, not an error. Houses in alphabetical order; below a house's name, its way "
+        "of working where it has had several.",
         alt_text=_with_alarms(
             f"{title}. {houses['house'].nunique()} houses. 90 % intervals that leave out zero, in points: "
             f"{'; '.join(listed) if listed else 'none'}.",
@@ -201,7 +206,7 @@ def _worth_chart(contents: ReleaseContents) -> ReleaseChart:
 def _seats_chart(contents: ReleaseContents, looks: dict[str, CodeLook], seats: pd.DataFrame) -> ReleaseChart:
     chosen = list(looks.values())
     chamber, majority = contents.chamber or 0, contents.majority or 0
-    title = f"Seats on polling day, {date_text(contents.contest.polling_day)}"
+    title = f"Seats on polling day, {date_text(contents.contest.last_polling_day)}"
     return ReleaseChart(
         name="seats_on_polling_day",
         title=title,
@@ -225,7 +230,7 @@ def _seats_over_time_chart(
         unit="seats",
         decimals=0,
         run_date=contents.run_date,
-        polling_day=contents.contest.polling_day,
+        polling_day=contents.contest.last_polling_day,
         line_at=contents.majority,
         line_label=f"majority: {contents.majority}",
         silence=contents.contest.release.silence,

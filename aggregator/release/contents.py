@@ -17,6 +17,24 @@ from aggregator.verdict import Verdict
 
 
 @dataclass(frozen=True)
+class Pace:
+    """How fast opinion moves on polling day, over its usual pace.
+
+    Attributes
+    ----------
+    middle, low, high
+        Median and ends of the 90 % interval.
+    told
+        How far the polls tell it: one minus posterior over prior variance, 0–1; None where not known.
+    """
+
+    middle: float
+    low: float
+    high: float
+    told: float | None
+
+
+@dataclass(frozen=True)
 class ReleaseContents:
     """Everything page, note and charts are made from.
 
@@ -36,6 +54,8 @@ class ReleaseContents:
         The opening sentences.
     chamber, majority
         Seats in the chamber and seats that make a majority; None where nothing is counted in seats.
+    pace
+        How fast opinion moves towards the end; None where it runs evenly.
     """
 
     inputs: DeskInputs
@@ -46,6 +66,7 @@ class ReleaseContents:
     headlines: Headlines
     chamber: int | None
     majority: int | None
+    pace: Pace | None = None
 
     @property
     def contest(self) -> Contest:
@@ -107,7 +128,7 @@ class ReleaseContents:
             f"{self.contest.title}. Source: {publisher}{_counted(self.poll_count, 'poll')} "
             f"by {_counted(self.house_count, 'house')}, {whole_text(self.respondents)} respondents, "
             f"fieldwork {date_text(first)} to {date_text(polls['end'].max().date())}; "
-            f"run of {date_text(self.run_date)}; polling day {date_text(self.contest.polling_day)}."
+            f"run of {date_text(self.run_date)}; polling day {date_text(self.contest.last_polling_day)}."
         )
 
     @property

@@ -67,7 +67,7 @@ def _support_sentence(tables: ReleaseTables, contest: Contest) -> str:
     names = contest.party_names
     rows = national_parties(tables.support, kind=Kind.ON_POLLING_DAY)
     lead = likeliest(tables.chances, Outcome.MOST_SUPPORT, kind=Kind.ON_POLLING_DAY)
-    when = f"On polling day, {date_text(contest.polling_day)},"
+    when = f"On polling day, {date_text(contest.last_polling_day)},"
     if lead["probability"] >= NAMED_LEADER_FROM:
         row = rows[rows["code"] == lead["code"]].iloc[0]
         return (
@@ -133,7 +133,7 @@ def _majority_sentence(chances: pd.DataFrame, contest: Contest, majority: int, *
     alone = likeliest(chances, Outcome.MAJORITY_ALONE, kind=Kind.ON_POLLING_DAY)
     party = "it" if alone["code"] == leader else contest.party_names[alone["code"]]
     opening = f"Alone, {party} is {_worded(alone)} to reach a majority of {whole_text(majority)}"
-    alliances = {a.code: a for a in contest.alliances if a.active_on(contest.polling_day)}
+    alliances = {a.code: a for a in contest.alliances if a.active_on(contest.last_polling_day)}
     if not alliances:
         return f"{opening}."
     together = likeliest(chances, Outcome.MAJORITY_ONLY_AS_ALLIANCE, kind=Kind.ON_POLLING_DAY)

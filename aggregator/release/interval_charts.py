@@ -15,10 +15,16 @@ from aggregator.release.table_words import Kind, Level
 
 ROW = 24
 """Pixels from one row to the next."""
+TALL_ROW = 32
+"""The same where a label has two lines."""
+LINE_BREAK = " · "
+"""Where a label is broken: an era's house and label are joined so."""
 
 
 def build_houses_chart(houses: pd.DataFrame, *, looks: Sequence[CodeLook], layout: Layout) -> alt.ConcatChart:
-    """One panel per party; in each, a dot and a 90 % interval per house, houses in alphabetical order.
+    """One panel per party; in each, a dot and a 90 % interval per way of working of a house.
+
+    Houses are in alphabetical order, the ways of working of one house in the order of their last polls.
 
     Parameters
     ----------
@@ -27,7 +33,10 @@ def build_houses_chart(houses: pd.DataFrame, *, looks: Sequence[CodeLook], layou
     looks
         The parties to draw, and how.
     """
-    names = sorted(houses["house"].unique(), key=lambda name: (name.casefold(), name))
+    houses = houses.assign(
+        name=[_two_lines(*era) for era in zip(houses["house"], houses["method"], strict=True)]
+    )
+    names = list(dict.fromkeys(houses["name"]))
     reach = float(np.ceil(max(houses["q95"].max(), -houses["q05"].min(), 1.0)))
     across = 4 if layout.long_names else 2
     across = min(across, len(looks))
@@ -60,9 +69,9 @@ def _house_panel(
     first: bool,
     layout: Layout,
 ) -> alt.LayerChart | alt.FacetChart:
-    rows = rows[["house", "code", "lean", "q05", "q95", "polls"]]
+    rows = rows[["name", "house", "method", "code", "lean", "q05", "q95", "polls"]]
     y = alt.Y(
-        "house:N",
+        "name:N",
         sort=list(names),
         title=None,
         axis=alt.Axis(
@@ -71,6 +80,8 @@ def _house_panel(
             domain=False,
             grid=True,
             labelLimit=160 if layout.long_names else 104,
+            labelExpr=f"split(datum.label, '{LINE_BREAK}')",
+            labelLineHeight=layout.font_size + 1,
             labelColor=INK,
             labelPadding=6,
         ),
@@ -105,7 +116,12 @@ def _house_panel(
         limit=width,
         offset=6,
     )
-    return alt.layer(zero, interval, dot).properties(width=width, height=ROW * len(names), title=title)
+    row = TALL_ROW if any(LINE_BREAK in name for name in names) else ROW
+    return alt.layer(zero, interval, dot).properties(width=width, height=row * len(names), title=title)
+
+
+def _two_lines(house: str, method: str) -> str:
+    return f"{house}{LINE_BREAK}{method}" if method else house
 
 
 def _round_ticks(reach: float) -> list[float]:

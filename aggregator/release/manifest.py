@@ -109,7 +109,7 @@ def build_manifest(
         "fieldfold": _version("fieldfold"),
         "contest": inputs.contest.title,
         "run_date": inputs.run_date.isoformat(),
-        "polling_day": inputs.contest.polling_day.isoformat(),
+        "polling_day": inputs.contest.last_polling_day.isoformat(),
         "headlines": list(headlines),
         "not_for_publication": status.not_for_publication,
         "not_for_publication_because": list(status.reasons),

@@ -10,10 +10,14 @@ from pathlib import Path
 
 from jinja2 import Environment, FileSystemLoader, StrictUndefined
 
+from aggregator.release.assumption_words import assumptions_table, shared_lean_sentences
 from aggregator.release.cautions import CAUTIONS
 from aggregator.release.contents import ReleaseContents
+from aggregator.release.grounds_words import describe_grounds
+from aggregator.release.predictive_words import predictive_sentences
 from aggregator.release.prior_words import describe_priors
 from aggregator.release.rounding import date_text, whole_text
+from aggregator.release.run_features import describe_features
 
 TEMPLATES = Path(__file__).parent / "templates"
 
@@ -51,6 +55,11 @@ def build_method_note(contents: ReleaseContents) -> str:
         priors=describe_priors(priors) if isinstance(priors, Mapping) else [],
         unused_reasons=reasons,
         unused_count=len(unused),
+        features=describe_features(contents),
+        shared_lean=shared_lean_sentences(contents),
+        assumptions=assumptions_table(contents),
+        predictive=predictive_sentences(contents.tables.predictive),
+        grounds=describe_grounds(contents),
     )
 
 

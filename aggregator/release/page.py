@@ -9,15 +9,16 @@ from markdown_it import MarkdownIt
 from markupsafe import Markup
 
 from aggregator.problems import Problem
+from aggregator.release.assumption_words import assumptions_table, shared_lean_sentences
 from aggregator.release.cautions import CAUTIONS
 from aggregator.release.chart_files import DrawnChart
 from aggregator.release.chart_style import code_looks
 from aggregator.release.contents import ReleaseContents
+from aggregator.release.lean_page_tables import asked_together_sentences, houses_table, ways_of_asking_table
 from aggregator.release.method_note import TEMPLATES
 from aggregator.release.page_tables import (
     chances_table,
     closest_seats_table,
-    houses_table,
     polls_tables,
     regions_table,
     seats_table,
@@ -64,6 +65,10 @@ def build_page(contents: ReleaseContents, *, charts: Sequence[DrawnChart], metho
         chances=chances_table(contents),
         closest=closest_seats_table(contents),
         houses=houses_table(contents),
+        asking=ways_of_asking_table(contents),
+        asked_together=asked_together_sentences(contents),
+        assumptions=assumptions_table(contents),
+        shared_lean=shared_lean_sentences(contents),
         worth=worth_table(contents),
         latest=latest,
         older=older,

@@ -12,7 +12,6 @@ from aggregator.release.contents import ReleaseContents
 from aggregator.release.rounding import (
     chance_text,
     date_text,
-    points_text,
     share_interval_text,
     share_text,
     whole_text,
@@ -75,7 +74,7 @@ def _two_statements(contents: ReleaseContents) -> tuple[str, ...]:
     return (
         "",
         f"If people voted on {date_text(contents.run_date)}",
-        f"On polling day, {date_text(contents.contest.polling_day)}",
+        f"On polling day, {date_text(contents.contest.last_polling_day)}",
     )
 
 
@@ -181,37 +180,6 @@ def closest_seats_table(contents: ReleaseContents) -> PageTable | None:
     )
 
 
-def houses_table(contents: ReleaseContents) -> PageTable:
-    """Set out the lean of every house by party, with the noise of its polls."""
-    codes = [code for code in contents.codes if code.level is Level.PARTY]
-    records = contents.tables.houses.to_dict("records")
-    by_house: dict[tuple[str, str], dict[str, dict[Hashable, Any]]] = {}
-    for row in records:
-        by_house.setdefault((row["house"], row["method"]), {})[row["code"]] = row
-    body = []
-    for (house, method), rows in by_house.items():
-        one = next(iter(rows.values()))
-        body.append(
-            (
-                f"{house} ({method})" if method else house,
-                whole_text(one["polls"]),
-                whole_text(one["usual_sample"]),
-                f"{one['design_effect']:.1f}",
-                *(_lean_over_interval(rows[code.code]) for code in codes),
-            )
-        )
-    return PageTable(
-        "Leans in percentage points against the average of the houses; 90 % intervals below. Design "
-        "effect: how much noisier a poll of the usual size is than a simple random sample of that size.",
-        ("House", "Polls", "Usual sample", "Design effect", *(code.name for code in codes)),
-        tuple(body),
-    )
-
-
-def _lean_over_interval(row: dict[Hashable, Any]) -> str:
-    return f"{points_text(row['lean'])}\n{points_text(row['q05'])} to {points_text(row['q95'])}"
-
-
 def worth_table(contents: ReleaseContents) -> PageTable:
     """Set out what a poll of 1,000 is worth at some ages, for the party with most support."""
     code = largest_code(contents.tables.support, kind=Kind.ON_DATE)
@@ -238,7 +206,7 @@ def worth_table(contents: ReleaseContents) -> PageTable:
 
 
 def _days_left(contents: ReleaseContents) -> str:
-    days = max((contents.contest.polling_day - contents.run_date).days, 0)
+    days = max((contents.contest.last_polling_day - contents.run_date).days, 0)
     return f"the {days} day{'' if days == 1 else 's'} left to polling day"
 
 

@@ -52,7 +52,7 @@ def build_seats_table(seats: xr.Dataset, *, contest: Contest, codes: Sequence[Co
     )
     final = summarise_codes(
         stack_samples(seats["seats_polling_day"], dims=(PARTY,))[None],
-        days=[contest.polling_day],
+        days=[contest.last_polling_day],
         parties=parties,
         codes=codes,
         kind=Kind.ON_POLLING_DAY,

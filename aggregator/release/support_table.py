@@ -48,7 +48,7 @@ def build_support_table(draws: xr.Dataset, *, contest: Contest, codes: Sequence[
     for region in regions:
         there = draws if region == COUNTRY else draws.sel({REGION: region})
         name = "national_support" if region == COUNTRY else "support"
-        vote = contest.polling_day if region == COUNTRY else contest.polling_day_of(region)
+        vote = contest.last_polling_day if region == COUNTRY else contest.polling_day_of(region)
         standing = [
             code
             for code in codes

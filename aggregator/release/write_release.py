@@ -30,6 +30,8 @@ from aggregator.release.manifest import (
 from aggregator.release.method_note import build_method_note
 from aggregator.release.model_checks import NO_CHECKS, ModelChecks
 from aggregator.release.page import build_page
+from aggregator.release.predictive_words import predictive_questions
+from aggregator.release.run_features import summarise_pace
 from aggregator.release.seats_tables import seats_in_chamber
 from aggregator.release.table_files import round_table, write_table
 from aggregator.release.tables import ReleaseTables, build_tables
@@ -206,7 +208,13 @@ def build_contents(
         headlines=build_headlines(tables, contest=contest, chamber=chamber, majority=majority),
         chamber=chamber,
         majority=majority,
+        pace=summarise_pace(draws, prior_sd=_pace_prior(settings)),
     )
+
+
+def _pace_prior(settings: Mapping[str, object]) -> float | None:
+    priors = settings.get("priors")
+    return priors.get("ramp_log_sd") if isinstance(priors, Mapping) else None
 
 
 def _rounded(tables: ReleaseTables) -> ReleaseTables:
@@ -234,7 +242,11 @@ def _write_tables(contents: ReleaseContents, folder: Path) -> None:
 
 
 def _write_warnings(contents: ReleaseContents, path: Path) -> None:
-    lines = [*contents.alarms, *(str(problem) for problem in contents.inputs.warnings)]
+    lines = [
+        *contents.alarms,
+        *(str(problem) for problem in contents.inputs.warnings),
+        *predictive_questions(contents.tables.predictive),
+    ]
     path.write_text("".join(f"{line}\n" for line in lines), encoding="utf-8")
 
 

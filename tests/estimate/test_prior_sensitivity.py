@@ -153,6 +153,6 @@ def test_words_name_the_largest_source_first_and_what_would_move_the_number():
     assert word_sensitivity("Ferry Party on polling day", row) == (
         "How sure the model is of Ferry Party on polling day rests mostly on the assumed error that all "
         "polls share (63 % of the variance; 25 % opinion that may still move, 12 % what polls, regions and "
-        "turnout leave open); it would move with the size of the shared error, hardly with the priors of the "
-        "model's scales."
+        "turnout leave open). It would move with the size of that error. The priors of the model's scales "
+        "hardly matter to it."
     )
