@@ -72,7 +72,9 @@ def test_saying_how_houses_ask_moves_support_no_more_than_chance(tmp_path: Path)
         inputs = read_contest_folder(
             _write_ten_houses(tmp_path / str(with_modes), with_modes=with_modes), today=TODAY
         )
-        draws = fit_contest(inputs, settings=RunSettings(seed=11, draws=500), second_attempts=False).draws
+        draws = fit_contest(
+            inputs, settings=RunSettings(seed=11, chains=2, draws=500), second_attempts=False
+        ).draws
         assert ("mode" in draws.sizes) is with_modes
         found[with_modes] = 100 * np.stack(
             [
@@ -160,6 +162,10 @@ def test_a_poll_of_5000_weighs_the_same_in_1_8_and_36_rows(tmp_path: Path) -> No
     for rows in (8, 36):
         np.testing.assert_allclose(mean[rows], mean[1], atol=0.2, err_msg=f"mean with {rows} rows")
         np.testing.assert_allclose(sd[rows], sd[1], rtol=0.1, err_msg=f"sd with {rows} rows")
+    # What a survey textbook says of one poll (Kish 1965): √(p(1 − p) deff / n).
+    share, deff = mean[1] / 100, KAPPA + (RESPONDENTS - 1) * RHO
+    textbook = 100 * np.sqrt(share * (1 - share) * deff / RESPONDENTS)
+    np.testing.assert_allclose(sd[1], textbook, rtol=0.12, err_msg="sd of one row against the textbook")
     assert (sd[0] < 0.85 * sd[1]).all(), "the check would not see rows counted as polls of their own"
 
 
@@ -175,7 +181,7 @@ def _fixed_design_effect() -> Priors:
 def _support_today(election: CompiledElection) -> np.ndarray:
     """Draws of national support in percent, turnout as last time, dims (sample, party)."""
     parameters, _ = election.sample(
-        ChainPlan(chains=2, tune=300, draws=1000, seed=5), progress=lambda _part: None
+        ChainPlan(chains=2, tune=200, draws=600, seed=5), progress=lambda _part: None
     )
     arrays: ElectionArrays = election.arrays
     regional = support_of_regions(
