@@ -57,10 +57,9 @@ def build_election_model(
         If the arrays contradict each other.
     """
     arrays.check()
-    with pm.Model(coords=_coords(arrays, geometry)) as model:
+    with pm.Model(coords=_coords(arrays)) as model:
         data = add_data(arrays, geometry=geometry, priors=priors)
-        # The count of houses is read off the data: a new house must not change the graph.
-        model.add_coord("house", arrays.rows.houses, length=data["house_number"].shape[0])
+        _add_growing_coords(model, arrays, geometry, data)
         drift = add_party_scale(
             "drift",
             log_median=priors.drift_log_median,
@@ -94,19 +93,28 @@ def build_election_model(
     return model
 
 
-def _coords(arrays: ElectionArrays, geometry: Geometry) -> dict[str, Any]:
-    coords: dict[str, Any] = {
+def _coords(arrays: ElectionArrays) -> dict[str, Any]:
+    return {
         "party": arrays.country.parties,
         "region": arrays.country.regions,
         "free_party": [arrays.country.parties[i] for i in arrays.country.free_party],
         "lean_end": ("last result", "towards polling day"),
-        "national_mode": np.arange(len(geometry.national.information)),
     }
-    if geometry.region is not None:
-        coords["region_mode"] = np.arange(len(geometry.region.information))
-    if geometry.lean is not None:
-        coords["lean_mode"] = np.arange(len(geometry.lean.information))
-    return coords
+
+
+def _add_growing_coords(
+    model: pm.Model, arrays: ElectionArrays, geometry: Geometry, data: dict[str, Array]
+) -> None:
+    """Add what may grow from week to week; its lengths are read off the data, so the graph stays as it is."""
+    model.add_coord("house", arrays.rows.houses, length=data["house_number"].shape[0])
+    for name, block in (
+        ("national", geometry.national),
+        ("region", geometry.region),
+        ("lean", geometry.lean),
+    ):
+        if block is not None:
+            modes = np.arange(len(block.information))
+            model.add_coord(f"{name}_mode", modes, length=data[f"{name}_information"].shape[0])
 
 
 def _shared_lean(data: dict[str, Array], house_scale: Array) -> dict[str, Array]:

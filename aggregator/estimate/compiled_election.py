@@ -70,7 +70,13 @@ class CompiledElection:
         )
 
 
-def compile_election(arrays: ElectionArrays, *, priors: Priors, shared_lean: bool = True) -> CompiledElection:
+def compile_election(
+    arrays: ElectionArrays,
+    *,
+    priors: Priors,
+    shared_lean: bool = True,
+    like: CompiledElection | None = None,
+) -> CompiledElection:
     """Build the model of a contest, compile it, and centre its coordinates on the pilot.
 
     Parameters
@@ -81,6 +87,9 @@ def compile_election(arrays: ElectionArrays, *, priors: Priors, shared_lean: boo
         Prior scales.
     shared_lean
         Whether polls may share an error.
+    like
+        A compiled election, such as the same contest's on another day. Where both models have the same
+        graph its compiled density is used, and its own numbers are lost: it can no longer be sampled.
 
     Raises
     ------
@@ -89,6 +98,23 @@ def compile_election(arrays: ElectionArrays, *, priors: Priors, shared_lean: boo
     """
     geometry = build_geometry(arrays, priors=priors)
     model = build_election_model(arrays, geometry=geometry, priors=priors, shared_lean=shared_lean)
-    density = compile_log_density(model)
+    if like is not None and _same_graph(model, like.model):
+        for variable in model.data_vars:
+            like.model[variable.name].set_value(variable.get_value(borrow=True))
+        density = like.density.laid_out_for(model)
+        model = like.model
+    else:
+        density = compile_log_density(model)
     start = centre_on_pilot(model, density, arrays=arrays, geometry=geometry, priors=priors)
     return CompiledElection(arrays, geometry, priors, model, density, start)
+
+
+def _same_graph(one: pm.Model, other: pm.Model) -> bool:
+    """Tell whether two models differ in their numbers alone: the same variables, data and dims."""
+
+    def parts(model: pm.Model) -> tuple[list[tuple[str, object]], list[str]]:
+        variables = [(v.name, v.type) for v in (*model.free_RVs, *model.observed_RVs, *model.data_vars)]
+        fixed = [repr(model.coords[name]) for name in ("party", "region", "free_party")]
+        return variables, fixed
+
+    return parts(one) == parts(other)

@@ -76,6 +76,11 @@ class LogDensity:
         value, *gradients = self.compiled(*[vector[place].reshape(shape) for place, shape in cuts])
         return float(value), np.concatenate(gradients, axis=None)
 
+    def laid_out_for(self, model: pm.Model) -> LogDensity:
+        """Use the same compiled function for a model with the same graph and other sizes."""
+        layout, start = _layout(model)
+        return LogDensity(layout=layout, start=start, compiled=self.compiled)
+
 
 def compile_log_density(model: pm.Model) -> LogDensity:
     """Compile log density and gradient of a model through numba.

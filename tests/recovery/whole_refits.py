@@ -8,6 +8,7 @@ from datetime import date
 from pathlib import Path
 
 import numpy as np
+import pandas as pd
 from scipy.stats import chi2
 
 from aggregator.estimate.fit import Fit, fit_contest
@@ -31,7 +32,7 @@ class Recovered:
     national_inside, regional_inside
         Whether each 90 % interval for polling day holds the truth.
     house_z
-        Errors of house effects over their posterior sd.
+        Errors of what each house, in each of its eras, prints beside the average one, over posterior sd.
     """
 
     whitened: np.ndarray
@@ -117,12 +118,19 @@ def _compare(fit: Fit, election: MadeUpElection) -> Recovered:
         .to_numpy()
         / 100
     )
-    effects = election.truth.houses.pivot(index="house", columns="code", values="lean_points")
-    effects = effects.reindex(index=fit.draws["house"].to_numpy(), columns=parties).to_numpy() / 100
-    lean = fit.draws["house_lean"]
+    effects = election.truth.houses.pivot(index=["house", "method"], columns="code", values="lean_points")
+    eras = pd.MultiIndex.from_arrays(
+        [fit.draws[name].to_numpy().astype(str) for name in ("era_house", "era_method")]
+    )
+    effects = effects.reindex(index=eras, columns=parties).to_numpy() / 100
+    lean = fit.draws["era_lean"]
     house_z = ((effects - lean.mean(("chain", "draw"))) / lean.std(("chain", "draw"))).to_numpy()
     draws = fit.draws["national_support_polling_day"].to_numpy().reshape(-1, len(parties))
+    counted = fit.arrays.counted
+    known = [] if counted is None else counted.region
+    # The count of a region is its votes, which stray from support as its seats do: nothing to be judged.
     stands = np.nan_to_num(regional) > 0
+    stands[known] = False
     low, high = np.quantile(draws, [0.05, 0.95], axis=0)
     region_low, region_high = (
         fit.draws["support_polling_day"].quantile([0.05, 0.95], ("chain", "draw")).to_numpy()
