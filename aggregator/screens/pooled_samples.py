@@ -48,14 +48,15 @@ def _long_windows(table: pd.DataFrame) -> list[Question]:
 def _sums(table: pd.DataFrame) -> list[Question]:
     questions = []
     for house, polls in table.groupby("house", sort=False):
-        # Shorter windows hold no two windows of another day.
-        for _, poll in polls[polls["days"] > FEWEST_CONTAINED].iterrows():
-            inside = polls[
-                (polls["start"] >= poll["start"])
-                & (polls["end"] <= poll["end"])
-                & (polls["days"] < poll["days"])
-                & np.array([where <= poll["regions"] for where in polls["regions"]])
-            ]
+        start, end, days = (polls[name].to_numpy() for name in ("start", "end", "days"))
+        regions = polls["regions"].to_numpy()
+        # A shorter window holds no two windows of other days.
+        for place in np.flatnonzero(days > FEWEST_CONTAINED):
+            within = (start >= start[place]) & (end <= end[place]) & (days < days[place])
+            if within.sum() < FEWEST_CONTAINED:
+                continue
+            within &= np.array([where <= regions[place] for where in regions])
+            poll, inside = polls.iloc[place], polls[within]
             together = float(inside["sample"].sum())
             if len(inside) < FEWEST_CONTAINED or abs(poll["sample"] - together) > SUM_SLACK * together:
                 continue

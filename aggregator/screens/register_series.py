@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Hashable, Sequence
+from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -28,27 +29,25 @@ def poll_table(polls: pd.DataFrame, *, regions: Sequence[str]) -> pd.DataFrame:
         ``poll``, ``house``, ``mode``, ``start``, ``end``, ``published``, ``days``, ``sample`` (respondents of
         the whole poll, as reported), ``regions`` (frozenset) and ``kind`` (national or regional).
     """
-    rows = []
-    for name, group in polls.groupby("poll", sort=False):
-        first = group.iloc[0]
-        asked = frozenset().union(*group["regions"])
-        whole = [set(where) == set(regions) for where in group["regions"]]
-        start, end = group["start"].min(), group["end"].max()
-        rows.append(
-            {
-                "poll": str(name),
-                "house": first["house"],
-                "mode": first["mode"],
-                "start": start,
-                "end": end,
-                "published": group["published"].max(),
-                "days": (end - start).days + 1,
-                "sample": float(group.loc[whole, "sample"].iloc[0] if any(whole) else group["sample"].sum()),
-                "regions": asked,
-                "kind": "national" if asked == set(regions) else "regional",
-            }
-        )
-    return pd.DataFrame(rows)
+    columns = ["poll", "house", "mode", "start", "end", "published", "regions", "sample"]
+    everywhere = frozenset(regions)
+    found: dict[str, dict[Hashable, Any]] = {}
+    for record in polls[columns].to_dict("records"):
+        asked = frozenset(record["regions"])
+        row = record | {"poll": str(record["poll"]), "regions": asked, "sample": float(record["sample"])}
+        poll = found.setdefault(row["poll"], row | {"regions": frozenset(), "sample": 0.0})
+        # A row for the whole country holds the respondents of the regional rows beside it.
+        if asked == everywhere:
+            poll["sample"] = row["sample"]
+        elif poll["regions"] != everywhere:
+            poll["sample"] += row["sample"]
+        poll["regions"] |= asked
+        poll["start"], poll["end"] = min(poll["start"], row["start"]), max(poll["end"], row["end"])
+        poll["published"] = max(poll["published"], row["published"])
+    table = pd.DataFrame(list(found.values()))
+    table["days"] = (table["end"] - table["start"]).dt.days + 1
+    table["kind"] = np.where(table["regions"] == everywhere, "national", "regional")
+    return table
 
 
 def without_shared_interviews(polls: pd.DataFrame) -> pd.DataFrame:
