@@ -15,7 +15,7 @@ from aggregator.release.rounding import chance_text, share_interval_text, share_
 PARTIES_SHOWN = 3
 NEEDS_A_FIT = "needs another fit"
 WITHOUT_LEAN = "none"
-"""The setting of an alternative in which polls share no error."""
+"""How the setting begins in which polls share no error."""
 
 type Row = dict[Hashable, Any]
 
@@ -36,7 +36,7 @@ def assumptions_table(contents: ReleaseContents) -> PageTable | None:
         if seats:
             first = by_code[shown[0]]
             cells += [_seats(first), _chance(first["largest"]), _chance(first["majority_alone"])]
-        body.append((f"{_capital(str(assumption))}: {_setting(str(setting), used=used)}", *cells))
+        body.append((f"{_capital(_setting(str(setting), used=used))}\n{assumption}", *cells))
     header = ["Assumption", *names]
     if seats:
         header += [f"{names[0]}: {what}" for what in ("seats", "most seats", "majority")]
@@ -87,7 +87,7 @@ def _size_sentences(size: Mapping[str, Any], contents: ReleaseContents) -> list[
 
 def _without_lean(contents: ReleaseContents) -> list[str]:
     table = contents.tables.assumptions
-    without = table[(table["setting"] == WITHOUT_LEAN) & table["mean"].notna()]
+    without = table[table["setting"].str.startswith(WITHOUT_LEAN) & table["mean"].notna()]
     if without.empty:
         return []
     code = parties_that_matter(table, most=1)[0]
@@ -119,7 +119,7 @@ def _chance(value: float) -> str:
 
 
 def _setting(setting: str, *, used: bool) -> str:
-    return f"{setting} (in use)" if used and setting != "in use" else setting
+    return f"{setting}, in use" if used and setting != "in use" else setting
 
 
 def _capital(text: str) -> str:

@@ -40,7 +40,8 @@ def build_houses_chart(houses: pd.DataFrame, *, looks: Sequence[CodeLook], layou
     reach = float(np.ceil(max(houses["q95"].max(), -houses["q05"].min(), 1.0)))
     across = 4 if layout.long_names else 2
     across = min(across, len(looks))
-    label_room = 170 if layout.long_names else 112
+    two_lines = any(LINE_BREAK in name for name in names)
+    label_room = (200 if two_lines else 170) if layout.long_names else 112
     width = (layout.width - label_room - 24 * across) // across
     panels = [
         _house_panel(
@@ -51,6 +52,7 @@ def build_houses_chart(houses: pd.DataFrame, *, looks: Sequence[CodeLook], layou
             reach=reach,
             width=width,
             first=place % across == 0,
+            label_room=label_room,
             layout=layout,
         )
         for place, look in enumerate(looks)
@@ -67,6 +69,7 @@ def _house_panel(
     reach: float,
     width: int,
     first: bool,
+    label_room: int,
     layout: Layout,
 ) -> alt.LayerChart | alt.FacetChart:
     rows = rows[["name", "house", "method", "code", "lean", "q05", "q95", "polls"]]
@@ -79,9 +82,16 @@ def _house_panel(
             ticks=False,
             domain=False,
             grid=True,
-            labelLimit=160 if layout.long_names else 104,
+            labelLimit=label_room - 8,
             labelExpr=f"split(datum.label, '{LINE_BREAK}')",
             labelLineHeight=layout.font_size + 1,
+            labelOffset={
+                "condition": {
+                    "test": f"indexof(datum.label, '{LINE_BREAK}') > 0",
+                    "value": -layout.font_size / 2,
+                },
+                "value": 0,
+            },
             labelColor=INK,
             labelPadding=6,
         ),

@@ -28,13 +28,12 @@ def houses_table(contents: ReleaseContents) -> PageTable:
     for row in contents.tables.houses.to_dict("records"):
         by_house.setdefault((row["house"], row["method"]), {})[row["code"]] = row
     body = []
-    for (house, method), rows in by_house.items():
+    for (house, _), rows in by_house.items():
         one = next(iter(rows.values()))
-        asked = ", ".join(_words(one[name]) for name in ("mode", "population") if one[name])
+        asked = ", ".join(_words(one[name]) for name in ("method", "mode", "population") if one[name])
         body.append(
             (
-                era_name(house, method),
-                asked or "–",
+                f"{house}\n{asked}" if asked else house,
                 whole_text(one["polls"]),
                 whole_text(one["usual_sample"]),
                 f"{one['design_effect']:.1f}",
@@ -42,19 +41,17 @@ def houses_table(contents: ReleaseContents) -> PageTable:
             )
         )
     return PageTable(
-        "Leans in percentage points against the average of the houses, mode and population of asking "
-        "included; 90 % intervals below. Design effect: how much noisier a poll of the usual size is than a "
-        "simple random sample of that size.",
+        "Leans in percentage points against the average of the houses, mode and population included (small, "
+        "below the house, after its way of working where it has had several); 90 % intervals below. Design "
+        "effect: how much noisier a poll of the usual size is than a simple random sample of that size.",
         (
             "House",
-            "How and whom",
             "Polls",
             "Usual sample",
             "Design effect",
             *(code.name for code in codes),
         ),
         tuple(body),
-        words=frozenset({0, 1}),
     )
 
 

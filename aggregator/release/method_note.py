@@ -39,6 +39,7 @@ def build_method_note(contents: ReleaseContents) -> str:
         "day": date_text,
         "whole": whole_text,
         "brief": brief_number,
+        "one_line": cell_in_one_line,
     }
     unused = contents.inputs.unused_polls
     settings = dict(contents.settings)
@@ -74,6 +75,12 @@ def inert_markdown(text: object) -> str:
     for mark in "\\`*_[]|#":
         flat = flat.replace(mark, f"\\{mark}")
     return flat
+
+
+def cell_in_one_line(cell: str) -> str:
+    """Put the second line of a page table's cell behind its first, in brackets."""
+    first, _, second = cell.partition("\n")
+    return f"{first} ({second})" if second else first
 
 
 def brief_number(value: object) -> str:

@@ -126,7 +126,7 @@ def _jolts(contents: ReleaseContents) -> Iterator[Feature]:
 def _phases(contents: ReleaseContents) -> Iterator[Feature]:
     contest = contents.contest
     days: dict[str, list[str]] = {}
-    for region in contest.regions:
+    for region in sorted(contest.regions, key=lambda region: contest.polling_day_of(region.code)):
         days.setdefault(date_text(contest.polling_day_of(region.code)), []).append(region.name)
     if len(days) < 2:
         return
