@@ -23,10 +23,19 @@ from models.shared_lean import lean_loadings, lean_scale
 from tests.models.made_up_arrays import made_up_arrays
 
 
-def _full(*, polls: int = 40, messy: bool = False) -> ElectionArrays:
+def _full(*, polls: int = 40, houses: int = 4, messy: bool = False) -> ElectionArrays:
     """A contest with a new party, an absent party, lumped parties and interval cells."""
     return made_up_arrays(
-        4, free=1, absent=True, small=True, parties=5, regions=3, polls=polls, weeks=20, messy=messy
+        4,
+        free=1,
+        absent=True,
+        small=True,
+        parties=5,
+        regions=3,
+        houses=houses,
+        polls=polls,
+        weeks=20,
+        messy=messy,
     )[0]
 
 
@@ -100,13 +109,28 @@ def test_relabelling_parties_and_regions_changes_the_density_by_nothing(election
     )
 
 
-def test_another_weeks_polls_need_no_new_compilation(election: CompiledElection) -> None:
-    """More polls go into the compiled density as data; the outcome is that of a density compiled for them."""
-    arrays = _full(polls=55, messy=election.arrays.counted is not None)
-    geometry = build_geometry(arrays, priors=Priors())
-    anew = compile_log_density(build_election_model(arrays, geometry=geometry, priors=Priors()))
-    point = _common_point(election)
-    assert _density_of(election, arrays, point) == pytest.approx(anew(point)[0], rel=1e-10)
+def test_another_weeks_polls_and_houses_need_no_new_compilation(election: CompiledElection) -> None:
+    """The density compiled for other polls gives what one compiled for these polls gives."""
+    messy = election.arrays.counted is not None
+    more = _full(polls=55, houses=6, messy=messy)
+    reused = compile_election(more, priors=Priors(), like=election)
+    try:
+        assert reused.density.compiled is election.density.compiled
+        geometry = build_geometry(more, priors=Priors())
+        anew = compile_log_density(build_election_model(more, geometry=geometry, priors=Priors()))
+        point = _common_point(reused)
+        for name, data in reused.model.named_vars.items():
+            if name.endswith("_pull"):
+                data.set_value(np.zeros_like(data.get_value()))
+        assert reused.density(point)[0] == pytest.approx(anew(point)[0], rel=1e-10)
+    finally:
+        # The tests after this one need the election's own numbers back.
+        compile_election(election.arrays, priors=Priors(), like=election)
+
+
+def test_another_contests_model_is_compiled_anew(election: CompiledElection) -> None:
+    other = compile_election(_full(messy=election.arrays.counted is None), priors=Priors(), like=election)
+    assert other.density.compiled is not election.density.compiled
 
 
 def test_the_prior_can_be_drawn_from_and_gives_plausible_registers() -> None:
