@@ -21,8 +21,8 @@ from tests.calibration.ranks import RankedElection, rank_elections
 from tests.calibration.uniformity import draw_chart, gather_places, judge_places, write_chart
 
 FALSE_ALARM, STUDY_FALSE_ALARM = 0.001, 0.01
-ELECTIONS = range(1, 25)
-CONTROL_ELECTIONS = range(25, 37)
+ELECTIONS = range(1, 21)
+CONTROL_ELECTIONS = range(25, 45)
 STUDY_ELECTIONS = range(1001, 1201)
 IMAGES = Path(__file__).parents[2] / "docs" / "images"
 SHARED_LEAN = "shared lean, polling day"
