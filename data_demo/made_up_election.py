@@ -27,6 +27,7 @@ from data_demo.made_up_scenery import Scenery
 from data_demo.made_up_schedule import draw_schedule
 from data_demo.made_up_size import SMALL_ELECTION, UNTIDY_ELECTION, ElectionSize, draw_scenery
 from data_demo.made_up_truth import Truth, tell_truth
+from data_demo.made_up_violation import Violation
 
 __all__ = [
     "SMALL_ELECTION",
@@ -68,7 +69,11 @@ class MadeUpElection:
 
 
 def simulate_election(
-    seed: int, *, size: ElectionSize | None = None, shared_lean: bool = True
+    seed: int,
+    *,
+    size: ElectionSize | None = None,
+    shared_lean: bool = True,
+    violation: Violation | None = None,
 ) -> MadeUpElection:
     """Simulate a nameless election; everything is drawn anew from the seed.
 
@@ -78,6 +83,8 @@ def simulate_election(
         How large it is; by default seven parties, eight regions, 200 seats and 250 polls.
     shared_lean
         Whether all houses share a lean (regional leans included). House effects are drawn either way.
+    violation
+        What goes wrong beside that; see ``all_violations``.
 
     Raises
     ------
@@ -85,19 +92,25 @@ def simulate_election(
         Where a size cannot be built, or has more polls than its houses' calendars have room for.
     """
     scenery = draw_scenery(size or ElectionSize(), rng=np.random.default_rng([seed, 0]))
-    return simulate_scenery(scenery, seed=seed, shared_lean=shared_lean)
+    return simulate_scenery(scenery, seed=seed, shared_lean=shared_lean, violation=violation)
 
 
-def simulate_scenery(scenery: Scenery, *, seed: int, shared_lean: bool = True) -> MadeUpElection:
+def simulate_scenery(
+    scenery: Scenery, *, seed: int, shared_lean: bool = True, violation: Violation | None = None
+) -> MadeUpElection:
     """Simulate an election whose calendar, parties, regions and houses are given."""
     # One stream per subject: another register leaves the country and its result as they were.
-    country_rng, house_rng, poll_rng, result_rng, record_rng = (
-        np.random.default_rng([seed, k]) for k in range(1, 6)
+    country_rng, house_rng, poll_rng, result_rng, record_rng, violation_rng = (
+        np.random.default_rng([seed, k]) for k in range(1, 7)
     )
+    change = violation or Violation()
+    scenery = change.change_scenery(scenery)
     country = draw_country(scenery, shared_lean=shared_lean, rng=country_rng)
+    country = change.change_country(country, rng=violation_rng)
     schedule = draw_schedule(country, rng=poll_rng)
-    houses = draw_house_truth(country, schedule=schedule, rng=house_rng)
+    houses = change.change_houses(draw_house_truth(country, schedule=schedule, rng=house_rng))
     register = draw_polls(country, houses=houses, schedule=schedule, rng=poll_rng)
+    register = change.change_register(register, country=country, rng=violation_rng)
     result = draw_polling_day(country, rng=result_rng)
     early = [r.code for r in scenery.regions if r.counted is not None]
     return MadeUpElection(

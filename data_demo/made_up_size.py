@@ -31,6 +31,8 @@ class ElectionSize:
         are asked for, so that four plain parties are ``parties=4, regional_party=False, new_party=False``.
     weeks, polled_weeks
         Weeks from the last election to polling day, and how many of the last of them see polls.
+    silent_days
+        Days from the last publication of a poll to polling day.
     special_rows
         Whether houses lump small parties, pool alliances, ask in one region, break down by region and
         publish undecided; without them each poll is national and lists every party.
@@ -66,6 +68,7 @@ class ElectionSize:
     polls: int = 250
     weeks: int = 209
     polled_weeks: int = 78
+    silent_days: int = 8
     regional_party: bool = True
     new_party: bool = True
     dissolved_party: bool = True
@@ -149,7 +152,7 @@ def draw_scenery(size: ElectionSize, *, rng: np.random.Generator) -> Scenery:
         last_election=polling_day - timedelta(weeks=size.weeks),
         polling_day=polling_day,
         first_fieldwork=polling_day - timedelta(weeks=size.polled_weeks),
-        register_end=polling_day - timedelta(days=8),
+        register_end=polling_day - timedelta(days=size.silent_days),
         parties=parties,
         regions=regions,
         houses=_nameless_houses(size, parties=parties, alliances=alliances, rng=rng),
@@ -193,13 +196,15 @@ def _check_size(size: ElectionSize) -> None:
         raise ValueError(f"{size.seats} seats are too few for {size.regions} regions.")
     if size.polled_weeks > size.weeks or size.polled_weeks < 3:
         raise ValueError(f"polled_weeks must lie between 3 and weeks = {size.weeks}: {size.polled_weeks}.")
+    if not 1 <= size.silent_days <= (size.polled_weeks - 2) * 7:
+        raise ValueError(f"silent_days must leave two weeks of {size.polled_weeks}: {size.silent_days}.")
     if size.formation_leans and not (size.alliances and size.special_rows and size.houses > 3):
         raise ValueError(
             "formation_leans needs alliances, special_rows and a fourth house, which pools them."
         )
     if size.phases and size.regions < 2:
         raise ValueError("phases need two regions or more.")
-    if size.tracker and size.polled_weeks * 7 <= TRACKED_DAYS + LAST_FREE_DAYS:
+    if size.tracker and size.polled_weeks * 7 <= TRACKED_DAYS + LAST_FREE_DAYS + size.silent_days - 8:
         raise ValueError(f"polled_weeks = {size.polled_weeks} leave no room beside a tracker.")
 
 

@@ -28,6 +28,9 @@ class Truth:
         support by the mean of the local noise in a region's seats.
     seats
         code, seats.
+    at_register_end
+        True support on the register's last day: region (blank: the country, by turnout on polling day),
+        code, support.
     houses
         One row per house, method and code: house, method, mode (its usual one), population, code; effect of
         the house in this era; whole_effect, mode and population included; lean_points: what it prints minus
@@ -62,6 +65,7 @@ class Truth:
     support: pd.DataFrame
     polling_day: pd.DataFrame
     seats: pd.DataFrame
+    at_register_end: pd.DataFrame
     houses: pd.DataFrame
     design: pd.DataFrame
     leans: pd.DataFrame
@@ -74,7 +78,7 @@ class Truth:
     interviews: pd.DataFrame
 
     def tables(self) -> dict[str, pd.DataFrame]:
-        """Every table by its file name without ending."""
+        """Tables of a contest's ``truth/`` by file name without ending."""
         return {
             "support_over_time": self.support,
             "support_polling_day": self.polling_day,
@@ -98,6 +102,7 @@ def tell_truth(country: Country, *, houses: HouseTruth, register: Register, resu
         support=_support_table(country),
         polling_day=_polling_day_table(country, result=result),
         seats=count_winners(result.votes, codes=country.scenery.codes).reset_index(),
+        at_register_end=_register_end_table(country, result=result),
         houses=_house_table(country, houses=houses),
         design=_design_table(country, houses=houses, polls=register.polls),
         leans=_leans_table(country, houses=houses),
@@ -144,6 +149,15 @@ def _polling_day_table(country: Country, *, result: PollingDay) -> pd.DataFrame:
     index = pd.MultiIndex.from_product([["", *regions], codes], names=["region", "code"])
     table = pd.DataFrame({"support": 100 * support.ravel(), "votes": 100 * votes.ravel()}, index=index)
     return table.reset_index()
+
+
+def _register_end_table(country: Country, *, result: PollingDay) -> pd.DataFrame:
+    support = np.exp(country.log_support[country.day_number(country.scenery.register_end)])
+    shares = np.vstack([result.turnout_weights @ support, support])
+    index = pd.MultiIndex.from_product(
+        [["", *country.scenery.region_codes], country.scenery.codes], names=["region", "code"]
+    )
+    return pd.DataFrame({"support": 100 * shares.ravel()}, index=index).reset_index()
 
 
 def _printed_at_the_end(country: Country, *, effect: np.ndarray) -> np.ndarray:
