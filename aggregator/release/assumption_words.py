@@ -14,6 +14,8 @@ from aggregator.release.rounding import chance_text, share_interval_text, share_
 
 PARTIES_SHOWN = 3
 NEEDS_A_FIT = "needs another fit"
+IN_USE = "in use"
+"""The setting of the size that the run itself stands on."""
 WITHOUT_LEAN = "none"
 """How the setting begins in which polls share no error."""
 
@@ -32,11 +34,14 @@ def assumptions_table(contents: ReleaseContents) -> PageTable | None:
     for (assumption, setting), rows in table.groupby(["assumption", "setting"], sort=False):
         by_code = {row["code"]: row for row in rows.to_dict("records")}
         used = rows["in_use"].iloc[0] == "yes"
+        if used and setting == IN_USE:
+            # The run itself stands in the table already, under the correlation it assumes.
+            continue
         cells = [_support(by_code[code]) for code in shown]
         if seats:
             first = by_code[shown[0]]
             cells += [_seats(first), _chance(first["largest"]), _chance(first["majority_alone"])]
-        body.append((f"{_capital(_setting(str(setting), used=used))}\n{assumption}", *cells))
+        body.append((_assumed(str(assumption), str(setting), used=used), *cells))
     header = ["Assumption", *names]
     if seats:
         header += [f"{names[0]}: {what}" for what in ("seats", "most seats", "majority")]
@@ -118,12 +123,10 @@ def _chance(value: float) -> str:
     return "–" if pd.isna(value) else chance_text(value)
 
 
-def _setting(setting: str, *, used: bool) -> str:
-    return f"{setting}, in use" if used and setting != "in use" else setting
-
-
-def _capital(text: str) -> str:
-    return text[:1].upper() + text[1:]
+def _assumed(assumption: str, setting: str, *, used: bool) -> str:
+    """Name a line of the table: the setting, below it what it is a setting of."""
+    name = f"{setting}, in use" if used else setting
+    return f"{name[:1].upper()}{name[1:]}\n{assumption}"
 
 
 def _counted(number: int, noun: str) -> str:

@@ -9,6 +9,7 @@ from typing import Any
 import altair as alt
 import pandas as pd
 
+from aggregator.inputs.contest import Silence
 from aggregator.release.chart_style import CHART_READING, CodeLook, Frame, Layout, code_looks, frame_chart
 from aggregator.release.contents import ReleaseContents
 from aggregator.release.headlines import POLL_SIZE
@@ -115,7 +116,7 @@ def _support_over_time(
         run_date=contents.run_date,
         polling_day=contents.contest.last_polling_day,
         points=build_poll_points(contents.inputs, codes=[look.code for look in looks]),
-        silence=contents.contest.release.silence,
+        silence=_silence_everywhere(contents),
     )
     return ReleaseChart(
         name=name,
@@ -127,8 +128,13 @@ def _support_over_time(
     )
 
 
+def _silence_everywhere(contents: ReleaseContents) -> list[Silence]:
+    """Silence windows of the whole country: a chart of it shows no region's own."""
+    return [window for window in contents.contest.release.silence if window.regions is None]
+
+
 def _silence_reading(contents: ReleaseContents) -> str:
-    return " Grey stripe: no publication by law." if contents.contest.release.silence else ""
+    return " Grey stripe: no publication by law." if _silence_everywhere(contents) else ""
 
 
 def _shares_alt_text(title: str, rows: pd.DataFrame, looks: list[CodeLook], contents: ReleaseContents) -> str:
@@ -233,7 +239,7 @@ def _seats_over_time_chart(
         polling_day=contents.contest.last_polling_day,
         line_at=contents.majority,
         line_label=f"majority: {contents.majority}",
-        silence=contents.contest.release.silence,
+        silence=_silence_everywhere(contents),
     )
     return ReleaseChart(
         name="seats_over_time",

@@ -84,14 +84,17 @@ def regions_table(contents: ReleaseContents) -> PageTable | None:
         return None
     final = contents.tables.support[contents.tables.support["kind"] == Kind.ON_POLLING_DAY]
     codes = [code for code in contents.codes if code.level is not Level.ALLIANCE]
+    counted = contents.inputs.counted_result
+    known = set() if counted is None else set(counted["region"])
     body = []
     for region in contents.contest.regions:
         here = final[final["region"] == region.code]
         rows = [last_row(here, code=code.code, kind=Kind.ON_POLLING_DAY) for code in codes]
-        body.append((region.name, *(_share_over_interval(row) for row in rows)))
+        cell = _counted_share if region.code in known else _share_over_interval
+        body.append((region.name, *(cell(row) for row in rows)))
     return PageTable(
         "Support on polling day by region, percent of the vote: mean, and 90 % interval below it. "
-        "A dash: does not stand there.",
+        "A dash: does not stand there." + (" Counted: the region's result." if known else ""),
         ("Region", *(code.name for code in codes)),
         tuple(body),
     )
@@ -277,6 +280,10 @@ def _text(cell: object) -> str:
 
 def _share_over_interval(row: pd.Series | None) -> str:
     return "–" if row is None else f"{share_text(row['mean'])}\n{share_interval_text(row['q05'], row['q95'])}"
+
+
+def _counted_share(row: pd.Series | None) -> str:
+    return "–" if row is None else f"{share_text(row['mean'])}\ncounted"
 
 
 def _seats_over_interval(row: pd.Series | None) -> str:
