@@ -219,6 +219,23 @@ class Contest(_Frozen):
                 return alliance.members
         return (code,)
 
-    def without_jolts_after(self, day: date) -> Contest:
-        """Give the contest as it could be written on a day: nobody knew of a later jolt."""
-        return self.model_copy(update={"jolts": tuple(j for j in self.jolts if j.date <= day)})
+    def known_on(self, day: date) -> Contest:
+        """Give the contest as it could be written on a day, at its end.
+
+        Nobody knew of a later jolt, of an alliance that forms later, that one would break up later, or of a
+        count published later. Parties, regions, seats and polling days bear no date of their own and stay.
+        """
+        alliances = (a for a in self.alliances if a.from_ is None or a.from_ <= day)
+        return self.model_copy(
+            update={
+                "jolts": tuple(j for j in self.jolts if j.date <= day),
+                "alliances": tuple(
+                    a if a.until is None or a.until <= day else a.model_copy(update={"until": None})
+                    for a in alliances
+                ),
+                "regions": tuple(
+                    r if r.counted is None or r.counted <= day else r.model_copy(update={"counted": None})
+                    for r in self.regions
+                ),
+            }
+        )

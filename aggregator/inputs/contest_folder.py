@@ -130,13 +130,12 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
         problems += check_counted_later(contest, day=run_day.day)
     out = {row.row for row, _ in unused}
     problems = gather_habits(problems, house_of_row={row.row: row.house for row in register.rows})
-    if as_of is not None:
-        contest = contest.without_jolts_after(as_of)
+    known = contest if as_of is None else contest.known_on(as_of)
     return DeskInputs(
         folder=folder,
-        contest=contest,
+        contest=known,
         run_date=run_day.day,
-        polls=build_polls(entering, shares=shares, kept=kept, contest=contest),
+        polls=build_polls(entering, shares=shares, kept=kept, contest=known),
         unused_polls=build_unused(unused, contest=contest),
         last_result=last_result,
         # Doubts about the figures of a row that does not enter are of no use to a reader.

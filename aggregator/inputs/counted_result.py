@@ -2,76 +2,27 @@
 
 from __future__ import annotations
 
-import math
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from datetime import date
 
 import pandas as pd
 
-from aggregator.inputs.close_spelling import did_you_mean
-from aggregator.inputs.contest import OTHERS, Contest
+from aggregator.inputs.contest import Contest
 from aggregator.inputs.contest_file import CONTEST_FILE
 from aggregator.inputs.reading_rules import Rule
-from aggregator.inputs.register_columns import RESULT_COLUMNS
-from aggregator.inputs.result_rows import (
-    Votes,
-    build_result,
-    check_code_columns,
-    check_kind,
-    check_places,
-    check_totals,
-    read_votes,
-    region_of,
-)
-from aggregator.inputs.sheet_table import SheetTable, as_text, check_columns
+from aggregator.inputs.result_rows import region_of
+from aggregator.inputs.sheet_table import SheetTable
+from aggregator.inputs.votes_of_today import read_votes_of_today
 from aggregator.problems import Problem, Severity
 
-# Turnout hardly ever halves or doubles between elections: a count that did is often a part of one.
-LEAST_OF_LAST, MOST_OF_LAST = 0.5, 2.0
+_UNFINISHED = "While votes are still being counted, leave counted and the region's rows out."
 
 
 def read_counted_result(
     table: SheetTable, *, contest: Contest, last_result: pd.DataFrame | None
 ) -> tuple[pd.DataFrame | None, list[Problem]]:
-    """Read the votes of regions that have been counted; they are votes for the parties of today.
-
-    Parameters
-    ----------
-    last_result
-        The last result, whose seats the counts must have too; None where there is none, or where it
-        could not be read.
-
-    Returns
-    -------
-    Columns as of the last result: ``seat``, ``name``, ``region``, then votes by party code, NaN where the
-    party did not stand. None where something is wrong. And what was found.
-    """
-    codes = [c for c in table.columns if c in contest.party_codes]
-    problems = check_columns(
-        table,
-        names=contest.party_names,
-        known=(*RESULT_COLUMNS, *contest.party_codes),
-        needed=("region",) if len(contest.regions) > 1 else (),
-        unknown_remedy="A column of counted votes bears a party's code, or OTH; nothing is inherited here.",
-    )
-    problems += check_code_columns(table, codes=codes, contest=contest)
-    rows, found = read_votes(table, codes=codes, absent=contest.party_codes)
-    problems += found
-    if len(contest.regions) > 1 and "region" not in table.columns:
-        return None, problems
-    places = list(check_places(table, contest=contest))
-    problems += places
-    problems += check_totals(table, rows, broken={p.row for p in problems if p.rule is not Rule.PLACE_TWICE})
-    problems += check_kind(table, rows)
-    problems += _check_standing(table, rows, contest)
-    if last_result is not None and not places:
-        problems += _check_seats(table, last_result=last_result, contest=contest)
-    if any(p.severity is Severity.ERROR for p in problems):
-        return None, problems
-    result = build_result(table, rows, contest=contest)
-    if last_result is not None:
-        problems += _check_turnout(table, result, last_result=last_result, contest=contest)
-    return result, problems
+    """Read the votes of regions that have been counted; see `read_votes_of_today`."""
+    return read_votes_of_today(table, contest=contest, last_result=last_result, unfinished=_UNFINISHED)
 
 
 def check_counted_regions(table: SheetTable, *, contest: Contest) -> list[Problem]:
@@ -100,95 +51,6 @@ def check_counted_regions(table: SheetTable, *, contest: Contest) -> list[Proble
                 )
             )  # fmt: skip
     return problems
-
-
-def _check_standing(table: SheetTable, rows: Sequence[Votes], contest: Contest) -> Iterator[Problem]:
-    """Check that parties have votes where they stand, and only there; one finding per party and region."""
-    where = [region_of(row, contest=contest) for row in table.rows]
-    counted = [r for r in dict.fromkeys(where) if r in contest.region_codes]
-    for code in contest.party_codes:
-        standing = [r for r in counted if contest.stands_in(code, r)]
-        if code not in table.columns:
-            if standing:
-                why = "0 where they had no vote" if code == OTHERS else "blank where it had no candidate"
-                yield Problem(
-                    table.file, 1, code, "no such column", f"votes of {contest.party_names[code]}",
-                    f"Add the column, its cells {why}.", Rule.COLUMN_NEEDED,
-                )  # fmt: skip
-            continue
-        for region in counted:
-            cells = [(row.number, votes[code]) for row, votes, r in zip(table.rows, rows, where, strict=True)
-                     if r == region]  # fmt: skip
-            with_votes = [(number, v) for number, v in cells if v > 0]
-            if region not in standing and with_votes:
-                total = sum(v for _, v in with_votes)
-                yield Problem(
-                    table.file, with_votes[0][0], code, f"{total:.0f} votes in {region}, where {code} does "
-                    "not stand", "votes only where the party stands",
-                    "Correct the votes, or the party's regions in contest.toml.", Rule.NOT_STANDING,
-                )  # fmt: skip
-            elif region in standing and code != OTHERS and all(math.isnan(v) for _, v in cells):
-                yield Problem(
-                    table.file, cells[0][0], code, f"no figure in any row of {region}, where {code} stands",
-                    "votes wherever the party stands",
-                    "It is read as having had no candidate there; enter its votes if it had.",
-                    Rule.PARTY_WITHOUT_VOTES, Severity.WARNING,
-                )  # fmt: skip
-
-
-def _check_seats(table: SheetTable, *, last_result: pd.DataFrame, contest: Contest) -> Iterator[Problem]:
-    """Check that each region that is there has the seats it has in the last result, all of them."""
-    by_seat = "seat" in table.columns
-    if by_seat != bool((last_result["seat"] != "").any()):
-        here, there = ("seat", "region") if by_seat else ("region", "seat")
-        yield Problem(
-            table.file, 1, "seat", f"rows by {here}, while the last result has rows by {there}",
-            f"one row per {there}, as in the last result", "Give both files the same rows.",
-            Rule.COUNT_PLACES,
-        )  # fmt: skip
-        return
-    if not by_seat:
-        return
-    region_of_seat = dict(zip(last_result["seat"], last_result["region"], strict=True))
-    rows: dict[str, dict[str, int]] = {}
-    for row in table.rows:
-        rows.setdefault(region_of(row, contest=contest), {})[as_text(row.cells["seat"])] = row.number
-    for region, row_of_seat in rows.items():
-        wanted = [seat for seat, r in region_of_seat.items() if r == region]
-        for seat, number in row_of_seat.items():
-            if seat not in wanted:
-                where = region_of_seat.get(seat)
-                remedy = f"The last result has it in {where}." if where else did_you_mean(seat, wanted)
-                yield Problem(
-                    table.file, number, "seat", f'"{seat}"', f"a seat of {region} in the last result",
-                    f"{remedy} Correct one of the two files.", Rule.COUNT_PLACES,
-                )  # fmt: skip
-        missing = [seat for seat in wanted if seat not in row_of_seat]
-        if missing:
-            more = f", … ({len(missing)} in total)" if len(missing) > 5 else ""
-            yield Problem(
-                table.file, min(row_of_seat.values()), "seat",
-                f"{region} without {', '.join(missing[:5])}{more}", f"all {len(wanted)} seats of the region",
-                "Add them; while some are still being counted, leave counted and the region's rows out.",
-                Rule.COUNT_PLACES,
-            )  # fmt: skip
-
-
-def _check_turnout(
-    table: SheetTable, result: pd.DataFrame, *, last_result: pd.DataFrame, contest: Contest
-) -> Iterator[Problem]:
-    votes, last = (f.groupby("region")[list(contest.party_codes)].sum().sum(axis=1)
-                   for f in (result, last_result))  # fmt: skip
-    for region, now in votes.items():
-        then = last.get(region, 0.0)
-        if then > 0 and not LEAST_OF_LAST <= now / then <= MOST_OF_LAST:
-            first = next(r.number for r in table.rows if region_of(r, contest=contest) == region)
-            yield Problem(
-                table.file, first, None, f"{now:.0f} votes in {region}",
-                f"about as many as last time ({then:.0f})",
-                "While votes are still being counted, leave counted and the region's rows out.",
-                Rule.COUNT_UNUSUAL, Severity.WARNING,
-            )  # fmt: skip
 
 
 def counted_as_of(result: pd.DataFrame | None, *, contest: Contest, day: date) -> pd.DataFrame | None:

@@ -80,7 +80,9 @@ def test_every_column_of_the_register_is_in_its_table():
     assert {c for c, needed in documented.items() if needed == "yes"} == set(REGISTER_NEEDED)
 
 
-@pytest.mark.parametrize("heading", ["### result_last.csv", "### result_counted.csv"])
+@pytest.mark.parametrize(
+    "heading", ["### result_last.csv", "### result_counted.csv", "### result_outcome.csv"]
+)
 def test_every_column_of_a_result_is_in_its_table(heading):
     assert [c for c in schema_under(heading) if c != "code"] == list(RESULT_COLUMNS)
 

@@ -261,8 +261,32 @@ def test_a_contest_without_regions_is_one_country(tmp_path):
     assert {p.rule.value for p in inputs.warnings} == {"R60", "R61"}
 
 
-def test_as_of_a_day_no_later_jolt_is_known(tmp_path):
-    contest = CONTEST + "\n[[jolt]]\ndate = 2031-02-03\n\n[[jolt]]\ndate = 2031-04-07\n"
-    folder = write_folder(tmp_path / "c", contest_toml=contest)
-    assert [j.date.month for j in read(folder).contest.jolts] == [2, 4]
-    assert [j.date.month for j in read(folder, as_of=date(2031, 4, 6)).contest.jolts] == [2]
+def test_as_of_a_day_the_contest_is_what_could_be_written_then(tmp_path):
+    phases = 'name = "Northern Shore"\npolling_day = 2031-05-04\ncounted = 2031-05-08\n'
+    contest = CONTEST.replace('name = "Northern Shore"\n', phases).replace(
+        "from = 2031-01-15", "from = 2031-01-15\nuntil = 2031-04-30"
+    )
+    contest += "\n[[jolt]]\ndate = 2031-02-03\n\n[[jolt]]\ndate = 2031-04-07\n"
+    counted = "seat,region,HU,UP,OTH\nN1,NORTH,9000,7000,900\nN2,NORTH,9900,5000,800\n"
+    folder = write_folder(tmp_path / "c", contest_toml=contest, result_counted_csv=counted)
+
+    def known(day: date | None) -> tuple[list[int], list[date | None], date | None]:
+        contest = read(folder, as_of=day).contest
+        return (
+            [j.date.month for j in contest.jolts],
+            [a.until for a in contest.alliances],
+            contest.regions[0].counted,
+        )
+
+    whole = ([2, 4], [date(2031, 4, 30)], date(2031, 5, 8))
+    assert known(None) == known(date(2031, 5, 8)) == whole
+    assert known(date(2031, 4, 6)) == ([2], [None], None)
+    assert known(date(2031, 4, 29)) == ([2, 4], [None], None)
+
+
+def test_as_of_a_day_no_later_alliance_is_known(tmp_path):
+    polls = "house,end,sample,HU,UP,OL\nTarrow Research,2031-01-05,1000,40,38,17\n"
+    folder = write_folder(tmp_path / "c", polls_csv=polls)
+    before, after = (read(folder, as_of=date(2031, 1, day)) for day in (14, 15))
+    assert (before.contest.alliances, "LAKE" in before.polls) == ((), False)
+    assert ([a.code for a in after.contest.alliances], "LAKE" in after.polls) == (["LAKE"], True)
