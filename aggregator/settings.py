@@ -6,6 +6,10 @@ from dataclasses import dataclass
 
 DEFAULT_SEED = 20260517
 
+# Streams of random numbers beside those of the fit (0 and 1), one for each stage, so that nothing else moves
+# when one of them draws more.
+SEATS_STREAM, SCREENS_STREAM, LEAN_STREAM, PREDICTIVE_STREAM, PRIOR_STREAM = 2, 3, 4, 5, 6
+
 
 @dataclass(frozen=True)
 class RunSettings:

@@ -28,13 +28,17 @@ from aggregator.release.model_checks import ModelChecks
 from aggregator.release.write_release import write_release
 from aggregator.screens.screen_polls import screen_polls
 from aggregator.seats.counting import count_seats
-from aggregator.settings import RunSettings
+from aggregator.settings import (
+    LEAN_STREAM,
+    PREDICTIVE_STREAM,
+    PRIOR_STREAM,
+    SCREENS_STREAM,
+    SEATS_STREAM,
+    RunSettings,
+)
 from aggregator.shelf_life.worth import headline_code, polls_worth, summarise_shelf_life
 from models.dimensions import DATE
 from models.priors import shared_lean_points
-
-# Streams of random numbers of their own, so that nothing else moves when the fit draws more.
-SEATS_STREAM, SCREENS_STREAM, LEAN_STREAM, PREDICTIVE_STREAM, PRIOR_STREAM = 2, 3, 4, 5, 6
 
 
 @dataclass(frozen=True)

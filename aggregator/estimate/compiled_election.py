@@ -43,8 +43,10 @@ class CompiledElection:
     density: LogDensity
     start: Floats
 
-    def sample(self, plan: ChainPlan, *, progress: Callable[[float], None]) -> tuple[Parameters, xr.Dataset]:
-        """Run the chains.
+    def sample(
+        self, plan: ChainPlan, *, progress: Callable[[float], None], processes: int | None = None
+    ) -> tuple[Parameters, xr.Dataset]:
+        """Run the chains; see `sample_chains`.
 
         Returns
         -------
@@ -55,7 +57,9 @@ class CompiledElection:
         MachineError
             If a sampling process died.
         """
-        chains = sample_chains(self.density, start=self.start, plan=plan, progress=progress)
+        chains = sample_chains(
+            self.density, start=self.start, plan=plan, progress=progress, processes=processes
+        )
         return self.read(chains["position"].to_numpy().reshape(-1, self.density.layout.size)), chains
 
     def read(self, positions: Floats) -> Parameters:

@@ -39,6 +39,25 @@ CHAINS_STREAM, OUTPUT_STREAM = 0, 1
 
 
 @dataclass(frozen=True)
+class CompiledContest:
+    """A contest whose model is compiled and ready to be fitted.
+
+    Attributes
+    ----------
+    inputs
+        The desk's checked files.
+    election
+        The compiled model.
+    eras
+        Eras of the houses, from :func:`aggregator.estimate.lean_terms_of_rows.list_eras`.
+    """
+
+    inputs: DeskInputs
+    election: CompiledElection
+    eras: pd.DataFrame
+
+
+@dataclass(frozen=True)
 class Fit:
     """A fitted contest.
 
@@ -57,7 +76,7 @@ class Fit:
     convergence, verdict
         The checks.
     pareto_k
-        Pareto-k of each poll, by its identifier.
+        Pareto-k of each poll, by its identifier; empty where it was not asked for.
     settings
         The settings in use, after a continuation if there was one.
     """
@@ -74,12 +93,54 @@ class Fit:
     settings: RunSettings
 
 
+def compile_contest(inputs: DeskInputs, *, like: CompiledElection | None = None) -> CompiledContest:
+    """Build and compile the model of a contest.
+
+    Parameters
+    ----------
+    inputs
+        The desk's checked files.
+    like
+        A compiled election that is not needed any more, such as the same contest's on another day; where
+        only numbers differ, its compilation is used. See `compile_election`.
+    """
+    # One thread for linear algebra: sums in another order would change the last digit, then the chains.
+    with threadpool_limits(1):
+        priors = _priors(inputs.contest.model)
+        contest = build_arrays(inputs, priors=priors)
+        election = compile_election(
+            contest.arrays, priors=priors, shared_lean=inputs.contest.model.shared_lean, like=like
+        )
+    return CompiledContest(inputs, election, contest.eras)
+
+
 def fit_contest(
     inputs: DeskInputs,
     *,
     settings: RunSettings,
     limits: Limits | None = None,
     second_attempts: bool = True,
+    progress: Progress = lambda _stage, _part: None,
+) -> Fit:
+    """Compile one contest and fit it; see `fit_compiled`."""
+    progress("building the model", 0.0)
+    return fit_compiled(
+        compile_contest(inputs),
+        settings=settings,
+        limits=limits,
+        second_attempts=second_attempts,
+        progress=progress,
+    )
+
+
+def fit_compiled(
+    contest: CompiledContest,
+    *,
+    settings: RunSettings,
+    limits: Limits | None = None,
+    second_attempts: bool = True,
+    weigh_polls: bool = True,
+    processes: int | None = None,
     progress: Progress = lambda _stage, _part: None,
 ) -> Fit:
     """Fit one contest.
@@ -89,14 +150,19 @@ def fit_contest(
 
     Parameters
     ----------
-    inputs
-        The desk's checked files.
+    contest
+        The compiled contest.
     settings
         Length and seed.
     limits
         What the fit must meet.
     second_attempts
         Whether to do so; a study that only needs rough draws does not.
+    weigh_polls
+        Whether to find Pareto-k of each poll.
+    processes
+        Processes to share the work; 1 does all of it in this process, None takes one per usable core. The
+        fit is the same.
     progress
         Called with the stage's name and its finished part, 0–1.
 
@@ -106,15 +172,11 @@ def fit_contest(
         If a sampling process died.
     """
     limits = limits or Limits()
-    # One thread for linear algebra: sums in another order would change the last digit, then the chains.
+    # One thread for linear algebra: as in `compile_contest`.
     with threadpool_limits(1):
-        progress("building the model", 0.0)
-        priors = _priors(inputs.contest.model)
-        contest = build_arrays(inputs, priors=priors)
-        election = compile_election(
-            contest.arrays, priors=priors, shared_lean=inputs.contest.model.shared_lean
+        attempt = partial(
+            _sample, contest, limits=limits, weigh_polls=weigh_polls, processes=processes, progress=progress
         )
-        attempt = partial(_sample, inputs, election, contest.eras, limits=limits, progress=progress)
         fit = attempt(settings=settings)
         if second_attempts and fit.convergence.divergences > limits.divergences:
             settings = replace(settings, target_accept=CAREFUL_ACCEPT)
@@ -125,16 +187,18 @@ def fit_contest(
 
 
 def _sample(
-    inputs: DeskInputs,
-    election: CompiledElection,
-    eras: pd.DataFrame,
+    compiled: CompiledContest,
     *,
     settings: RunSettings,
     limits: Limits,
+    weigh_polls: bool,
+    processes: int | None,
     progress: Progress,
 ) -> Fit:
+    inputs, election = compiled.inputs, compiled.election
     contest, arrays = inputs.contest, election.arrays
     streams = np.random.SeedSequence(settings.seed).spawn(2)
+    progress("drawing from the model", 0.0)
     parameters, chains = election.sample(
         ChainPlan(
             chains=settings.chains,
@@ -144,12 +208,13 @@ def _sample(
             target_accept=settings.target_accept,
         ),
         progress=lambda part: progress("drawing from the model", part),
+        processes=processes,
     )
     progress("summarising the draws", 0.0)
     draws = summarise_support(
         parameters,
         arrays=arrays,
-        eras=eras,
+        eras=compiled.eras,
         chains=settings.chains,
         calendar=release_calendar(inputs),
         shared_lean=contest.model.shared_lean,
@@ -163,7 +228,9 @@ def _sample(
     }
     progress("checking the draws", 0.0)
     convergence = check_convergence(
-        draws.drop_vars(["kappa", "rho", "opinion_clock"]), divergences=int(chains["diverging"].sum())
+        draws.drop_vars(["kappa", "rho", "opinion_clock"]),
+        divergences=int(chains["diverging"].sum()),
+        processes=processes,
     )
     return Fit(
         draws=draws,
@@ -174,7 +241,7 @@ def _sample(
         layout=election.density.layout,
         convergence=convergence,
         verdict=judge_fit(convergence, limits=limits),
-        pareto_k=pareto_k_by_poll(parameters, arrays=arrays, chains=settings.chains),
+        pareto_k=pareto_k_by_poll(parameters, arrays=arrays, chains=settings.chains) if weigh_polls else {},
         settings=settings,
     )
 

@@ -67,7 +67,9 @@ class Convergence:
     constant: int
 
 
-def check_convergence(published: xr.Dataset, *, divergences: int) -> Convergence:
+def check_convergence(
+    published: xr.Dataset, *, divergences: int, processes: int | None = None
+) -> Convergence:
     """Diagnose every published quantity.
 
     Parameters
@@ -76,6 +78,8 @@ def check_convergence(published: xr.Dataset, *, divergences: int) -> Convergence
         Variables with dims (chain, draw, …).
     divergences
         Divergent transitions of the run.
+    processes
+        Processes to share the work; None takes one per usable core.
     """
     values, names, constant = [], [], 0
     for name, variable in published.data_vars.items():
@@ -87,7 +91,7 @@ def check_convergence(published: xr.Dataset, *, divergences: int) -> Convergence
         constant += int((~moving).sum())
         values.append(flat[..., moving].astype(float))
         names += [str(name)] * int(moving.sum())
-    shares = max(1, min(usable_cores(), len(names) // LEAST_QUANTITIES_PER_PROCESS))
+    shares = max(1, min(processes or usable_cores(), len(names) // LEAST_QUANTITIES_PER_PROCESS))
     parts = np.array_split(np.concatenate(values, axis=-1), shares, axis=-1)
     rhat, bulk, tail = np.concatenate(map_forked(_diagnose, parts), axis=-1)
 

@@ -1,4 +1,4 @@
-"""Run the chains: the no-U-turn sampler of nutpie, in one process per core."""
+"""Run the chains: the no-U-turn sampler of nutpie, in one process per core, or all in this one."""
 
 from __future__ import annotations
 
@@ -45,7 +45,12 @@ class ChainPlan:
 
 
 def sample_chains(
-    density: LogDensity, *, start: Floats, plan: ChainPlan, progress: Callable[[float], None]
+    density: LogDensity,
+    *,
+    start: Floats,
+    plan: ChainPlan,
+    progress: Callable[[float], None],
+    processes: int | None = None,
 ) -> xr.Dataset:
     """Draw from the posterior.
 
@@ -59,6 +64,9 @@ def sample_chains(
         Length and seed.
     progress
         Called with the finished part of the work, 0–1.
+    processes
+        Processes to share the chains; 1 runs them one after the other in this process, None takes one per
+        usable core. The draws are the same.
 
     Returns
     -------
@@ -70,9 +78,9 @@ def sample_chains(
         If a process died.
     """
     seeds = [int(s.generate_state(1)[0]) for s in np.random.SeedSequence(plan.seed).spawn(plan.chains)]
-    cores = min(plan.chains, usable_cores())
+    cores = min(plan.chains, processes or usable_cores())
     work = [seeds[i::cores] for i in range(cores)]
-    if not can_fork():
+    if processes == 1 or not can_fork():
         return _in_order(
             [_chain(density, start=start, plan=plan, seed=s, report=lambda _: None) for s in seeds], seeds
         )

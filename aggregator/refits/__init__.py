@@ -1,0 +1,1 @@
+"""Many fits, on this machine's processes or on a cluster."""
