@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import logging
+import socket
 import tempfile
 from collections.abc import Iterator
 from contextlib import ExitStack, contextmanager
 
 import dask
 from distributed import Client, LocalCluster, Security
+from distributed.comm import parse_address, parse_host_port
 
 from aggregator.errors import MachineError, UsageError
 from aggregator.estimate.cores import usable_cores
@@ -18,9 +20,10 @@ RETRIES = 2
 SECONDS_TO_CONNECT = 20
 SECONDS_TO_FIND_A_WORKER = 60
 
+_TALKATIVE = ("distributed", "tornado", "asyncio")
 _QUIET = {
     # A worker says nothing on its own; what matters comes back as an error.
-    "logging": {"distributed": "critical", "tornado": "critical", "asyncio": "critical"},
+    "logging": dict.fromkeys(_TALKATIVE, "critical"),
     # A fit that compiles may keep a process from answering for a while.
     "distributed.scheduler.worker-ttl": "1h",
     "distributed.scheduler.allowed-failures": RETRIES,
@@ -92,17 +95,27 @@ def _start_here(workers: int, stack: ExitStack) -> Client:
 
 
 def _connect(scheduler: str) -> Client:
+    silent = MachineError(
+        f"No Dask scheduler answers at {scheduler}. Is it running, and may this machine reach it? "
+        "Without --scheduler the fits are made on this machine."
+    )
     try:
+        _knock(scheduler)
         return Client(scheduler, timeout=SECONDS_TO_CONNECT, set_as_default=False)
     except (OSError, TimeoutError) as error:
-        raise MachineError(
-            f"No Dask scheduler answers at {scheduler}. Is it running, and may this machine reach it? "
-            "Without --scheduler the fits are made on this machine."
-        ) from error
+        raise silent from error
     except (ValueError, TypeError) as error:
         raise UsageError(
             f"--scheduler {scheduler}: {error}. Give an address such as tcp://127.0.0.1:8786."
         ) from error
+
+
+def _knock(scheduler: str) -> None:
+    """See whether anything listens at an address: a client would try for long, and be slow to give up."""
+    scheme, place = parse_address(scheduler)
+    if scheme in ("tcp", "tls"):
+        with socket.create_connection(parse_host_port(place), timeout=SECONDS_TO_CONNECT):
+            pass
 
 
 def _find_workers(client: Client, scheduler: str) -> None:
@@ -116,11 +129,12 @@ def _find_workers(client: Client, scheduler: str) -> None:
 
 @contextmanager
 def _quiet_logs() -> Iterator[None]:
-    """Keep Dask's own words off the screen: what matters is raised as an error of ours."""
-    loggers = [logging.getLogger(name) for name in ("distributed", "tornado", "asyncio")]
+    """Keep the libraries' own words off the screen: what matters is raised as an error of ours."""
+    known = logging.root.manager.loggerDict
+    loggers = [logging.getLogger(name) for name in known if name.split(".")[0] in _TALKATIVE]
     levels = [logger.level for logger in loggers]
     for logger in loggers:
-        logger.setLevel(logging.CRITICAL)
+        logger.setLevel(logging.CRITICAL + 1)
     try:
         yield
     finally:

@@ -144,6 +144,8 @@ def _finished(client: Client, at_work: Mapping[Future, FitTask]) -> list[Future]
 def _result(future: Future, task: FitTask) -> FitRecord:
     try:
         record: FitRecord = future.result()
+        # A result still asked for would be made again should its worker die now.
+        future.release()
     except KilledWorker as error:
         raise MachineError(
             f"{RETRIES + 1} workers died while they made {task.key}, most often for want of memory. "
