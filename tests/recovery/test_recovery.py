@@ -7,13 +7,18 @@ and fieldwork are drawn anew for every election; the seeds were fixed before the
 from __future__ import annotations
 
 from dataclasses import replace
+from datetime import date
 from pathlib import Path
 
 import numpy as np
 import pytest
 
-from data_demo.made_up_election import SMALL_ELECTION
-from tests.recovery.whole_refits import Pooled, pool, refit, whitened_errors
+from aggregator.estimate.fit import fit_contest
+from aggregator.inputs.contest_folder import read_contest_folder
+from aggregator.settings import RunSettings
+from data_demo import make_lake_provinces as lake_provinces
+from data_demo.made_up_election import SMALL_ELECTION, UNTIDY_ELECTION
+from tests.recovery.whole_refits import Pooled, compare, pool, refit, whitened_errors
 
 TINY_ELECTION = replace(SMALL_ELECTION, parties=3, regions=2, polls=35, weeks=26, polled_weeks=24, houses=4)
 
@@ -60,6 +65,28 @@ def test_ten_whole_elections_are_recovered(tmp_path: Path) -> None:
     """Seven parties, eight regions, nine houses, 250 untidy polls each."""
     pooled = pool(refit(seed, folder=tmp_path / str(seed), size=None) for seed in range(101, 111))
     print(f"\nten whole elections: {pooled}")
+    _assert_calibrated(pooled)
+
+
+@pytest.mark.study
+def test_ten_untidy_elections_are_recovered(tmp_path: Path) -> None:
+    """Eras, modes, populations, alliances asked as one, a tracker, jolts, a ramp, a region counted early."""
+    size = replace(
+        UNTIDY_ELECTION, parties=5, regions=4, seats=40, houses=7, polls=90, weeks=120, polled_weeks=40
+    )
+    pooled = pool(refit(seed, folder=tmp_path / str(seed), size=size, draws=400) for seed in range(401, 411))
+    print(f"\nten untidy elections: {pooled}")
+    _assert_calibrated(pooled)
+
+
+@pytest.mark.study
+def test_the_demos_release_is_right_about_its_truth() -> None:
+    """One election is one draw: its errors must not be larger than stated in all but one of a hundred."""
+    inputs = read_contest_folder(Path(lake_provinces.__file__).parent / "lake_provinces", today=date.today())
+    fit = fit_contest(inputs, settings=RunSettings())
+    pooled = pool([compare(fit, lake_provinces.build_lake_provinces())])
+    print(f"\nthe demo: {pooled}; checks passed: {fit.verdict.passed}")
+    assert fit.verdict.passed
     _assert_calibrated(pooled)
 
 

@@ -90,7 +90,7 @@ def refit(
         )
     inputs = read_contest_folder(folder, today=AFTER_THE_ELECTION)
     fit = fit_contest(inputs, settings=RunSettings(seed=seed, draws=draws), second_attempts=False)
-    return _compare(fit, election)
+    return compare(fit, election)
 
 
 def pool(refits: Iterable[Recovered]) -> Pooled:
@@ -106,7 +106,8 @@ def pool(refits: Iterable[Recovered]) -> Pooled:
     )
 
 
-def _compare(fit: Fit, election: MadeUpElection) -> Recovered:
+def compare(fit: Fit, election: MadeUpElection) -> Recovered:
+    """Hold a fit's draws against the truth of the election it was made from."""
     parties = fit.draws["party"].to_numpy()
     truth = election.truth.polling_day
     country = truth["region"].fillna("") == ""
