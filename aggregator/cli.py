@@ -6,10 +6,8 @@ Heavy imports stand inside the commands, so that ``fieldfold --help`` is there a
 from __future__ import annotations
 
 import errno
-import json
 import sys
 import traceback
-from collections.abc import Callable
 from dataclasses import replace
 from datetime import date, datetime
 from pathlib import Path
@@ -19,32 +17,33 @@ import typer
 from rich.console import Console
 from rich.text import Text
 
+from aggregator.command_output import (
+    EXIT_CHECKS_FAILED,
+    EXIT_INTERNAL,
+    EXIT_INTERRUPTED,
+    EXIT_MACHINE,
+    Progress,
+    error_record,
+    examples,
+    no_progress,
+    print_json,
+    say,
+    with_progress_bar,
+)
 from aggregator.errors import FieldfoldError, InputError, UsageError
 from aggregator.problem_display import count_of, print_problems, problem_records
+from aggregator.replay_commands import CALIBRATE_EXAMPLES, REPLAY_EXAMPLES, calibrate, replay
 from aggregator.settings import RunSettings
 
 if TYPE_CHECKING:
     from aggregator.inputs.desk_inputs import DeskInputs
     from aggregator.weekly_run import RefreshOutcome
 
-# Called with what is being done and the finished part of it, 0–1.
-type Progress = Callable[[str, float], None]
-
-EXIT_CHECKS_FAILED = 3
-EXIT_MACHINE = 5
-EXIT_INTERNAL = 70
-EXIT_INTERRUPTED = 130
-
 # What the disk or the system refuses; any other OSError is a mistake of ours and keeps its traceback.
 _MACHINE_TROUBLE = {
     errno.ENOSPC, errno.EDQUOT, errno.EROFS, errno.EIO, errno.EACCES, errno.EPERM, errno.EMFILE,
     errno.ENFILE, errno.ENOMEM,
 }  # fmt: skip
-
-
-def _examples(*lines: str) -> str:
-    r"""Lay out an epilog line by line: ``\b`` keeps the help from refilling it."""
-    return "\b\n" + "\n".join(["Example:" if len(lines) == 1 else "Examples:", *(f"  {x}" for x in lines)])
 
 
 _FIRST_ROUND = """\b
@@ -85,26 +84,22 @@ def main() -> None:
         _print_report(error)
         sys.exit(error.exit_code)
     except FieldfoldError as error:
-        _say(f"fieldfold: {error}")
+        say(f"fieldfold: {error}")
         sys.exit(error.exit_code)
     except MemoryError:
-        _say("fieldfold: the machine ran out of memory.")
+        say("fieldfold: the machine ran out of memory.")
         sys.exit(EXIT_MACHINE)
     except OSError as error:
         if error.errno not in _MACHINE_TROUBLE:
             _exit_internal(error)
-        _say(f"fieldfold: {error.strerror}" + (f": {error.filename}" if error.filename else ""))
+        say(f"fieldfold: {error.strerror}" + (f": {error.filename}" if error.filename else ""))
         sys.exit(EXIT_MACHINE)
     except Exception as error:
         _exit_internal(error)
 
 
-def _say(text: str) -> None:
-    print(text, file=sys.stderr)
-
-
 def _exit_internal(error: Exception) -> None:
-    _say(f"fieldfold: internal error ({type(error).__name__}: {error}); please report the lines below.")
+    say(f"fieldfold: internal error ({type(error).__name__}: {error}); please report the lines below.")
     traceback.print_exception(error)
     sys.exit(EXIT_INTERNAL)
 
@@ -113,10 +108,6 @@ def _print_report(error: InputError) -> None:
     console = Console(stderr=True, highlight=False)
     print_problems(error.problems, console=console)
     console.print(Text(f"{count_of(error.problems)}. Nothing was written."), soft_wrap=True)
-
-
-def _print_json(record: dict[str, Any]) -> None:
-    print(json.dumps(record, ensure_ascii=False, indent=2))
 
 
 def _print_version(wanted: bool) -> None:
@@ -137,7 +128,7 @@ def _fieldfold(
     """Fold the fieldwork of many polling houses into one picture of an election."""
 
 
-@app.command(epilog=_examples("fieldfold new lakes"))
+@app.command(epilog=examples("fieldfold new lakes"))
 def new(
     folder: Annotated[Path, typer.Argument(metavar="DIR", help="The folder to make.", show_default=False)],
 ) -> None:
@@ -152,7 +143,7 @@ def new(
         print(path)
 
 
-@app.command(epilog=_examples("fieldfold check lakes --as-of 2031-04-01"))
+@app.command(epilog=examples("fieldfold check lakes --as-of 2031-04-01"))
 def check(
     folder: Annotated[Path, _DIR],
     as_of: Annotated[datetime | None, _AS_OF] = None,
@@ -163,23 +154,31 @@ def check(
     Errors stop a refresh; warnings travel into the release. Nothing is written.
     """
     from aggregator.inputs.contest_folder import read_contest_folder
+    from aggregator.inputs.outcome import read_outcome
 
     try:
         inputs = read_contest_folder(folder, as_of=_day(as_of), today=date.today())
+        outcome = read_outcome(folder, contest=inputs.contest, last_result=inputs.last_result)
     except InputError as error:
         if as_json:
-            _print_json(_error_record(error, folder))
+            print_json(error_record(error, folder))
         else:
             _print_findings(error)
         raise typer.Exit(error.exit_code) from None
+    if outcome is not None:
+        inputs = replace(
+            inputs,
+            warnings=(*inputs.warnings, *outcome.warnings),
+            fingerprints=(*inputs.fingerprints, outcome.fingerprint),
+        )
     if as_json:
-        _print_json(_inputs_record(inputs))
+        print_json(_inputs_record(inputs))
     else:
         _print_inputs(inputs)
 
 
 @app.command(
-    epilog=_examples(
+    epilog=examples(
         "fieldfold refresh lakes", "fieldfold refresh lakes --as-of 2031-04-01 --out april --seed 7"
     )
 )
@@ -218,17 +217,17 @@ def refresh(
         )
 
     try:
-        outcome = run(_no_progress) if quiet or as_json else _with_progress_bar(run)
+        outcome = run(no_progress) if quiet or as_json else with_progress_bar(run)
     except InputError as error:
         if not as_json:
             raise
-        _print_json(_error_record(error, folder))
+        print_json(error_record(error, folder))
         raise typer.Exit(error.exit_code) from None
     except KeyboardInterrupt:
-        _say("fieldfold: interrupted; nothing was written.")
+        say("fieldfold: interrupted; nothing was written.")
         raise typer.Exit(EXIT_INTERRUPTED) from None
     if as_json:
-        _print_json(_outcome_record(outcome))
+        print_json(_outcome_record(outcome))
     else:
         _print_outcome(outcome)
     if not outcome.passed:
@@ -237,25 +236,6 @@ def refresh(
 
 def _day(moment: datetime | None) -> date | None:
     return moment.date() if moment is not None else None
-
-
-def _no_progress(stage: str, part: float) -> None:
-    """Tell nobody."""
-
-
-def _with_progress_bar(run: Callable[[Progress], RefreshOutcome]) -> RefreshOutcome:
-    from rich.progress import BarColumn, SpinnerColumn, TextColumn, TimeElapsedColumn
-    from rich.progress import Progress as ProgressBar
-
-    columns = (SpinnerColumn(), TextColumn("{task.description}"), BarColumn(), TimeElapsedColumn())
-    with ProgressBar(*columns, console=Console(stderr=True), transient=True) as bar:
-        task = bar.add_task("", total=None)
-
-        def progress(stage: str, part: float) -> None:
-            # A stage that cannot say how far it is stays at 0, and the bar then only shows that it is alive.
-            bar.update(task, description=stage, total=1.0 if part > 0 else None, completed=part)
-
-        return run(progress)
 
 
 def _print_findings(error: InputError) -> None:
@@ -285,10 +265,6 @@ def _summary(inputs: DeskInputs) -> list[str]:
     if inputs.unpublished:
         facts["under embargo"] = ", ".join(inputs.unpublished)
     return [contest.title, *(f"  {name:<14}  {fact}" for name, fact in facts.items()), ""]
-
-
-def _error_record(error: InputError, folder: Path) -> dict[str, Any]:
-    return {"folder": str(folder), "usable": False, "problems": problem_records(error.problems)}
 
 
 def _inputs_record(inputs: DeskInputs) -> dict[str, Any]:
@@ -324,4 +300,12 @@ def _print_outcome(outcome: RefreshOutcome) -> None:
         console.print(Text(f"\n{count_of(outcome.warnings)} (fieldfold check shows them)."), soft_wrap=True)
     console.print(Text(f"\n{outcome.page}"), soft_wrap=True)
     for notice in outcome.notices:
-        _say(notice)
+        say(notice)
+
+
+study = typer.Typer(
+    no_args_is_help=True, rich_markup_mode=None, help="Test the method on elections whose truth is known."
+)
+study.command(epilog=CALIBRATE_EXAMPLES)(calibrate)
+app.command(epilog=REPLAY_EXAMPLES)(replay)
+app.add_typer(study, name="study")

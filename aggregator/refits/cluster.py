@@ -24,6 +24,9 @@ _TALKATIVE = ("distributed", "tornado", "asyncio")
 _QUIET = {
     # A worker says nothing on its own; what matters comes back as an error.
     "logging": dict.fromkeys(_TALKATIVE, "critical"),
+    # Dask's ports for browsers answer nothing.
+    "distributed.scheduler.http.routes": [],
+    "distributed.worker.http.routes": [],
     # A fit that compiles may keep a process from answering for a while.
     "distributed.scheduler.worker-ttl": "1h",
     "distributed.scheduler.allowed-failures": RETRIES,
@@ -83,7 +86,9 @@ def _start_here(workers: int, stack: ExitStack) -> Client:
                 host="127.0.0.1",
                 protocol="tls",
                 security=security,
+                # Without a dashboard the scheduler still opens a port for it: one of the system's choice.
                 dashboard_address=None,
+                scheduler_kwargs={"dashboard_address": "127.0.0.1:0"},
                 memory_limit=0,
                 local_directory=scratch,
                 silence_logs=logging.CRITICAL,
@@ -91,7 +96,10 @@ def _start_here(workers: int, stack: ExitStack) -> Client:
         )
         return stack.enter_context(Client(cluster, set_as_default=False))
     except (OSError, RuntimeError) as error:
-        raise MachineError(f"Worker processes could not be started on this machine: {error}.") from error
+        raise MachineError(
+            f"Worker processes could not be started on this machine: {str(error).rstrip('.')}. A script of "
+            'your own must make fits below `if __name__ == "__main__":`.'
+        ) from error
 
 
 def _connect(scheduler: str) -> Client:

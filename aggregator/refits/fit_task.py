@@ -60,14 +60,14 @@ def build_task(inputs: DeskInputs, *, name: str, settings: RunSettings) -> FitTa
 def bare_inputs(inputs: DeskInputs) -> DeskInputs:
     """Keep of the desk's inputs what a fit reads.
 
-    Left out are rows that do not enter, who paid, sources, notes, row numbers, warnings, file names and
-    rules of publication: what is not sent cannot leak, and none of it makes another fit.
+    Left out are rows that do not enter, who paid, sources, notes, row numbers, warnings, file names, the
+    title and rules of publication: what is not sent cannot leak, and none of it makes another fit.
     """
     polls = inputs.polls.assign(row=range(len(inputs.polls)), **dict.fromkeys(_DESK_COLUMNS, ""))
     return replace(
         inputs,
         folder=Path(),
-        contest=inputs.contest.model_copy(update={"release": ReleaseRules()}),
+        contest=inputs.contest.model_copy(update={"title": "contest", "release": ReleaseRules()}),
         polls=polls.reset_index(drop=True),
         unused_polls=inputs.unused_polls.iloc[:0],
         warnings=(),

@@ -72,7 +72,8 @@ def measure_costs(facts: Iterable[Mapping[str, Any]]) -> FitCosts:
         raise ValueError("no fit was made")
     every = [s["all"] for _, s in seconds]
     first = [s["all"] for reused, s in seconds if not reused] or every
-    following = [s["all"] for reused, s in seconds if reused] or every
+    # Where every fit compiled, what comes after the compilation tells best what the next ones will take.
+    following = [s["all"] for reused, s in seconds if reused] or [s["all"] - s["build"] for _, s in seconds]
     return FitCosts(
         fits=len(seconds),
         first_seconds=mean(first),
