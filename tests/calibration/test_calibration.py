@@ -15,10 +15,11 @@ import pandas as pd
 import pytest
 from scipy.stats import norm
 
+from aggregator.studies.uniformity import judge_places
 from models.arrays import ElectionArrays
 from tests.calibration.finished_elections import rank_and_keep
 from tests.calibration.ranks import RankedElection, rank_elections
-from tests.calibration.uniformity import draw_chart, gather_places, judge_places, write_chart
+from tests.calibration.uniformity import draw_chart, gather_places, write_chart
 
 FALSE_ALARM, STUDY_FALSE_ALARM = 0.001, 0.01
 ELECTIONS = range(1, 21)

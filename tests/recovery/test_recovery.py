@@ -10,7 +10,6 @@ from dataclasses import replace
 from datetime import date
 from pathlib import Path
 
-import numpy as np
 import pytest
 
 from aggregator.estimate.fit import fit_contest
@@ -18,7 +17,7 @@ from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.settings import RunSettings
 from data_demo import make_lake_provinces as lake_provinces
 from data_demo.made_up_election import SMALL_ELECTION, UNTIDY_ELECTION
-from tests.recovery.whole_refits import Pooled, compare, pool, refit, whitened_errors
+from tests.recovery.whole_refits import Pooled, compare, pool, refit
 
 TINY_ELECTION = replace(SMALL_ELECTION, parties=3, regions=2, polls=35, weeks=26, polled_weeks=24, houses=4)
 
@@ -38,19 +37,6 @@ def test_a_model_without_the_shared_lean_is_caught_being_too_sure(tmp_path: Path
     ]
     pooled = pool(found)
     assert pooled.chi_square > pooled.band[1]
-
-
-def test_whitened_errors_of_a_right_posterior_are_standard_normal() -> None:
-    rng = np.random.default_rng(1)
-    centre, root = np.log([0.4, 0.35, 0.2, 0.05]), 0.1 * rng.normal(size=(4, 4))
-
-    def shares(count: int) -> np.ndarray:
-        raised = np.exp(centre + rng.normal(size=(count, 4)) @ root)
-        return raised / raised.sum(axis=1, keepdims=True)
-
-    errors = np.concatenate([whitened_errors(shares(1500), shares(1)[0]) for _ in range(300)])
-    assert errors.std() == pytest.approx(1, abs=0.08)
-    assert errors.mean() == pytest.approx(0, abs=0.12)
 
 
 @pytest.mark.study

@@ -9,11 +9,11 @@ from pathlib import Path
 
 import numpy as np
 import pandas as pd
-from scipy.stats import chi2
 
 from aggregator.estimate.fit import Fit, fit_contest
 from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.settings import RunSettings
+from aggregator.studies.whitening import PooledErrors, pool_errors, whitened_errors
 from data_demo.made_up_election import ElectionSize, MadeUpElection, simulate_election
 from data_demo.made_up_folder import write_contest_folder
 
@@ -42,30 +42,20 @@ class Recovered:
 
 
 @dataclass(frozen=True)
-class Pooled:
+class Pooled(PooledErrors):
     """Refits taken together.
 
     Attributes
     ----------
-    chi_square, degrees
-        Sum of squared whitened errors and its degrees of freedom.
     national, regional
         Part of the 90 % intervals that hold the truth.
     house_rms
         Root mean square of the house effects' z.
     """
 
-    chi_square: float
-    degrees: int
     national: float
     regional: float
     house_rms: float
-
-    @property
-    def band(self) -> tuple[float, float]:
-        """Central 99 % of the chi-square distribution."""
-        low, high = chi2.ppf([0.005, 0.995], self.degrees)
-        return float(low), float(high)
 
     def __str__(self) -> str:
         """One line for a study's log."""
@@ -96,10 +86,10 @@ def refit(
 def pool(refits: Iterable[Recovered]) -> Pooled:
     """Take several refits together."""
     found = list(refits)
-    whitened = np.concatenate([r.whitened for r in found])
+    errors = pool_errors(r.whitened for r in found)
     return Pooled(
-        chi_square=float((whitened**2).sum()),
-        degrees=len(whitened),
+        chi_square=errors.chi_square,
+        degrees=errors.degrees,
         national=float(np.concatenate([r.national_inside for r in found]).mean()),
         regional=float(np.concatenate([r.regional_inside for r in found]).mean()),
         house_rms=float(np.sqrt((np.concatenate([r.house_z for r in found]) ** 2).mean())),
@@ -142,20 +132,3 @@ def compare(fit: Fit, election: MadeUpElection) -> Recovered:
         regional_inside=((region_low <= regional) & (regional <= region_high))[stands],
         house_z=house_z[np.isfinite(house_z)],
     )
-
-
-def whitened_errors(draws: np.ndarray, truth: np.ndarray) -> np.ndarray:
-    """Errors of centred log shares in the posterior's own axes and units, dims (zero-sum coordinate).
-
-    Parameters
-    ----------
-    draws
-        Shares, dims (sample, party).
-    truth
-        True shares, dims (party).
-    """
-    centred = np.log(draws) - np.log(draws).mean(axis=1, keepdims=True)
-    error = np.log(truth) - np.log(truth).mean() - centred.mean(axis=0)
-    values, vectors = np.linalg.eigh(np.cov(centred.T))
-    # The first axis is the common level, which shares do not have.
-    return vectors[:, 1:].T @ error / np.sqrt(values[1:])

@@ -1,0 +1,141 @@
+"""An invented election as a desk would meet it, and the truth to hold its estimates against.
+
+Everything is drawn anew from the seed: drift, houses, the lean they share, regions, seats, rounding, lumping,
+and how long before polling day the polls fall silent. The election takes the whole way: it is written as a
+contest folder and read like a desk's. The simulator (``data_demo``) shares no code with the model.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from datetime import timedelta
+from enum import StrEnum
+from pathlib import Path
+from tempfile import TemporaryDirectory
+
+import numpy as np
+import pandas as pd
+
+from aggregator.inputs.contest_folder import read_contest_folder
+from aggregator.inputs.desk_inputs import DeskInputs
+from data_demo.made_up_election import ElectionSize, MadeUpElection, simulate_election
+from data_demo.made_up_folder import write_contest_folder
+from data_demo.made_up_violation import Violation
+
+SHORTEST_SILENCE, LONGEST_SILENCE = 2, 28
+"""Days from the last publication to polling day: from hardly any to the longer bans on publishing."""
+# Streams of random numbers beside the simulator's own, which are 0 to 6.
+SILENCE_STREAM = 10
+COUNTRY = ""
+
+
+class Quantity(StrEnum):
+    """What is held against the truth: shares in percent, seats as numbers."""
+
+    SUPPORT_POLLING_DAY = "support_polling_day"
+    SUPPORT_TODAY = "support_today"
+    SEATS = "seats"
+
+
+@dataclass(frozen=True)
+class InventedElection:
+    """One election of a study.
+
+    Attributes
+    ----------
+    seed
+        Makes it again.
+    inputs
+        What a desk knows on the day the last poll may be published.
+    truth
+        Columns ``quantity``, ``region`` (blank: the country), ``code``, ``truth``: percent, or seats. Only
+        what can be wrong: no party where it does not stand, no region that was counted before.
+    winners
+        Who won each seat: code by seat.
+    silent_days
+        Days from the last publication to polling day.
+    """
+
+    seed: int
+    inputs: DeskInputs
+    truth: pd.DataFrame
+    winners: pd.Series
+    silent_days: int
+
+
+def draw_invented_election(
+    seed: int, *, size: ElectionSize, violation: Violation | None = None
+) -> InventedElection:
+    """Draw an election, write it as a desk would, and read it.
+
+    Parameters
+    ----------
+    size
+        How large and how untidy it is.
+    violation
+        What goes wrong in it that the model knows nothing of.
+
+    Raises
+    ------
+    ValueError
+        Where the size leaves no room for its polls.
+    """
+    rng = np.random.default_rng([seed, SILENCE_STREAM])
+    silent_days = int(rng.integers(SHORTEST_SILENCE, LONGEST_SILENCE + 1))
+    election = simulate_election(seed, size=replace(size, silent_days=silent_days), violation=violation)
+    inputs = _as_a_desk_reads(election)
+    outcome = election.outcome.set_index("seat")[list(election.scenery.codes)]
+    return InventedElection(
+        seed=seed,
+        inputs=inputs,
+        truth=_truth(election, counted=_counted_regions(inputs)),
+        winners=outcome.idxmax(axis=1).rename("code"),
+        silent_days=silent_days,
+    )
+
+
+def _as_a_desk_reads(election: MadeUpElection) -> DeskInputs:
+    """Read the election's folder as of the day the register ends."""
+    day = election.scenery.register_end
+    with TemporaryDirectory(prefix="fieldfold-") as place:
+        write_contest_folder(election, Path(place))
+        return read_contest_folder(
+            Path(place), as_of=day, today=election.scenery.polling_day + timedelta(days=1)
+        )
+
+
+def _counted_regions(inputs: DeskInputs) -> tuple[str, ...]:
+    counted = inputs.counted_result
+    return () if counted is None else tuple(str(region) for region in counted["region"].unique())
+
+
+def _truth(election: MadeUpElection, *, counted: tuple[str, ...]) -> pd.DataFrame:
+    truth = election.truth
+    today = truth.at_register_end[truth.at_register_end["region"] == COUNTRY]
+    seats = truth.seats.rename(columns={"seats": "truth"}).assign(quantity=Quantity.SEATS, region=COUNTRY)
+    told = pd.concat(
+        [
+            _polling_day(election, counted=counted).assign(quantity=Quantity.SUPPORT_POLLING_DAY),
+            today.rename(columns={"support": "truth"}).assign(quantity=Quantity.SUPPORT_TODAY),
+            seats,
+        ]
+    )
+    return told[["quantity", "region", "code", "truth"]].astype({"truth": float}).reset_index(drop=True)
+
+
+def _polling_day(election: MadeUpElection, *, counted: tuple[str, ...]) -> pd.DataFrame:
+    """Support on polling day by region and code, percent, where a party stands and nothing was counted.
+
+    A counted region enters the country with its votes, as it does in what is published.
+    """
+    scenery, table = election.scenery, election.truth.polling_day
+    regions = table[table["region"] != COUNTRY].assign(
+        truth=lambda t: t["votes"].where(t["region"].isin(counted), t["support"])
+    )
+    turnout = election.truth.regions.set_index("region")["weight_polling_day"]
+    weighed = regions["truth"] * regions["region"].map(turnout)
+    country = weighed.groupby(regions["code"], sort=False).sum().rename("truth").reset_index()
+    stands = pd.DataFrame(scenery.standing(), index=scenery.region_codes, columns=scenery.codes).stack()
+    pairs = pd.MultiIndex.from_frame(regions[["region", "code"]])
+    kept = stands.reindex(pairs).to_numpy(bool) & ~regions["region"].isin(counted).to_numpy()
+    return pd.concat([country.assign(region=COUNTRY), regions.loc[kept, ["region", "code", "truth"]]])

@@ -1,0 +1,59 @@
+"""What the program itself says about a register and its fit, and whether any of it points at a violation.
+
+Everything here also speaks up about honest elections now and then, so a count means nothing alone: it is
+held against that of the same elections without the violation.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+import pandas as pd
+
+from aggregator.replays.replayed_fit import ReplayedFit, has_passed
+from aggregator.screens.screen_polls import screen_polls
+from aggregator.studies.invented_elections import InventedElection
+
+NOTICED_COLUMNS = ("election", "kind", "name", "count")
+
+
+def list_noticed(election: InventedElection, fit: ReplayedFit, *, rng: np.random.Generator) -> pd.DataFrame:
+    """List what was said about one election.
+
+    Parameters
+    ----------
+    rng
+        For the screens.
+
+    Returns
+    -------
+    pandas.DataFrame
+        Columns ``NOTICED_COLUMNS``: ``kind`` is "warning" (of the reading, by rule), "screen", or "check" (of
+        the fit); ``count`` how often.
+    """
+    screens = screen_polls(election.inputs, rng=rng)
+    counts = {
+        ("warning", str(rule)): count
+        for rule, count in pd.Series([p.rule for p in election.inputs.warnings], dtype=object)
+        .value_counts(sort=False)
+        .items()
+    }
+    counts |= {("screen", str(name)): n for name, n in screens["screen"].value_counts(sort=False).items()}
+    if not has_passed(fit):
+        counts["check", "of the fit failed"] = 1
+    rows = [(election.seed, kind, name, int(count)) for (kind, name), count in counts.items()]
+    return pd.DataFrame(rows, columns=list(NOTICED_COLUMNS))
+
+
+def summarise_noticed(noticed: pd.DataFrame, *, elections: int) -> pd.DataFrame:
+    """Part of the elections that each thing was said about.
+
+    Returns
+    -------
+    pandas.DataFrame
+        Columns ``kind``, ``name``, ``elections`` (percent), ``mean_count`` over all elections.
+    """
+    grouped = noticed.groupby(["kind", "name"], sort=True)["count"]
+    table = pd.DataFrame(
+        {"elections": 100 * grouped.size() / elections, "mean_count": grouped.sum() / elections}
+    )
+    return table.reset_index()
