@@ -50,6 +50,11 @@ def check_place_is_free(out: Path) -> None:
         )
 
 
+def shelf_of(contest_folder: Path, *, passed: bool) -> Path:
+    """Name the folder that holds a contest's releases: of fits that passed their checks, or of others."""
+    return contest_folder / RELEASES if passed else contest_folder / RELEASES / FAILED
+
+
 def write_folder(
     fill: Callable[[Path], None], *, contest_folder: Path, run_date: date, passed: bool, out: Path | None
 ) -> Path:
@@ -86,13 +91,48 @@ def write_folder(
         shelf = beside = out.absolute().parent
     else:
         beside = contest_folder
-        shelf = contest_folder / RELEASES if passed else contest_folder / RELEASES / FAILED
+        shelf = shelf_of(contest_folder, passed=passed)
     with _writing_to(shelf):
         shelf.mkdir(parents=True, exist_ok=True)
         _sweep_abandoned(beside)
         with _unfinished_folder(beside) as unfinished:
             fill(unfinished)
             return _claim_name(unfinished, shelf, run_date) if out is None else _claim_place(unfinished, out)
+
+
+def replace_folder(fill: Callable[[Path], None], *, place: Path, what: str) -> Path:
+    """Build a folder and put it in a place of its own, over an earlier one of the same kind.
+
+    Parameters
+    ----------
+    fill
+        Writes the files into the empty folder it is given.
+    place
+        Where the folder goes. What it holds now is gone afterwards: the caller has made sure that it may.
+    what
+        What is written, for the error.
+
+    Raises
+    ------
+    MachineError
+        If the disk is full or the place cannot be written. The earlier folder is then as it was.
+    """
+    shelf = place.absolute().parent
+    with _writing_to(place, what=what):
+        shelf.mkdir(parents=True, exist_ok=True)
+        _sweep_abandoned(shelf)
+        with _unfinished_folder(shelf) as unfinished, _unfinished_folder(shelf) as aside:
+            fill(unfinished)
+            earlier = aside / place.name
+            try:
+                if place.exists():
+                    os.rename(place, earlier)
+                os.rename(unfinished, place)
+            except BaseException:  # Also on Ctrl-C: the earlier one must not go with the folder aside.
+                if earlier.exists():
+                    os.rename(earlier, place)
+                raise
+    return place
 
 
 @contextmanager
@@ -172,7 +212,7 @@ def _rename(unfinished: Path, place: Path) -> bool:
 
 
 @contextmanager
-def _writing_to(place: Path) -> Iterator[None]:
+def _writing_to(place: Path, *, what: str = "release") -> Iterator[None]:
     try:
         yield
     except OSError as problem:
@@ -182,5 +222,5 @@ def _writing_to(place: Path) -> Iterator[None]:
             else f"{problem.strerror or problem}. Check that the folder exists and may be written"
         )
         raise MachineError(
-            f"The release could not be written to {place}: {what}, then run again. Nothing was left behind."
+            f"The {what} could not be written to {place}: {what}, then run again. Nothing was left behind."
         ) from problem

@@ -122,7 +122,7 @@ def build_manifest(
         "seed": settings.get("seed"),
         "settings": dict(settings),
         "warnings": [str(problem) for problem in inputs.warnings],
-        "versions": {"python": platform.python_version(), **{name: _version(name) for name in LIBRARIES}},
+        "versions": {"python": platform.python_version(), **library_versions()},
         "inputs_sha256": inputs_hash(input_hashes),
         "inputs": dict(input_hashes),
         "outputs": {path.relative_to(folder).as_posix(): file_hash(path) for path in files},
@@ -134,6 +134,11 @@ def write_manifest(folder: Path, *, manifest: Mapping[str, object]) -> None:
     """Write ``manifest.json``, the last file of a release."""
     text = json.dumps(manifest, indent=2, ensure_ascii=False, default=str)
     (folder / MANIFEST).write_text(text + "\n", encoding="utf-8")
+
+
+def library_versions() -> dict[str, str | None]:
+    """Give the version of every library that numbers and charts depend on."""
+    return {name: _version(name) for name in LIBRARIES}
 
 
 def _version(name: str) -> str | None:

@@ -31,7 +31,9 @@ DESK_ONLY_COLUMNS = frozenset({"note", "why_not", "source"})
 """Findings about these columns may quote the desk's own remarks, and stay in the desk's half."""
 
 
-def build_page(contents: ReleaseContents, *, charts: Sequence[DrawnChart], method_note: str) -> str:
+def build_page(
+    contents: ReleaseContents, *, charts: Sequence[DrawnChart], method_note: str, replay: str | None = None
+) -> str:
     """Write the page.
 
     Parameters
@@ -42,6 +44,8 @@ def build_page(contents: ReleaseContents, *, charts: Sequence[DrawnChart], metho
         Drawn charts, which go in as markup.
     method_note
         The note as Markdown, its foreign text already inert.
+    replay
+        Link to the contest's replay, relative to the page; None where it has none.
     """
     environment = Environment(
         loader=FileSystemLoader(TEMPLATES),
@@ -56,6 +60,7 @@ def build_page(contents: ReleaseContents, *, charts: Sequence[DrawnChart], metho
     return environment.get_template("page.html.j2").render(
         contents=contents,
         contest=contents.contest,
+        replay=replay,
         cautions=CAUTIONS,
         colours={look.name: look.colour for look in code_looks(contents.codes).values()},
         charts={drawn.chart.name: _markup(drawn) for drawn in charts},

@@ -17,7 +17,7 @@ from aggregator.release.chart_files import write_charts
 from aggregator.release.charts import build_charts, chart_frame
 from aggregator.release.contents import ReleaseContents
 from aggregator.release.draws_file import write_draws
-from aggregator.release.folder import RELEASES, write_folder
+from aggregator.release.folder import RELEASES, shelf_of, write_folder
 from aggregator.release.headlines import Headlines, build_headlines
 from aggregator.release.manifest import (
     build_manifest,
@@ -31,6 +31,7 @@ from aggregator.release.method_note import build_method_note
 from aggregator.release.model_checks import NO_CHECKS, ModelChecks
 from aggregator.release.page import build_page
 from aggregator.release.predictive_words import predictive_questions
+from aggregator.release.replay_link import replay_link
 from aggregator.release.run_features import summarise_pace
 from aggregator.release.seats_tables import seats_in_chamber
 from aggregator.release.table_files import round_table, write_table
@@ -135,13 +136,16 @@ def write_release(
         checks=checks,
     )
     reader_half = EMBARGOED if contents.status.unpublished else PUBLIC
+    # A release elsewhere may be carried anywhere: it links to nothing outside itself.
+    depth = len(shelf_of(inputs.folder, passed=verdict.passed).relative_to(inputs.folder).parts) + 1
+    replay = None if out is not None else replay_link(inputs.folder, up=depth + len(Path(reader_half).parts))
 
     def fill(folder: Path) -> None:
         input_hashes = _copy_inputs(inputs, folder / DESK / "inputs")
         _write_tables(contents, folder)
         write_draws(folder / DESK / "draws.nc", draws=draws, seats=seats)
         _write_warnings(contents, folder / DESK / "warnings.txt")
-        _write_reading(contents, folder / PUBLIC)
+        _write_reading(contents, folder / PUBLIC, replay=replay)
         if reader_half != PUBLIC:
             (folder / PUBLIC).rename(folder / reader_half)
         earlier = earlier_runs(inputs.folder / RELEASES, fingerprint=inputs_hash(input_hashes))
@@ -250,11 +254,11 @@ def _write_warnings(contents: ReleaseContents, path: Path) -> None:
     path.write_text("".join(f"{line}\n" for line in lines), encoding="utf-8")
 
 
-def _write_reading(contents: ReleaseContents, folder: Path) -> None:
+def _write_reading(contents: ReleaseContents, folder: Path, *, replay: str | None) -> None:
     """Write charts, method note and page."""
     charts = write_charts(folder / "charts", charts=build_charts(contents), frame=chart_frame(contents))
     note = build_method_note(contents)
     (folder / "method.md").write_text(note, encoding="utf-8")
     (folder / "index.html").write_text(
-        build_page(contents, charts=charts, method_note=note), encoding="utf-8"
+        build_page(contents, charts=charts, method_note=note, replay=replay), encoding="utf-8"
     )
