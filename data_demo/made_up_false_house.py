@@ -54,7 +54,7 @@ class FalseHouse(Violation):
     def change_register(self, register: Register, *, country: Country, rng: np.random.Generator) -> Register:
         """Add the false house's polls."""
         scenery = country.scenery
-        honest = register.polls.to_dict("records")
+        honest: list[dict[str, object]] = register.polls.to_dict("records")  # type: ignore[assignment]
         scale = self.wander * np.sqrt(0.15 / country.last_shares)
         kept = np.exp(-self.every_days / 7 / self.weeks)
         away = scale * rng.normal(size=scale.size)

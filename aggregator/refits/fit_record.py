@@ -11,11 +11,12 @@ import pandas as pd
 import xarray as xr
 
 from aggregator.estimate.fit import Fit
+from aggregator.estimate.predictive_checks import summarise_predictive
 from aggregator.inputs.contest import CountingRule
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.refits.program_version import program_version
 from aggregator.seats.counting import count_seats
-from aggregator.settings import SEATS_STREAM
+from aggregator.settings import PREDICTIVE_STREAM, SEATS_STREAM
 from aggregator.shelf_life.worth import summarise_shelf_life
 from models.dimensions import CHAIN, DATE, DRAW, PARTY, REGION
 
@@ -45,7 +46,8 @@ class FitRecord:
         ``as_of`` and ``polling_day`` (ISO dates), ``seed``, ``settings`` (those asked for), ``draws`` and
         ``target_accept`` (those in use in the end), ``passed``, ``verdict`` (its text), ``divergences``,
         ``worst_rhat``, ``least_bulk_ess``, ``least_tail_ess``, ``polls_used``, ``last_fieldwork`` (ISO
-        date), ``version``; and, what differs from run to run, ``seconds`` (``build``, ``sampling``,
+        date), ``version``; ``stands_out`` where the task asked for it (see :func:`list_standing_out`); and,
+        what differs from run to run, ``seconds`` (``build``, ``sampling``,
         ``all``) and ``reused_compilation``.
     """
 
@@ -74,6 +76,17 @@ def build_data(inputs: DeskInputs, fit: Fit) -> xr.Dataset:
         data[name] = data[name].astype(str)
     data.attrs = {}
     return data
+
+
+def list_standing_out(inputs: DeskInputs, fit: Fit) -> list[str]:
+    """Houses whose figures are not such as the fit would have expected; a blank stands for all together."""
+    table = summarise_predictive(
+        fit.parameters,
+        arrays=fit.arrays,
+        alliances=inputs.contest.alliances,
+        rng=np.random.default_rng([fit.settings.seed, PREDICTIVE_STREAM]),
+    )
+    return [str(house) for house in table.loc[table["stands_out"] == "yes", "house"]]
 
 
 def build_facts(inputs: DeskInputs, fit: Fit, *, asked: Mapping[str, Any]) -> dict[str, Any]:

@@ -32,14 +32,19 @@ class FitTask:
         What a fit reads of the desk's files; see `bare_inputs`.
     settings
         Length and seed.
+    test_figures
+        Whether to hold the houses' figures against what the fit would have expected.
     """
 
     key: str
     inputs: DeskInputs
     settings: RunSettings
+    test_figures: bool = False
 
 
-def build_task(inputs: DeskInputs, *, name: str, settings: RunSettings) -> FitTask:
+def build_task(
+    inputs: DeskInputs, *, name: str, settings: RunSettings, test_figures: bool = False
+) -> FitTask:
     """Build the task of fitting a contest as it stands in ``inputs``.
 
     Parameters
@@ -50,11 +55,15 @@ def build_task(inputs: DeskInputs, *, name: str, settings: RunSettings) -> FitTa
         What to call the contest in the key, such as its folder's name.
     settings
         Length and seed.
+    test_figures
+        Whether to hold the houses' figures against what the fit would have expected; it takes a part of the
+        time of a fit, and no score needs it.
     """
     bare = bare_inputs(inputs)
-    digest = hashlib.sha256(_as_text(bare, settings).encode()).hexdigest()[:HASH_DIGITS]
+    text = _as_text(bare, settings, test_figures=test_figures)
+    digest = hashlib.sha256(text.encode()).hexdigest()[:HASH_DIGITS]
     words = re.sub(r"[^A-Za-z0-9_]+", "_", name).strip("_")[:LONGEST_NAME] or "contest"
-    return FitTask(f"{words}-{bare.run_date}-{digest}", bare, settings)
+    return FitTask(f"{words}-{bare.run_date}-{digest}", bare, settings, test_figures)
 
 
 def bare_inputs(inputs: DeskInputs) -> DeskInputs:
@@ -77,7 +86,7 @@ def bare_inputs(inputs: DeskInputs) -> DeskInputs:
     )
 
 
-def _as_text(bare: DeskInputs, settings: RunSettings) -> str:
+def _as_text(bare: DeskInputs, settings: RunSettings, *, test_figures: bool) -> str:
     """Everything the numbers of a fit depend on; floats are written with all their digits."""
     tables = {
         name: table.to_csv(index=False) if table is not None else None
@@ -92,6 +101,7 @@ def _as_text(bare: DeskInputs, settings: RunSettings) -> str:
         "contest": bare.contest.model_dump(mode="json"),
         "run_date": bare.run_date.isoformat(),
         "settings": asdict(settings),
+        "test_figures": test_figures,
         "program": program_version(),
         **tables,
     }

@@ -11,7 +11,7 @@ from threadpoolctl import threadpool_limits
 from aggregator.errors import MachineError
 from aggregator.estimate.compiled_election import CompiledElection
 from aggregator.estimate.fit import compile_contest, fit_compiled
-from aggregator.refits.fit_record import FitRecord, build_data, build_facts
+from aggregator.refits.fit_record import FitRecord, build_data, build_facts, list_standing_out
 from aggregator.refits.fit_task import FitTask
 from aggregator.refits.program_version import program_version
 
@@ -72,6 +72,7 @@ def make_fit(task: FitTask, *, version: str) -> FitRecord:
         fit = fit_compiled(contest, settings=task.settings, weigh_polls=False, processes=1, progress=clock)
         clock("gathering")
         data = build_data(task.inputs, fit)
+        tested = {"stands_out": list_standing_out(task.inputs, fit)} if task.test_figures else {}
         clock("end")
     seconds = {
         "build": clock.seconds["build"],
@@ -79,4 +80,4 @@ def make_fit(task: FitTask, *, version: str) -> FitRecord:
         "all": sum(clock.seconds.values()),
     }
     facts = build_facts(task.inputs, fit, asked=asdict(task.settings))
-    return FitRecord(task.key, data, facts | {"seconds": seconds, "reused_compilation": reused})
+    return FitRecord(task.key, data, facts | tested | {"seconds": seconds, "reused_compilation": reused})

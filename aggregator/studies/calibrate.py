@@ -108,7 +108,9 @@ def fitted_elections(
         election = draw_invented_election(seed, size=plan.size, violation=plan.violation)
         settings = replace(plan.settings, seed=seed)
         # Not named after the violation: where that leaves the register alone, one fit serves both.
-        tasks.append(build_task(election.inputs, name=f"election_{seed}", settings=settings))
+        tasks.append(
+            build_task(election.inputs, name=f"election_{seed}", settings=settings, test_figures=True)
+        )
         invented.append(election)
 
     def tell(pace: Pace) -> None:

@@ -27,8 +27,9 @@ def list_noticed(election: InventedElection, fit: ReplayedFit, *, rng: np.random
     Returns
     -------
     pandas.DataFrame
-        Columns ``NOTICED_COLUMNS``: ``kind`` is "warning" (of the reading, by rule), "screen", or "check" (of
-        the fit); ``count`` how often.
+        Columns ``NOTICED_COLUMNS``: ``kind`` is "warning" (of the reading, by rule), "screen", "predictive"
+        (figures unlike what the fit would have expected, of a house or of all together), or "check" (of the
+        fit); ``count`` how often.
     """
     screens = screen_polls(election.inputs, rng=rng)
     counts = {
@@ -38,6 +39,11 @@ def list_noticed(election: InventedElection, fit: ReplayedFit, *, rng: np.random
         .items()
     }
     counts |= {("screen", str(name)): n for name, n in screens["screen"].value_counts(sort=False).items()}
+    out = [house for house in fit.facts["stands_out"] if house]
+    if out:
+        counts["predictive", "a house stands out"] = len(out)
+    if "" in fit.facts["stands_out"]:
+        counts["predictive", "all houses together stand out"] = 1
     if not has_passed(fit):
         counts["check", "of the fit failed"] = 1
     rows = [(election.seed, kind, name, int(count)) for (kind, name), count in counts.items()]

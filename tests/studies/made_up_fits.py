@@ -27,6 +27,7 @@ class MadeUpFit:
             "as_of": "2030-05-20",
             "passed": True,
             "divergences": 0,
+            "stands_out": [],
             "seconds": {"build": 1.0, "sampling": 2.0, "all": 4.0},
             "reused_compilation": False,
         }
