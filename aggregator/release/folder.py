@@ -216,11 +216,11 @@ def _writing_to(place: Path, *, what: str = "release") -> Iterator[None]:
     try:
         yield
     except OSError as problem:
-        what = (
+        cause = (
             "the disk is full. Free some space"
             if problem.errno in _DISK_FULL
             else f"{problem.strerror or problem}. Check that the folder exists and may be written"
         )
         raise MachineError(
-            f"The {what} could not be written to {place}: {what}, then run again. Nothing was left behind."
+            f"The {what} could not be written to {place}: {cause}, then run again. Nothing was left behind."
         ) from problem
