@@ -132,10 +132,16 @@ def calibrate(
     first_seed: Annotated[
         int, typer.Option(metavar="N", min=0, help="Seed of the first; the others follow one by one.")
     ] = 1,
-    size: Annotated[str, typer.Option(metavar="SIZE", help="Of the elections: small or whole.")] = "small",
+    size: Annotated[
+        str, typer.Option(metavar="SIZE", help="Of the elections: small, whole, or untidy.")
+    ] = "small",
     violation: Annotated[
         str | None,
-        typer.Option(metavar="NAME", help="What goes wrong in them that the model does not know."),
+        typer.Option(
+            metavar="NAME",
+            help="What goes wrong in them that the model does not know: late_swing, herding, false_house, "
+            "understated_noise, or partisan_refusals. They are then fitted without it, too.",
+        ),
     ] = None,
     scheduler: Annotated[str | None, _SCHEDULER] = None,
     workers: Annotated[int | None, _WORKERS] = None,
@@ -145,9 +151,10 @@ def calibrate(
     """Fit invented elections and hold the intervals against the truth.
 
     Every election is drawn anew by a simulator that shares no code with the model. Fits that are there are
-    not made again.
+    not made again. The report lies in OUT/as_assumed, or in a folder named after the violation.
     """
     from aggregator.studies.calibrate import run_calibration
+    from aggregator.studies.calibration_page import PAGE, cost_text, headlines
     from aggregator.studies.named_studies import size_called, violation_called
 
     wanted, wrong = size_called(size), violation_called(violation) if violation is not None else None
@@ -167,9 +174,8 @@ def calibrate(
 
     report = _followed(run, quiet=quiet)
     console = Console(highlight=False)
-    if report.verdict is not None:
-        console.print(Text(report.verdict.text), soft_wrap=True)
-    console.print(Text(str(out)), soft_wrap=True)
+    for line in (*headlines(report), f"Cost: {cost_text(report)}.", str(out / report.plan.name / PAGE)):
+        console.print(Text(line), soft_wrap=True)
     if report.verdict is not None and not report.verdict.passed:
         raise typer.Exit(EXIT_CHECKS_FAILED)
 

@@ -21,9 +21,6 @@ from data_demo.made_up_violation import Violation
 # Called with what is being done and the finished part of it, 0–1.
 type Progress = Callable[[str, float], None]
 
-HONEST = "as_assumed"
-"""Name of a study in which nothing goes wrong."""
-
 
 def run_calibration(
     *,
@@ -66,7 +63,7 @@ def run_calibration(
         If the machine failed; finished fits are kept.
     """
     plan = CalibrationPlan(elections, first_seed, size, violation, settings or RunSettings())
-    place = out / (HONEST if violation is None else violation.name)
+    place = out / plan.name
     check_place(place)
 
     def study(wrong: Violation | None) -> JudgedElections:
@@ -102,9 +99,8 @@ def fitted_elections(
     """Give each election of a plan with its fit, in the order of seeds."""
     invented: list[InventedElection] = []
     tasks: list[FitTask] = []
-    name = HONEST if plan.violation is None else plan.violation.name
     for seed in plan.seeds:
-        progress(f"inventing elections ({name})", len(tasks) / plan.elections)
+        progress(f"inventing elections ({plan.name})", len(tasks) / plan.elections)
         election = draw_invented_election(seed, size=plan.size, violation=plan.violation)
         settings = replace(plan.settings, seed=seed)
         # Not named after the violation: where that leaves the register alone, one fit serves both.
@@ -115,7 +111,7 @@ def fitted_elections(
 
     def tell(pace: Pace) -> None:
         left = "" if pace.seconds_left is None else f", {words_for(pace.seconds_left)} left"
-        progress(f"fitting elections ({name}{left})", pace.finished / pace.total)
+        progress(f"fitting elections ({plan.name}{left})", pace.finished / pace.total)
 
     records = run_tasks(tasks, store=store, scheduler=scheduler, workers=workers, progress=tell)
     yield from zip(invented, records, strict=True)

@@ -15,6 +15,7 @@ from aggregator.release.page import keep_percent_together
 from aggregator.studies.calibration_report import FEWEST_ELECTIONS, CalibrationReport
 from aggregator.studies.calibration_tables import page_tables
 
+PAGE = "index.html"
 TEMPLATES = Path(__file__).parent / "templates"
 CAUTION = (
     "Invented elections follow the model's own assumptions, with every number drawn anew. They show whether "

@@ -20,6 +20,8 @@ from aggregator.verdict import Verdict
 from data_demo.made_up_election import ElectionSize
 from data_demo.made_up_violation import Violation
 
+HONEST = "as_assumed"
+"""Name of a study in which nothing goes wrong."""
 FEWEST_ELECTIONS = 200
 """With fewer the pooled coverage of a right method strays by more than it is held to."""
 STATED, TOLERANCE = 90, 2.5
@@ -54,6 +56,11 @@ class CalibrationPlan:
     def seeds(self) -> range:
         """Seeds of the elections."""
         return range(self.first_seed, self.first_seed + self.elections)
+
+    @property
+    def name(self) -> str:
+        """What the study is called: its violation, or that there is none."""
+        return HONEST if self.violation is None else self.violation.name
 
     @property
     def size_text(self) -> str:

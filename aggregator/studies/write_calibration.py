@@ -14,7 +14,7 @@ from aggregator.release.chart_files import write_charts
 from aggregator.release.chart_style import Frame
 from aggregator.release.folder import replace_folder
 from aggregator.studies.calibration_charts import build_charts
-from aggregator.studies.calibration_page import CAUTION, build_page, title_of
+from aggregator.studies.calibration_page import CAUTION, PAGE, build_page, title_of
 from aggregator.studies.calibration_report import CalibrationReport
 
 STUDY = "study.json"
@@ -52,7 +52,7 @@ def write_calibration(report: CalibrationReport, place: Path) -> None:
             )
         frame = Frame(source=f"{title_of(report)}: {report.plan.size_text}.", caution=CAUTION)
         charts = write_charts(folder / "charts", charts=build_charts(report), frame=frame)
-        (folder / "index.html").write_text(build_page(report, charts=charts), encoding="utf-8")
+        (folder / PAGE).write_text(build_page(report, charts=charts), encoding="utf-8")
         (folder / STUDY).write_text(
             json.dumps(_about(report), indent=1, ensure_ascii=False) + "\n", encoding="utf-8"
         )
