@@ -32,13 +32,24 @@ class Rivals:
     last_result
         Votes at the last election, one row per seat or region; None without one: the rivals that stand on
         it are then silent.
+    counted_result
+        Votes of regions that vote before the others; uniform swing takes their seats as they were counted,
+        from the day on which their count was published.
     """
 
-    def __init__(self, polls: pd.DataFrame, *, contest: Contest, last_result: pd.DataFrame | None) -> None:
+    def __init__(
+        self,
+        polls: pd.DataFrame,
+        *,
+        contest: Contest,
+        last_result: pd.DataFrame | None,
+        counted_result: pd.DataFrame | None = None,
+    ) -> None:
         self._contest = contest
         self._parties = list(contest.party_codes)
         self._last = None if last_result is None else result_shares(last_result, contest=contest)
         self._votes = None if last_result is None else votes_in_seats(last_result, contest=contest)
+        self._counted = None if counted_result is None else votes_in_seats(counted_result, contest=contest)
         last = None if self._last is None else self._last.T[COUNTRY]
         self._national = national_polls(polls, contest=contest, last=last)
         self._regional = {
@@ -77,6 +88,7 @@ class Rivals:
         change = self._changes(_published_by(self._national, day), day)
         if change is not None:
             swung = _swing_seats(self._votes, change=change, last=self._last, contest=self._contest)
+            swung = self._with_counts_of(day, swung)
             said[Method.UNIFORM_SWING] = seats_from_leads(swung).droplevel("region")
         return said
 
@@ -100,6 +112,15 @@ class Rivals:
             if len(own) and _decayed(own, day).sum() >= ENOUGH_IN_REGION:
                 change.loc[region] = self._decaying_mean(own, day) - self._last.loc[region].fillna(0.0)
         return change
+
+    def _with_counts_of(self, day: pd.Timestamp, seats: pd.DataFrame) -> pd.DataFrame:
+        """Put the votes of seats that were counted by a day in the place of what was expected of them."""
+        if self._counted is None:
+            return seats
+        known = [r.code for r in self._contest.regions if r.counted and pd.Timestamp(r.counted) <= day]
+        counted = self._counted[self._counted.index.get_level_values("region").isin(known)]
+        counted = counted.loc[counted.index.intersection(seats.index)]
+        return pd.concat([seats.drop(index=counted.index), counted]).loc[seats.index]
 
     def _swung_regions(self, national: pd.DataFrame, day: pd.Timestamp) -> pd.DataFrame | None:
         change = self._changes(national, day)

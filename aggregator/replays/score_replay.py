@@ -186,7 +186,12 @@ def _rivals_by_day(
     days: Iterable[pd.Timestamp], *, inputs: DeskInputs, polls_as_of: Mapping[date, pd.DataFrame]
 ) -> dict[pd.Timestamp, Rivals]:
     def of(polls: pd.DataFrame) -> Rivals:
-        return Rivals(polls, contest=inputs.contest, last_result=inputs.last_result)
+        return Rivals(
+            polls,
+            contest=inputs.contest,
+            last_result=inputs.last_result,
+            counted_result=inputs.counted_result,
+        )
 
     as_they_stand = of(inputs.polls)
     return {day: of(polls_as_of[day.date()]) if day.date() in polls_as_of else as_they_stand for day in days}

@@ -144,6 +144,26 @@ def test_a_regions_own_polls_give_its_swing_once_they_are_large_enough():
     assert east[0] > 0.3
 
 
+def test_seats_that_are_counted_are_taken_as_counted_from_the_day_of_the_count():
+    early = contest()
+    west = early.regions[1].model_copy(update={"counted": date(2033, 4, 1), "polling_day": date(2033, 3, 30)})
+    early = early.model_copy(update={"regions": (early.regions[0], west)})
+    counted = pd.DataFrame(
+        [["W1", "W1", "WEST", 10, 20, np.nan, 900]],
+        columns=["seat", "name", "region", "FER", "LAN", "HED", "OTH"],
+    )
+    said = Rivals(
+        pd.DataFrame([whole("A", 40, published="2033-03-20")]),
+        contest=early,
+        last_result=last_result(),
+        counted_result=counted,
+    )
+    before, after = (
+        said.seats(day)[Method.UNIFORM_SWING].loc["W1"] for day in (DAY - pd.Timedelta(days=1), DAY)
+    )
+    assert (before.idxmax(), after.idxmax()) == ("FER", "OTH")
+
+
 def test_without_a_last_result_only_rivals_made_of_polls_speak():
     said = rivals(whole("A", 40, published="2033-03-20"))
     assert set(said.support(DAY)) == {Method.LATEST_POLL, Method.MEAN_30_DAYS, Method.DECAYING_MEAN}
