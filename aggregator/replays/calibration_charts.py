@@ -102,8 +102,8 @@ def build_reliability_chart(reliability: pd.DataFrame, *, layout: Layout) -> alt
         ),
     ]
     placed = (
-        (counted[never], "left", 4, -12),
-        (counted[sure], "right", -4, 14),
+        (counted[never], "left", -2, -26),
+        (counted[sure], "right", 2, 26),
         (counted[below & ~never & ~sure], "left", 9, 0),
         (counted[~below & ~never & ~sure], "right", -9, 0),
     )
