@@ -18,6 +18,7 @@ from aggregator.inputs.reading_rules import Rule
 from aggregator.problems import Problem, Severity
 from aggregator.refits.fit_task import FitTask, build_task
 from aggregator.replays.replay_dates import ReplaySpan, replay_dates
+from aggregator.replays.result_shares import has_seats, seats_of_outcome
 from aggregator.settings import RunSettings
 
 Progress = Callable[[str, float], None]
@@ -129,6 +130,9 @@ def _plan(
 ) -> ContestReplay:
     inputs = read_contest_folder(folder, today=today)
     outcome = read_outcome(folder, contest=inputs.contest, last_result=inputs.last_result)
+    if outcome is not None and has_seats(outcome.votes, contest=inputs.contest):
+        # A tie that leaves a seat without a winner must be known before the fits, not after.
+        seats_of_outcome(outcome.votes, contest=inputs.contest)
     voting = inputs.contest.last_polling_day
     under_way = inputs.run_date == today
     dates = replay_dates(span, polling_day=voting, today=today if under_way else None)

@@ -10,14 +10,15 @@ import numpy as np
 import pandas as pd
 
 from aggregator.errors import InputError
-from aggregator.inputs.contest import Contest
+from aggregator.inputs.contest import Contest, CountingRule
 from aggregator.problems import Problem
 from aggregator.release.codes import Code, contest_codes
 
 COUNTRY = ""
 """How tables call the whole country."""
 OUTCOME_FILE = "result_outcome.csv"
-_CANNOT_TELL = "R-TIE"
+_RULE = "replay"
+"""What a finding of scoring says in the place of a reading rule's number."""
 
 
 @dataclass(frozen=True)
@@ -94,6 +95,11 @@ def seats_from_leads(votes: pd.DataFrame) -> pd.DataFrame:
     return leads.div(leads.sum(axis=1), axis=0)
 
 
+def has_seats(outcome: pd.DataFrame, *, contest: Contest) -> bool:
+    """Whether an outcome says who won which seat, by plurality."""
+    return contest.counting.rule is CountingRule.PLURALITY and bool(outcome["seat"].astype(bool).all())
+
+
 def seats_of_outcome(outcome: pd.DataFrame, *, contest: Contest) -> pd.DataFrame:
     """Who won each seat, 0 or 1, index seat, columns parties.
 
@@ -114,5 +120,5 @@ def _tie(seat: str, shares: pd.Series) -> Problem:
     tied = " and ".join(str(code) for code in shares.index[shares > 0])
     return Problem(
         OUTCOME_FILE, None, None, f"the same votes for {tied} in seat {seat}", "one winner",
-        "Add one vote to whom the lot, or the court, gave the seat.", _CANNOT_TELL,
+        "Add one vote to whom the lot, or the court, gave the seat.", _RULE,
     )  # fmt: skip

@@ -10,7 +10,7 @@ import numpy as np
 import pandas as pd
 import xarray as xr
 
-from aggregator.inputs.contest import Contest, CountingRule
+from aggregator.inputs.contest import Contest
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.replays.calibration import summarise_places, summarise_reliability
 from aggregator.replays.compare_methods import compare_methods
@@ -26,6 +26,7 @@ from aggregator.replays.replayed_fit import ReplayedFit, as_of, in_order_of_date
 from aggregator.replays.result_shares import (
     COUNTRY,
     ScoredCodes,
+    has_seats,
     result_shares,
     scored_codes,
     seats_of_outcome,
@@ -176,7 +177,7 @@ class _Truth:
 
 def _truth(outcome: pd.DataFrame, *, contest: Contest, codes: ScoredCodes) -> _Truth:
     support = result_shares(outcome, contest=contest) @ codes.sums.T
-    if contest.counting.rule is not CountingRule.PLURALITY or not outcome["seat"].astype(bool).all():
+    if not has_seats(outcome, contest=contest):
         return _Truth(support, None, None)
     won = seats_of_outcome(outcome, contest=contest)
     return _Truth(support, codes.sums @ won.sum(), won)
