@@ -12,6 +12,8 @@ import pandas as pd
 import pytest
 
 from aggregator.errors import MachineError, UsageError
+from aggregator.release.schema_docs import describe_schema
+from aggregator.release.table_columns import TableSchema
 from aggregator.settings import RunSettings
 from aggregator.studies.calibration_page import headlines
 from aggregator.studies.calibration_report import (
@@ -20,6 +22,7 @@ from aggregator.studies.calibration_report import (
     build_report,
     judge_calibration,
 )
+from aggregator.studies.calibration_schemas import CALIBRATION_SCHEMAS
 from aggregator.studies.invented_elections import draw_invented_election
 from aggregator.studies.judged_elections import JudgedElections, judge_elections
 from aggregator.studies.write_calibration import check_place, write_calibration
@@ -29,6 +32,7 @@ from tests.studies.made_up_fits import made_up_pair
 
 TINY = replace(SMALL_ELECTION, parties=3, regions=2, seats=6, polls=25, weeks=26, polled_weeks=24, houses=4)
 ELECTIONS = 40
+DOCS = Path(__file__).parents[2] / "docs"
 
 
 @pytest.fixture(scope="module")
@@ -122,13 +126,32 @@ def test_the_folder_holds_page_charts_and_tables(right: CalibrationReport, tmp_p
     place = tmp_path / "small" / "as_assumed"
     write_calibration(right, place)
     names = {path.name for path in place.iterdir()}
-    assert {"index.html", "coverage.csv", "numbers.csv", "charts", "study.json"} <= names
+    assert names == {"index.html", "tables", "charts", "study.json"}
     page = (place / "index.html").read_text(encoding="utf-8")
     assert "How often intervals hold the truth" in page and "seeds 1 to 40" in page
-    coverage = pd.read_csv(place / "coverage.csv")
+    coverage = pd.read_csv(place / "tables" / "coverage.csv")
     assert coverage["stated"].drop_duplicates().tolist() == [50, 80, 90, 95]
     about = json.loads((place / "study.json").read_text(encoding="utf-8"))
     assert (about["elections"], about["first_seed"], about["violation"]) == (40, 1, None)
+    written = {path.relative_to(place).as_posix() for path in place.rglob("*") if path.is_file()}
+    assert set(about["outputs"]) == written - {"study.json"}
+
+
+def test_every_table_keeps_its_schema(inputs: Any, monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    monkeypatch.setattr("aggregator.studies.write_calibration.write_charts", lambda *_, **__: ())
+    honest = study(inputs, monkeypatch=monkeypatch)
+    violated = build_report(plan(violation=VIOLATIONS["herding"]), honest, honest=honest)
+    verdict = judge_calibration(violated.coverage, violated.uniformity, violated.errors)
+    write_calibration(replace(violated, verdict=verdict), tmp_path / "herding")
+    for schema in CALIBRATION_SCHEMAS:
+        table = pd.read_csv(tmp_path / "herding" / schema.path, keep_default_na=False)
+        assert tuple(table.columns) == schema.column_names
+
+
+@pytest.mark.parametrize("schema", CALIBRATION_SCHEMAS, ids=lambda schema: schema.path)
+def test_formats_describes_every_column_of_every_table(schema: TableSchema) -> None:
+    """On a failure, put the text of ``describe_schema`` in the place of the old one."""
+    assert describe_schema(schema) in (DOCS / "formats.md").read_text(encoding="utf-8")
 
 
 def test_a_folder_of_something_else_is_left_alone(tmp_path: Path) -> None:
