@@ -13,11 +13,9 @@ import pandas as pd
 import pytest
 
 from aggregator.errors import MachineError, UsageError
-from aggregator.release.page import build_page
-from aggregator.release.replay_link import replay_link
+from aggregator.release import write_release
 from aggregator.release.schema_docs import describe_schema
 from aggregator.release.table_files import check_table
-from aggregator.release.write_release import build_contents
 from aggregator.replays import write_report
 from aggregator.replays.pooling import pool_replays
 from aggregator.replays.replay_cautions import REPLAY_CAUTIONS
@@ -229,22 +227,35 @@ def test_several_contests_are_pooled_with_the_contest_as_unit(replay, scores):
     }  # fmt: skip
 
 
-def test_a_release_links_to_the_latest_replay_of_its_contest_and_only_if_there_is_one(tmp_path):
-    arguments = {k: v for k, v in made_up_run(tmp_path / "contest").items()}
-    folder = arguments["inputs"].folder  # type: ignore[attr-defined]
-    release = build_contents(**arguments)  # type: ignore[arg-type]
-    assert replay_link(folder, up=3) is None
+def _leave_replays(folder: Path) -> Path:
+    """Leave two reports in a contest folder; the page of the later one."""
     for name in ("2033-01-02_2033-03-06", "2033-02-06_2033-03-06"):
         report = folder / "replays" / name / "report"
         report.mkdir(parents=True)
         (report / "index.html").write_text("", encoding="utf-8")
-    link = replay_link(folder, up=3)
-    assert link is not None
-    public = folder / "releases" / "2033-03-06" / "public"
-    public.mkdir(parents=True)
-    assert (public / link).resolve() == (report / "index.html").resolve()
-    assert f'href="{link}"' in build_page(release, charts=(), method_note="", replay=link)
-    assert "replays/" not in build_page(release, charts=(), method_note="")
+    return report / "index.html"
+
+
+@pytest.mark.parametrize(("passed", "unpublished"), [(True, ()), (False, ("P001",))])
+def test_a_release_links_to_the_latest_replay_of_its_contest_wherever_its_page_lies(
+    tmp_path, monkeypatch, passed, unpublished
+):
+    monkeypatch.setattr(write_release, "write_charts", lambda *_args, **_kwargs: ())
+    folder = tmp_path / "contest"
+    latest = _leave_replays(folder)
+    written = write_release.write_release(**made_up_run(folder, passed=passed, unpublished=unpublished))  # type: ignore[arg-type]
+    found = re.findall(r'href="([^"]*replays[^"]*)"', written.page.read_text(encoding="utf-8"))
+    assert [(written.page.parent / link).resolve() for link in found] == [latest.resolve()]
+
+
+def test_a_release_without_a_replay_or_in_a_place_of_its_own_links_to_none(tmp_path, monkeypatch):
+    monkeypatch.setattr(write_release, "write_charts", lambda *_args, **_kwargs: ())
+    run = made_up_run(tmp_path / "contest")
+    without = write_release.write_release(**run)  # type: ignore[arg-type]
+    _leave_replays(tmp_path / "contest")
+    elsewhere = write_release.write_release(**run, out=tmp_path / "elsewhere")  # type: ignore[arg-type]
+    for written in (without, elsewhere):
+        assert "replays/" not in written.page.read_text(encoding="utf-8")
 
 
 def test_the_dates_of_a_report_are_those_of_its_fits(replay, scores):
