@@ -8,7 +8,7 @@ all keep their last shares, and the row's own are scaled to the rest.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 
 import numpy as np
 import numpy.typing as npt
@@ -57,25 +57,30 @@ def _of_polls(
     parties = list(contest.party_codes)
     standing = np.array([any(contest.stands_in(party, region) for region in where) for party in parties])
     shares = _split_lumps(polls, contest=contest, prior=_prior(last, parties=parties), standing=standing)
-    records = []
-    for _, rows in polls.assign(place=np.arange(len(polls))).groupby("poll", sort=True):
-        chosen = _rows_of_country(rows, everywhere=set(where))
-        if chosen is not None:
-            weight = chosen["respondents"].to_numpy(float)
-            mean = np.average(shares[chosen["place"]], axis=0, weights=weight)
-            head = {name: chosen[name].iloc[0] for name in _KEPT}
-            records.append(head | {"respondents": weight.sum()} | dict(zip(parties, mean, strict=True)))
-    table = pd.DataFrame(records, columns=[*_KEPT, "respondents", *parties])
+    rows = polls[[*_KEPT, "regions", "respondents"]].reset_index(drop=True)
+    rows = rows.join(pd.DataFrame(shares, columns=parties))
+    everywhere = set(where)
+    whole = np.array([set(regions) == everywhere for regions in rows["regions"]], dtype=bool)
+    in_one = rows[whole].drop_duplicates("poll")
+    in_parts = rows[~whole & ~rows["poll"].isin(in_one["poll"]).to_numpy(bool)]
+    together = [_mean_of_parts(part, parties) for part in _covering(in_parts, everywhere)]
+    table = pd.concat([in_one, *together]) if together else in_one
+    table = table[[*_KEPT, "respondents", *parties]]
     return table.sort_values(["published", "end", "respondents", "poll"], ignore_index=True)
 
 
-def _rows_of_country(rows: pd.DataFrame, *, everywhere: set[str]) -> pd.DataFrame | None:
-    """The poll's row for all regions, or else the rows that cover them without overlap."""
-    whole = rows[[set(regions) == everywhere for regions in rows["regions"]]]
-    if len(whole):
-        return whole.head(1)
-    covered = [region for regions in rows["regions"] for region in regions]
-    return rows if set(covered) == everywhere and len(covered) == len(everywhere) else None
+def _covering(rows: pd.DataFrame, everywhere: set[str]) -> Iterator[pd.DataFrame]:
+    """Rows of each poll whose breakdown covers all regions without overlap."""
+    for _, part in rows.groupby("poll", sort=True):
+        covered = [region for regions in part["regions"] for region in regions]
+        if len(covered) == len(everywhere) and set(covered) == everywhere:
+            yield part
+
+
+def _mean_of_parts(part: pd.DataFrame, parties: list[str]) -> pd.DataFrame:
+    weight = part["respondents"].to_numpy(float)
+    mean = np.average(part[parties].to_numpy(float), axis=0, weights=weight)
+    return part.head(1).assign(respondents=weight.sum(), **dict(zip(parties, mean, strict=True)))
 
 
 def _prior(last: pd.Series | None, *, parties: list[str]) -> Floats:
