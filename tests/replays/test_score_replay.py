@@ -65,12 +65,14 @@ def test_the_order_of_records_polls_and_seats_changes_nothing(replay, scores):
         )
 
 
-def test_the_same_seed_gives_the_same_places_of_seats_and_another_seed_others(replay, scores):
-    again = score_replay(replay.records, inputs=replay.inputs, outcome=replay.outcome)
-    other = score_replay(replay.records, inputs=replay.inputs, outcome=replay.outcome, seed=5)
-    pd.testing.assert_series_equal(again.scores["pit"], scores.scores["pit"])
-    seats = scores.scores["quantity"] == "seats"
-    assert not np.allclose(other.scores.loc[seats, "pit"], scores.scores.loc[seats, "pit"], equal_nan=True)
+def test_the_same_seed_gives_the_same_places_of_seats_and_another_seed_others(replay):
+    first, again, other = (
+        score_replay(replay.records[:1], inputs=replay.inputs, outcome=replay.outcome, seed=seed).scores
+        for seed in (4, 4, 5)
+    )
+    pd.testing.assert_series_equal(again["pit"], first["pit"])
+    seats = first["quantity"] == "seats"
+    assert not np.allclose(other.loc[seats, "pit"], first.loc[seats, "pit"], equal_nan=True)
 
 
 def test_a_party_is_not_scored_where_it_does_not_stand(scores):
@@ -137,7 +139,9 @@ def many(tmp_path_factory: pytest.TempPathFactory) -> dict[float, pd.DataFrame]:
 
 def _one(folder: Path, seed: int, too_sure: float) -> pd.DataFrame:
     one = made_up_replay(folder, seed=seed + 100, dates=1, too_sure=too_sure)
-    table = score_replay(one.records, inputs=one.inputs, outcome=one.outcome).scores
+    # Rivals are not looked at here: two polls and no last result keep them short.
+    inputs = replace(one.inputs, polls=one.inputs.polls.head(2), last_result=None)
+    table = score_replay(one.records, inputs=inputs, outcome=one.outcome).scores
     return table[(table["method"] == "fieldfold") & (table["region"] == "") & (table["level"] != "alliance")]
 
 
