@@ -6,9 +6,12 @@ held against that of the same elections without the violation.
 
 from __future__ import annotations
 
+from collections import Counter
+
 import numpy as np
 import pandas as pd
 
+from aggregator.inputs.reading_rules import Rule
 from aggregator.replays.replayed_fit import ReplayedFit, has_passed
 from aggregator.screens.screen_polls import screen_polls
 from aggregator.studies.invented_elections import InventedElection
@@ -32,13 +35,9 @@ def list_noticed(election: InventedElection, fit: ReplayedFit, *, rng: np.random
         fit); ``count`` how often.
     """
     screens = screen_polls(election.inputs, rng=rng)
-    counts = {
-        ("warning", str(rule)): count
-        for rule, count in pd.Series([p.rule for p in election.inputs.warnings], dtype=object)
-        .value_counts(sort=False)
-        .items()
-    }
-    counts |= {("screen", str(name)): n for name, n in screens["screen"].value_counts(sort=False).items()}
+    said = [("warning", _rule_in_words(problem.rule)) for problem in election.inputs.warnings]
+    said += [("screen", str(name)) for name in screens["screen"]]
+    counts = Counter(said)
     out = [house for house in fit.facts["stands_out"] if house]
     if out:
         counts["predictive", "a house stands out"] = len(out)
@@ -46,7 +45,7 @@ def list_noticed(election: InventedElection, fit: ReplayedFit, *, rng: np.random
         counts["predictive", "all houses together stand out"] = 1
     if not has_passed(fit):
         counts["check", "of the fit failed"] = 1
-    rows = [(election.seed, kind, name, int(count)) for (kind, name), count in counts.items()]
+    rows = [(election.seed, kind, name, count) for (kind, name), count in counts.items()]
     return pd.DataFrame(rows, columns=list(NOTICED_COLUMNS))
 
 
@@ -63,3 +62,8 @@ def summarise_noticed(noticed: pd.DataFrame, *, elections: int) -> pd.DataFrame:
         {"elections": 100 * grouped.size() / elections, "mean_count": grouped.sum() / elections}
     )
     return table.reset_index()
+
+
+def _rule_in_words(number: str) -> str:
+    """Name a rule of reading by its number and subject, such as "R35 windows overlap"."""
+    return f"{number} {Rule(number).name.lower().replace('_', ' ')}"
