@@ -112,7 +112,9 @@ def _errors(row: dict[object, object], quantity: Quantity) -> str:
     # Two that differ clearly must not read the same.
     alike = share_text(rival) == share_text(own) and row["nearer"] != Nearer.NO_CLEAR_DIFFERENCE
     digits = 2 if alike else 1
-    return f"mean error {rival:.{digits}f} against {own:.{digits}f} {UNIT[quantity]}"
+    # In the order in which the sentence names the two.
+    first, second = (own, rival) if row["nearer"] == Nearer.FIELDFOLD else (rival, own)
+    return f"mean error {first:.{digits}f} against {second:.{digits}f} {UNIT[quantity]}"
 
 
 def rival_sentences(contents: ReportContents) -> tuple[str, ...]:

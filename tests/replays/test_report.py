@@ -263,3 +263,18 @@ def test_the_dates_of_a_report_are_those_of_its_fits(replay, scores):
     assert fits is not None
     assert fits["as_of"].tolist() == [pd.Timestamp(str(fit.facts["as_of"])) for fit in replay.records]
     assert fits["last_fieldwork"].max().date() < date(2033, 5, 15)
+
+
+def test_a_sentence_gives_the_two_errors_in_the_order_in_which_it_names_the_methods(replay, scores):
+    table = scores.comparisons.assign(own_error=1.0, rival_error=2.0, nearer="no clear difference")
+    chosen = (table["rival"] == "last_result") & (table["where"] == "country")
+    said = {}
+    for nearer in ("fieldfold", "rival"):
+        gathered = replace(contents(replay, scores), comparisons=table.assign(nearer=nearer)[chosen])
+        said[nearer] = rival_sentences(gathered)[0]
+    assert said["fieldfold"] == (
+        "Support in the country: this model was nearer than the last result (mean error 1.0 against 2.0 points)."
+    )
+    assert said["rival"] == (
+        "Support in the country: the last result was nearer than this model (mean error 2.0 against 1.0 points)."
+    )
