@@ -273,8 +273,10 @@ def test_a_sentence_gives_the_two_errors_in_the_order_in_which_it_names_the_meth
         gathered = replace(contents(replay, scores), comparisons=table.assign(nearer=nearer)[chosen])
         said[nearer] = rival_sentences(gathered)[0]
     assert said["fieldfold"] == (
-        "Support in the country: this model was nearer than the last result (mean error 1.0 against 2.0 points)."
+        "Support in the country: this model was nearer than the last result "
+        "(mean error 1.0 against 2.0 points)."
     )
     assert said["rival"] == (
-        "Support in the country: the last result was nearer than this model (mean error 2.0 against 1.0 points)."
+        "Support in the country: the last result was nearer than this model "
+        "(mean error 2.0 against 1.0 points)."
     )
