@@ -221,7 +221,7 @@ def _summary(outcome: ReplayOutcome) -> list[str]:
     lines = [
         f"{outcome.dates} fits, {outcome.made} of them made now.",
         f"A fit took {words_for(costs.next_seconds)}, {words_for(costs.first_seconds)} where its worker had "
-        f"to compile; chains ran for {costs.sampling_part:.0%} of the time.",
+        f"to compile; chains ran for {100 * costs.sampling_part:.0f} % of the time.",
     ]
     counts = sorted({at_work or 1, OTHER_WORKERS})
     forecasts = [

@@ -10,6 +10,7 @@ import re
 import textwrap
 from collections.abc import Iterator
 from pathlib import Path
+from typing import Any
 
 import typer
 from typer.main import get_command
@@ -29,17 +30,18 @@ COMMANDS_OPENING = """\
 
 What `fieldfold --help` and `fieldfold COMMAND --help` say. Everything is also a Python call:
 `aggregator.weekly_run.refresh`, `aggregator.inputs.contest_folder.read_contest_folder`,
-`aggregator.inputs.new_contest.new_contest`.
+`aggregator.inputs.new_contest.new_contest`, `aggregator.replays.replay.replay`,
+`aggregator.studies.calibrate.run_calibration`.
 
 | exit code | meaning |
 | ---: | --- |
 | 0 | done |
 | 1 | wrong input: every finding is on screen, nothing was written |
 | 2 | wrong usage: the command was called in a way that cannot work |
-| 3 | done, but the checks of the fit failed: the release is marked and lies under `releases/failed/` |
-| 5 | machine trouble: a full disk, a worker that died |
+| 3 | done, but checks failed: a release is marked and lies under `releases/failed/`; a replay names dates |
+| 5 | machine trouble: a full disk, a scheduler that does not answer, workers that keep dying |
 | 70 | internal error: please report it |
-| 130 | interrupted: nothing was written |
+| 130 | interrupted: nothing was written; of many fits, the finished ones are kept |
 """
 
 
@@ -47,13 +49,28 @@ def commands_page() -> str:
     """Build the commands page from the help texts."""
     group = get_command(app)
     top = group.make_context("fieldfold", [], resilient_parsing=True, terminal_width=HELP_WIDTH)
-    parts = [COMMANDS_OPENING, _help_section(top)]
-    for name in group.list_commands(top):  # type: ignore[attr-defined]
-        command = group.get_command(top, name)  # type: ignore[attr-defined]
-        parts.append(
-            _help_section(command.make_context(f"fieldfold {name}", [], parent=top, resilient_parsing=True))
+    return "\n".join([COMMANDS_OPENING, *_help_sections(group, top)])
+
+
+def _help_sections(group: Any, context: typer.Context) -> Iterator[str]:
+    """Give the help of a group, then of everything in it."""
+    name = context.info_name
+    inner = [(group.get_command(context, word), f"{name} {word}") for word in group.list_commands(context)]
+    contexts = [
+        (
+            command,
+            command.make_context(
+                words, [], parent=context, resilient_parsing=True, terminal_width=HELP_WIDTH
+            ),
         )
-    return "\n".join(parts)
+        for command, words in inner
+    ]
+    yield _help_section(context)
+    for command, below in contexts:
+        if hasattr(command, "list_commands"):
+            yield from _help_sections(command, below)
+        else:
+            yield _help_section(below)
 
 
 def _help_section(context: typer.Context) -> str:

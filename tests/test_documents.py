@@ -113,11 +113,13 @@ def test_links_lead_somewhere(page):
 
 @pytest.mark.parametrize("page", PAGES, ids=lambda page: page.name)
 def test_commands_shown_exist_with_their_options(page):
-    commands = get_command(app).commands
     shown = [line for block in code_blocks(page, "sh") for line in block.splitlines()]
     for line in shown:
-        for name, rest in re.findall(r"fieldfold (\w[\w-]*)([^#&]*)", line):
-            options = {option for parameter in commands[name].params for option in parameter.opts}
+        for words, rest in re.findall(r"fieldfold ((?:study )?\w[\w-]*)([^#&]*)", line):
+            command = get_command(app)
+            for word in words.split():
+                command = command.commands[word]
+            options = {option for parameter in command.params for option in parameter.opts}
             assert set(re.findall(r"--[\w-]+", rest)) <= options | {"--help"}, line
 
 

@@ -17,7 +17,7 @@ from aggregator.refits.program_version import program_version
 
 
 @dataclass
-class _CompileCache:
+class CompileCache:
     """The last compiled election of this process: the next fit of the same contest need not compile.
 
     Its numbers are overwritten by each fit, so one fit at a time may hold the lock.
@@ -27,7 +27,7 @@ class _CompileCache:
     election: CompiledElection | None = None
 
 
-_cache = _CompileCache()
+compile_cache = CompileCache()
 
 
 class _Stopwatch:
@@ -63,11 +63,11 @@ def make_fit(task: FitTask, *, version: str) -> FitRecord:
             "A worker runs another program, so its numbers would not be the same. Install the same versions "
             f"there, and start it again.\n  here:   {version}\n  worker: {program_version()}"
         )
-    with _cache.lock, threadpool_limits(1):
+    with compile_cache.lock, threadpool_limits(1):
         clock = _Stopwatch("build")
-        before = _cache.election
+        before = compile_cache.election
         contest = compile_contest(task.inputs, like=before)
-        _cache.election = contest.election
+        compile_cache.election = contest.election
         reused = before is not None and contest.election.density.compiled is before.density.compiled
         fit = fit_compiled(contest, settings=task.settings, weigh_polls=False, processes=1, progress=clock)
         clock("gathering")
