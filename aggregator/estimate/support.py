@@ -137,8 +137,9 @@ def summarise_support(
     kinds = {MODE: arrays.leans.modes, POPULATION: arrays.leans.populations}
     kinds[FORMATION] = arrays.leans.formations
     return xr.Dataset(
-        data | fixed,
+        data | {name: value for name, value in fixed.items() if not name.startswith("era_")},
         coords={
+            **{name: value for name, value in fixed.items() if name.startswith("era_")},
             PARTY: list(country.parties),
             REGION: list(country.regions),
             HOUSE: list(arrays.rows.houses),
