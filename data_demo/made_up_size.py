@@ -33,6 +33,8 @@ class ElectionSize:
         Weeks from the last election to polling day, and how many of the last of them see polls.
     silent_days
         Days from the last publication of a poll to polling day.
+    drift
+        Factor on the usual speed of opinion: below one for a calmer country.
     special_rows
         Whether houses lump small parties, pool alliances, ask in one region, break down by region and
         publish undecided; without them each poll is national and lists every party.
@@ -69,6 +71,7 @@ class ElectionSize:
     weeks: int = 209
     polled_weeks: int = 78
     silent_days: int = 8
+    drift: float = 1.0
     regional_party: bool = True
     new_party: bool = True
     dissolved_party: bool = True
@@ -159,6 +162,7 @@ def draw_scenery(size: ElectionSize, *, rng: np.random.Generator) -> Scenery:
         polls=size.polls,
         alliances=alliances,
         dissolved=("OLD", 0.05) if size.dissolved_party else None,
+        drift=size.drift,
     )
     houses = tuple(
         _untidy(house, number=i, size=size, scenery=scenery) for i, house in enumerate(scenery.houses)

@@ -1,8 +1,9 @@
 """An invented election as a desk would meet it, and the truth to hold its estimates against.
 
-Everything is drawn anew from the seed: drift, houses, the lean they share, regions, seats, rounding, lumping,
-and how long before polling day the polls fall silent. The election takes the whole way: it is written as a
-contest folder and read like a desk's. The simulator (``data_demo``) shares no code with the model.
+Everything is drawn anew from the seed: how fast opinion moves, houses, the lean they share, regions, seats,
+rounding, lumping, and how long before polling day the polls fall silent. The election takes the whole way: it
+is written as a contest folder and read like a desk's. The simulator (``data_demo``) shares no code with the
+model.
 """
 
 from __future__ import annotations
@@ -24,8 +25,10 @@ from data_demo.made_up_violation import Violation
 
 SHORTEST_SILENCE, LONGEST_SILENCE = 2, 28
 """Days from the last publication to polling day: from hardly any to the longer bans on publishing."""
-# Streams of random numbers beside the simulator's own, which are 0 to 6.
-SILENCE_STREAM = 10
+DRIFT_LOG_SD = 0.42
+"""Countries differ in how fast opinion moves: nine in ten between half and twice the usual speed."""
+# A stream of random numbers beside the simulator's own, which are 0 to 6.
+HABITS_STREAM = 10
 COUNTRY = ""
 
 
@@ -80,9 +83,8 @@ def draw_invented_election(
     ValueError
         Where the size leaves no room for its polls.
     """
-    rng = np.random.default_rng([seed, SILENCE_STREAM])
-    silent_days = int(rng.integers(SHORTEST_SILENCE, LONGEST_SILENCE + 1))
-    election = simulate_election(seed, size=replace(size, silent_days=silent_days), violation=violation)
+    drawn = draw_habits(size, rng=np.random.default_rng([seed, HABITS_STREAM]))
+    election = simulate_election(seed, size=drawn, violation=violation)
     inputs = _as_a_desk_reads(election)
     outcome = election.outcome.set_index("seat")[list(election.scenery.codes)]
     return InventedElection(
@@ -90,7 +92,15 @@ def draw_invented_election(
         inputs=inputs,
         truth=_truth(election, counted=_counted_regions(inputs)),
         winners=outcome.idxmax(axis=1).rename("code"),
-        silent_days=silent_days,
+        silent_days=drawn.silent_days,
+    )
+
+
+def draw_habits(size: ElectionSize, *, rng: np.random.Generator) -> ElectionSize:
+    """Draw how long the polls are silent before polling day, and how fast opinion moves."""
+    silent_days = int(rng.integers(SHORTEST_SILENCE, LONGEST_SILENCE + 1))
+    return replace(
+        size, silent_days=silent_days, drift=size.drift * float(np.exp(DRIFT_LOG_SD * rng.normal()))
     )
 
 

@@ -174,6 +174,11 @@ def test_refusals_take_a_fifth_of_one_partys_voters_from_every_poll_and_none_at_
     assert sorted(answering.round(6)) == pytest.approx([0.7 / 0.85, 1, 1, 1, 1])
 
 
+def test_a_restless_country_moves_as_many_times_faster_as_it_is_told() -> None:
+    calm, restless = (simulate(None, size=replace(SIZE, drift=drift)).truth.parties for drift in (1.0, 3.0))
+    np.testing.assert_allclose(restless["sigma"], 3 * calm["sigma"])
+
+
 def test_silent_days_end_the_register_earlier() -> None:
     election = simulate(None, size=replace(SMALL_UNTIDY, silent_days=25))
     assert election.scenery.register_end == date(2030, 5, 8)

@@ -11,7 +11,12 @@ import scoringrules
 from scipy.stats import kstest, percentileofscore
 
 from aggregator.replays.distribution_scores import INTERVALS
-from aggregator.studies.invented_elections import InventedElection, Quantity, draw_invented_election
+from aggregator.studies.invented_elections import (
+    InventedElection,
+    Quantity,
+    draw_habits,
+    draw_invented_election,
+)
 from aggregator.studies.judged_fits import (
     JUDGED_COLUMNS,
     draws_of,
@@ -61,7 +66,7 @@ def test_every_number_is_judged_once_and_scores_are_the_librarys(
 def test_places_of_seats_are_spread_over_their_own_step(tiny: InventedElection) -> None:
     """Truth and draws from one distribution with three seats: places are uniform though seats are whole."""
     places = []
-    for seed in range(150):
+    for seed in range(100):
         election, fit = made_up_pair(seed, inputs=tiny.inputs)
         judged = judge_fit(election, fit, rng=np.random.default_rng([seed, 1]))
         seats = judged[judged["quantity"] == Quantity.SEATS]
@@ -134,6 +139,12 @@ def test_an_invented_election_is_read_as_of_its_registers_end(tiny: InventedElec
     assert not inputs.folder.exists()
 
 
-def test_silence_before_polling_day_differs_from_election_to_election() -> None:
-    silent = {draw_invented_election(seed, size=TINY).silent_days for seed in range(8)}
-    assert len(silent) > 4 and min(silent) >= 2 and max(silent) <= 28
+def test_silence_and_speed_differ_from_country_to_country() -> None:
+    rng = np.random.default_rng(1)
+    drawn = [draw_habits(TINY, rng=rng) for _ in range(400)]
+    silent = [size.silent_days for size in drawn]
+    assert (min(silent), max(silent)) == (2, 28)
+    speeds = np.array([size.drift for size in drawn])
+    assert np.median(speeds) == pytest.approx(1, abs=0.1)
+    assert ((speeds >= 0.5) & (speeds <= 2)).mean() == pytest.approx(0.9, abs=0.05)
+    assert {replace(size, silent_days=8, drift=1.0) for size in drawn} == {TINY}
