@@ -69,7 +69,7 @@ def test_the_standard_error_of_an_autocorrelated_mean_is_about_right():
 def test_two_methods_that_differ_by_noise_have_no_clear_difference():
     rng = np.random.default_rng(3)
     clear = []
-    for _ in range(30):
+    for _ in range(20):
         drift = np.cumsum(rng.normal(size=20))
         rows = scores(
             {"A": {"fieldfold": drift, "latest_poll": drift + np.cumsum(rng.normal(0, 1, 20)) * 0.5}}

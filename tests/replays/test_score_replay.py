@@ -130,10 +130,10 @@ def test_no_records_is_an_error(replay):
 
 @pytest.fixture(scope="module")
 def many(tmp_path_factory: pytest.TempPathFactory) -> dict[float, pd.DataFrame]:
-    """Scores of 8 made-up contests, one date each, with honest draws and with draws three times too sure."""
+    """Scores of 6 made-up contests, one date each, with honest draws and with draws three times too sure."""
     folder = tmp_path_factory.mktemp("many")
     return {
-        too_sure: pd.concat([_one(folder, seed, too_sure) for seed in range(8)]) for too_sure in (1.0, 3.0)
+        too_sure: pd.concat([_one(folder, seed, too_sure) for seed in range(6)]) for too_sure in (1.0, 3.0)
     }
 
 
@@ -148,7 +148,7 @@ def _one(folder: Path, seed: int, too_sure: float) -> pd.DataFrame:
 def test_intervals_of_honest_draws_hold_as_often_as_they_say_and_others_show(many):
     support = {key: rows[rows["quantity"] == "support"] for key, rows in many.items()}
     assert support[1.0]["inside_90"].mean() > 0.75
-    assert 0.3 < support[1.0]["inside_50"].mean() < 0.7
+    assert 0.25 < support[1.0]["inside_50"].mean() < 0.75
     assert support[3.0]["inside_90"].mean() < 0.65
 
 
