@@ -120,32 +120,39 @@ def _counted_regions(inputs: DeskInputs) -> tuple[str, ...]:
 
 
 def _truth(election: MadeUpElection, *, counted: tuple[str, ...]) -> pd.DataFrame:
-    truth = election.truth
-    today = truth.at_register_end[truth.at_register_end["region"] == COUNTRY]
-    seats = truth.seats.rename(columns={"seats": "truth"}).assign(quantity=Quantity.SEATS, region=COUNTRY)
+    truth, scenery = election.truth, election.scenery
+    polling_day = _with_counts(truth.polling_day, election=election, counted=counted)
+    today = _with_counts(truth.at_register_end, election=election, counted=counted)
+    open_pairs = [
+        (region, code)
+        for region, stands in zip(scenery.region_codes, scenery.standing(), strict=True)
+        for code, there in zip(scenery.codes, stands, strict=True)
+        if there and region not in counted
+    ]
+    pairs = pd.MultiIndex.from_tuples(open_pairs, names=["region", "code"])
+    by_region = polling_day.reindex(pairs).reset_index()
     told = pd.concat(
         [
-            _polling_day(election, counted=counted).assign(quantity=Quantity.SUPPORT_POLLING_DAY),
-            today.rename(columns={"support": "truth"}).assign(quantity=Quantity.SUPPORT_TODAY),
-            seats,
+            _country(polling_day, election=election).assign(quantity=Quantity.SUPPORT_POLLING_DAY),
+            by_region.assign(quantity=Quantity.SUPPORT_POLLING_DAY),
+            _country(today, election=election).assign(quantity=Quantity.SUPPORT_TODAY),
+            truth.seats.rename(columns={"seats": "truth"}).assign(quantity=Quantity.SEATS, region=COUNTRY),
         ]
     )
     return told[["quantity", "region", "code", "truth"]].astype({"truth": float}).reset_index(drop=True)
 
 
-def _polling_day(election: MadeUpElection, *, counted: tuple[str, ...]) -> pd.DataFrame:
-    """Support on polling day by region and code, percent, where a party stands and nothing was counted.
+def _with_counts(support: pd.DataFrame, *, election: MadeUpElection, counted: tuple[str, ...]) -> pd.Series:
+    """Support by region and code, percent; of a counted region its votes, as in what is published."""
+    pair = ["region", "code"]
+    true = support[support["region"] != COUNTRY].set_index(pair)["support"]
+    votes = election.truth.polling_day.set_index(pair)["votes"].reindex(true.index)
+    return true.where(~true.index.get_level_values("region").isin(counted), votes).rename("truth")
 
-    A counted region enters the country with its votes, as it does in what is published.
-    """
-    scenery, table = election.scenery, election.truth.polling_day
-    regions = table[table["region"] != COUNTRY].assign(
-        truth=lambda t: t["votes"].where(t["region"].isin(counted), t["support"])
-    )
+
+def _country(by_region: pd.Series, *, election: MadeUpElection) -> pd.DataFrame:
+    """The country by turnout on polling day: region (blank), code, truth."""
     turnout = election.truth.regions.set_index("region")["weight_polling_day"]
-    weighed = regions["truth"] * regions["region"].map(turnout)
-    country = weighed.groupby(regions["code"], sort=False).sum().rename("truth").reset_index()
-    stands = pd.DataFrame(scenery.standing(), index=scenery.region_codes, columns=scenery.codes).stack()
-    pairs = pd.MultiIndex.from_frame(regions[["region", "code"]])
-    kept = stands.reindex(pairs).to_numpy(bool) & ~regions["region"].isin(counted).to_numpy()
-    return pd.concat([country.assign(region=COUNTRY), regions.loc[kept, ["region", "code", "truth"]]])
+    shares = by_region.unstack("region")[list(turnout.index)] @ turnout
+    ordered = shares.reindex(list(election.scenery.codes)).rename("truth").rename_axis("code")
+    return ordered.reset_index().assign(region=COUNTRY)

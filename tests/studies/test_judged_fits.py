@@ -12,6 +12,7 @@ from scipy.stats import kstest, percentileofscore
 
 from aggregator.replays.distribution_scores import INTERVALS
 from aggregator.studies.invented_elections import (
+    HABITS_STREAM,
     InventedElection,
     Quantity,
     draw_habits,
@@ -24,7 +25,7 @@ from aggregator.studies.judged_fits import (
     judge_whole_country,
     list_chances,
 )
-from data_demo.made_up_election import SMALL_ELECTION, UNTIDY_ELECTION
+from data_demo.made_up_election import SMALL_ELECTION, UNTIDY_ELECTION, simulate_election
 from tests.studies.made_up_fits import PARTIES, REGIONS, MadeUpFit, made_up_pair
 
 TINY = replace(SMALL_ELECTION, parties=3, regions=2, seats=6, polls=25, weeks=26, polled_weeks=24, houses=4)
@@ -127,6 +128,14 @@ def test_the_truth_of_an_untidy_election_leaves_out_what_cannot_be_wrong() -> No
     assert set(polling_day["region"]) == {"", "R1", "R2", "R3"}
     assert set(polling_day[polling_day["code"] == "PR"]["region"]) == {"", "R1", "R2"}
     assert polling_day.groupby("region")["truth"].sum().tolist() == pytest.approx([100.0] * 4)
+    # The country: support of regions still open, votes of the counted one, by turnout.
+    drawn = draw_habits(SMALL_UNTIDY, rng=np.random.default_rng([COUNTED_SEED, HABITS_STREAM]))
+    told = simulate_election(COUNTED_SEED, size=drawn).truth
+    turnout = told.regions.set_index("region")["weight_polling_day"]
+    first = told.polling_day[told.polling_day["code"] == "P1"].set_index("region")
+    shares = [first.loc[region, "votes" if region == "R4" else "support"] for region in turnout.index]
+    country = polling_day[(polling_day["region"] == "") & (polling_day["code"] == "P1")]
+    assert country["truth"].item() == pytest.approx(shares @ turnout)
     assert truth[truth["quantity"] == Quantity.SEATS]["truth"].sum() == 12
     assert len(election.winners) == 12
 
