@@ -64,11 +64,11 @@ class ReportContents:
     levels: tuple[Level, ...] = ()
 
     def with_schemas(self) -> Iterator[tuple[TableSchema, pd.DataFrame]]:
-        """Every table there is, with its schema."""
+        """Every table there is, with its schema; those about single seats only where seats are scored."""
         pairs = (
             (SCORES, self.scores),
-            (SEAT_SCORES, self.seat_scores),
-            (RELIABILITY, self.reliability),
+            (SEAT_SCORES, self.seat_scores if len(self.seat_scores) else None),
+            (RELIABILITY, self.reliability if len(self.reliability) else None),
             (PLACES, self.places),
             (SUMMARY, self.summary),
             (COMPARISONS, self.comparisons),

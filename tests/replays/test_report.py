@@ -215,6 +215,25 @@ def test_a_fit_that_did_not_pass_is_an_alarm_on_page_tables_and_charts(replay, s
     assert all(alarm in chart.alt_text for chart in build_replay_charts(gathered))
 
 
+def test_a_contest_without_seats_has_a_whole_report_without_them(replay, tmp_path, monkeypatch):
+    by_region = replay.outcome.groupby("region", as_index=False)[
+        list(replay.inputs.contest.party_codes)
+    ].sum()
+    found = score_replay(replay.records[:2], inputs=replay.inputs, outcome=by_region.assign(seat="", name=""))
+    gathered = contents_of_replay(found, records=replay.records[:2], contest=replay.inputs.contest)
+    assert not any(
+        "seat" in chart.name or chart.name == "reliability" for chart in build_replay_charts(gathered)
+    )
+    monkeypatch.setattr(write_report, "write_charts", lambda *_args, **_kwargs: ())
+    page = write_replay_report(found, replay.records[:2], inputs=replay.inputs, out=tmp_path)
+    written = {path.name for path in (page.parent / "tables").iterdir()}
+    assert written == {Path(schema.path).name for schema in REPLAY_SCHEMAS} - {
+        "seat_scores.csv",
+        "reliability.csv",
+    }
+    assert "seats" not in " ".join(opening_sentences(gathered))
+
+
 def test_several_contests_are_pooled_with_the_contest_as_unit(replay, scores):
     other = replace(scores, title="Isles 2029", scores=scores.scores.assign(contest="Isles 2029"))
     gathered = contents_of_pool(pool_replays([scores, other]))
