@@ -3,9 +3,9 @@
 Every case runs in a process of its own, and is told as a ratio to the base case of the same run. Run all, or
 one by its name:
 
-    pytest tests/benchmarks/bench_cost.py -m benchmark -s
-    pytest tests/benchmarks/bench_cost.py -m benchmark -s -k "base or polls_800"
-    pytest tests/benchmarks/bench_cost.py -m benchmark -s -k contest
+    pytest tests/benchmarks/bench_cost.py -n 0 -m benchmark -s
+    pytest tests/benchmarks/bench_cost.py -n 0 -m benchmark -s -k "base or polls_800"
+    pytest tests/benchmarks/bench_cost.py -n 0 -m benchmark -s -k contest
 
 ``numba, new`` counts functions that were compiled because no cache held them: above zero, ``compile`` is not
 that of a desk's next week. Run such a case again.

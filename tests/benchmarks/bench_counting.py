@@ -2,7 +2,7 @@
 
 4,000 draws, 540 seats in 8 regions, 8 parties, 60 dates: about a thousand million cells. Run with
 
-    pytest tests/benchmarks/bench_counting.py -m benchmark -s
+    pytest tests/benchmarks/bench_counting.py -n 0 -m benchmark -s
 """
 
 from __future__ import annotations

@@ -4,7 +4,7 @@ Effective draws per second are the least over what is published: support on poll
 nationally, house leans, design effects, scales. The regional part of the shared lean, which the output step
 draws independently each time, is left out on both sides: it would flatter slow chains. Run with
 
-    pytest tests/benchmarks/bench_fit.py -m benchmark -s
+    pytest tests/benchmarks/bench_fit.py -n 0 -m benchmark -s
 """
 
 from __future__ import annotations

@@ -2,7 +2,7 @@
 
 400 polls of 12 houses and 600 seats. Run with
 
-    pytest tests/benchmarks/bench_reading.py -m benchmark -s
+    pytest tests/benchmarks/bench_reading.py -n 0 -m benchmark -s
 """
 
 from __future__ import annotations

@@ -2,7 +2,7 @@
 
 The aim: 40 seconds and 2 GiB on two cores, caches warm. Run with
 
-    pytest tests/benchmarks/bench_refresh.py -m benchmark -s
+    pytest tests/benchmarks/bench_refresh.py -n 0 -m benchmark -s
 """
 
 from __future__ import annotations

@@ -2,7 +2,7 @@
 
 4,000 draws, 80 dates, 3 regions, 5 parties and an alliance. Run with
 
-    pytest tests/benchmarks/bench_release.py -m benchmark -s
+    pytest tests/benchmarks/bench_release.py -n 0 -m benchmark -s
 """
 
 from __future__ import annotations

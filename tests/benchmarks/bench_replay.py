@@ -3,7 +3,7 @@
 The aim: 52 weekly refits of the demo within 20 minutes on two cores. A few of the 52 dates are fitted, spread
 evenly, and the rest is reckoned from them. Run with
 
-    pytest tests/benchmarks/bench_replay.py -m benchmark -s
+    pytest tests/benchmarks/bench_replay.py -n 0 -m benchmark -s
 """
 
 from __future__ import annotations

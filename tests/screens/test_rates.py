@@ -2,7 +2,7 @@
 
 The rates of ``docs/screens.md``. Run with
 
-    pytest tests/screens/test_rates.py -m study -s
+    pytest tests/screens/test_rates.py -n 0 -m study -s
 """
 
 from __future__ import annotations
