@@ -26,6 +26,9 @@ def australian_draws() -> xr.Dataset:
     sd_log = weekly_sd / (np.sqrt(2) * LABOR_SHARE * (1 - LABOR_SHARE))
     per_draw, party = ("chain", "draw"), ["LAB", "REST"]
     share = np.array([LABOR_SHARE, 1 - LABOR_SHARE])
+    # Opinion time runs evenly, a week a week.
+    days = pd.date_range("2007-07-26", "2007-11-24")
+    clock = np.broadcast_to(np.arange(len(days)) / 7, (1, 4, len(days)))
     return xr.Dataset(
         {
             "national_support": ((*per_draw, "date", "party"), np.broadcast_to(share, (1, 4, 1, 2))),
@@ -34,8 +37,9 @@ def australian_draws() -> xr.Dataset:
             "drift_sd_log": ((*per_draw, "party"), np.full((1, 4, 2), sd_log)),
             "house_sd_log": ((*per_draw, "party"), np.zeros((1, 4, 2))),
             "shared_lean_sd_log": (("party",), np.zeros(2)),
+            "opinion_clock": ((*per_draw, "day"), clock),
         },
-        coords={"party": party, "house": ["one"], "date": pd.to_datetime(["2007-10-24"])},
+        coords={"party": party, "house": ["one"], "date": pd.to_datetime(["2007-10-24"]), "day": days},
         attrs={"run_date": "2007-10-24", "polling_day": "2007-11-24"},
     )
 
