@@ -14,27 +14,23 @@ import time
 import warnings
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import ProcessPoolExecutor
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from datetime import date, timedelta
 from functools import cache, partial
 
 import arviz as az
 import numpy as np
 import pandas as pd
-import pymc as pm
 from threadpoolctl import threadpool_limits
 
 from aggregator.estimate.beside_the_polls import draw_region_lean, draw_turnout
 from aggregator.estimate.compiled_election import CompiledElection, compile_election
 from aggregator.estimate.cores import can_fork, usable_cores
 from aggregator.estimate.parameters import Parameters
-from aggregator.estimate.pilot import centre_on_pilot
 from aggregator.estimate.poll_fit import row_log_likelihood
 from aggregator.estimate.sampling import ChainPlan
 from aggregator.estimate.support import Calendar, support_of_regions
 from models.arrays import ElectionArrays, Floats
-from models.block_geometry import build_geometry
-from models.election_data import add_data
 from models.priors import Priors
 from tests.calibration.prior_elections import TODAY, PriorElection, draw_election
 from tests.calibration.prior_register import (
@@ -135,7 +131,7 @@ def rank_election(seed: int, *, told: Told, length: Length) -> RankedElection:
     election = draw_election(np.random.default_rng(draw_seed))
     rng = np.random.default_rng(rest_seed)
     with threadpool_limits(1):
-        fit = refilled(compiled_model(), told(election.arrays))
+        fit = compile_election(told(election.arrays), priors=Priors(), like=compiled_model())
         for attempt in range(length.attempts):
             plan = ChainPlan(
                 chains=1,
@@ -163,19 +159,6 @@ def rank_election(seed: int, *, told: Told, length: Length) -> RankedElection:
 def compiled_model() -> CompiledElection:
     """Compile the model once: every election drawn from the prior has the same graph."""
     return compile_election(draw_election(np.random.default_rng(0)).arrays, priors=Priors())
-
-
-def refilled(compiled: CompiledElection, arrays: ElectionArrays) -> CompiledElection:
-    """Give a compiled model another election's numbers."""
-    geometry = build_geometry(arrays, priors=compiled.priors)
-    with pm.Model():
-        numbers = add_data(arrays, geometry=geometry, priors=compiled.priors)
-    for name, number in numbers.items():
-        compiled.model[name].set_value(number.get_value())
-    start = centre_on_pilot(
-        compiled.model, compiled.density, arrays=arrays, geometry=geometry, priors=compiled.priors
-    )
-    return replace(compiled, arrays=arrays, geometry=geometry, start=start)
 
 
 def quantities_of_draws(

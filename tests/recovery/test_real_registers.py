@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from datetime import date, timedelta
+from functools import partial
 from pathlib import Path
 
 import numpy as np
@@ -19,7 +20,6 @@ from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.settings import RunSettings
 from models.arrays import ElectionArrays
 from models.priors import Priors
-from tests.calibration.ranks import refilled
 
 POLLING_DAY, LAST_ELECTION = date(2031, 5, 18), date(2028, 5, 14)
 TODAY = date(2031, 5, 4)
@@ -156,7 +156,8 @@ def test_a_poll_of_5000_weighs_the_same_in_1_8_and_36_rows(tmp_path: Path) -> No
     arrays[0] = replace(own, rows=replace(own.rows, poll_respondents=own.rows.respondents))
     with threadpool_limits(1):
         compiled = compile_election(arrays[36], priors=priors, shared_lean=False)
-        support = {rows: _support_today(refilled(compiled, a)) for rows, a in arrays.items()}
+        fill = partial(compile_election, priors=priors, shared_lean=False, like=compiled)
+        support = {rows: _support_today(fill(a)) for rows, a in arrays.items()}
     mean = {rows: s.mean(axis=0) for rows, s in support.items()}
     sd = {rows: s.std(axis=0) for rows, s in support.items()}
     for rows in (8, 36):
