@@ -58,11 +58,6 @@ class Parameters:
     kappa: Floats
     rho: Floats
 
-    @property
-    def house(self) -> Floats:
-        """House effects, dims (sample, house, party)."""
-        return self.terms[:, : self.kappa.shape[1]]
-
 
 def read_parameters(
     positions: Floats,

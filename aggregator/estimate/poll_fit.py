@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import warnings
+from dataclasses import dataclass
 
 import arviz as az
 import numpy as np
@@ -10,8 +11,8 @@ import xarray as xr
 from scipy.special import gammaln
 
 from aggregator.estimate.parameters import Parameters
-from aggregator.estimate.support import region_support
-from models.arrays import ElectionArrays, Floats
+from aggregator.estimate.support import between_knots, support_at_knots
+from models.arrays import ElectionArrays, Floats, RowArrays
 from models.design_effect import row_design_effect
 from models.dimensions import CHAIN, DRAW, POLL
 from models.poll_answers import (
@@ -28,13 +29,30 @@ DRAWS_FOR_PARETO_K = 1000
 DRAWS_AT_ONCE = 100
 
 
+@dataclass(frozen=True)
+class ExpectedAnswers:
+    """What the model expects of every row, draw by draw.
+
+    Attributes
+    ----------
+    cells
+        Expected share of each cell, dims (sample, row, cell).
+    precision
+        α of the Dirichlet-multinomial, dims (sample, row).
+    """
+
+    cells: Floats
+    precision: Floats
+
+
 def expected_shares(parameters: Parameters, *, arrays: ElectionArrays, samples: np.ndarray) -> Floats:
     """Shares each row is expected to find, leans included; dims (sample, row, party)."""
     rows = arrays.rows
     seen = rows.national_weight @ (parameters.walk[samples] + parameters.lean[samples])
     leans = parameters.terms[samples][:, arrays.leans.terms_of_row].sum(axis=2)
     seen += leans[:, rows.row_of_part]
-    own = region_support(parameters.region[samples], country=arrays.country, weight=rows.region_weight)
+    own = support_at_knots(parameters.region[samples], country=arrays.country)
+    own = between_knots(own, weight=rows.region_weight)
     share = np.exp(seen)[:, :, None, :] * own
     share /= share.sum(axis=-1, keepdims=True)
     parts = np.einsum("nr,snrp->snp", rows.region_mix, share)
@@ -43,23 +61,36 @@ def expected_shares(parameters: Parameters, *, arrays: ElectionArrays, samples: 
     return out
 
 
+def expected_answers(
+    parameters: Parameters, *, arrays: ElectionArrays, samples: np.ndarray
+) -> ExpectedAnswers:
+    """What the model expects each row to print, and how surely."""
+    rows = arrays.rows
+    shares = expected_shares(parameters, arrays=arrays, samples=samples)
+    design_effect = row_design_effect(
+        kappa=parameters.kappa[samples],
+        rho=parameters.rho[samples],
+        house_of_row=rows.house_of_row,
+        poll_respondents=rows.poll_respondents,
+        weighting_known=rows.weighting_known,
+    )
+    return ExpectedAnswers(
+        cells=cell_shares(shares, partition=rows.partition, used=rows.used),
+        precision=answer_precision(
+            respondents=rows.respondents, design_effect=design_effect, larger=np.maximum
+        ),
+    )
+
+
 def row_log_likelihood(parameters: Parameters, *, arrays: ElectionArrays, samples: np.ndarray) -> Floats:
     """Log density of each row's figures, without their coefficient; dims (sample, row)."""
-    rows = arrays.rows
-    cells = cell_shares(
-        expected_shares(parameters, arrays=arrays, samples=samples), partition=rows.partition, used=rows.used
-    )
-    precision = answer_precision(
-        respondents=rows.respondents,
-        design_effect=row_design_effect(
-            kappa=parameters.kappa[samples],
-            rho=parameters.rho[samples],
-            house_of_row=rows.house_of_row,
-            poll_respondents=rows.poll_respondents,
-            weighting_known=rows.weighting_known,
-        ),
-        larger=np.maximum,
-    )
+    expected = expected_answers(parameters, arrays=arrays, samples=samples)
+    return answers_log_likelihood(arrays.rows, expected=expected)
+
+
+def answers_log_likelihood(rows: RowArrays, *, expected: ExpectedAnswers) -> Floats:
+    """Log density of each row's figures given what was expected; dims (sample, row)."""
+    cells, precision = expected.cells, expected.precision
     density = answers_log_density(
         rows.answers, cells=cells, precision=precision, kept=kept_cells(rows), log_gamma=gammaln
     )

@@ -30,11 +30,10 @@ from arviz_stats.base import array_stats
 from arviz_stats.ecdf_utils import ecdf_pit
 
 from aggregator.estimate.parameters import Parameters
-from aggregator.estimate.poll_fit import expected_shares, row_log_likelihood
+from aggregator.estimate.poll_fit import answers_log_likelihood, expected_answers
 from aggregator.inputs.contest import OTHERS, Alliance
 from models.arrays import ElectionArrays, Floats, RowArrays
-from models.design_effect import row_design_effect
-from models.poll_answers import answer_precision, cell_shares, kept_cells
+from models.poll_answers import kept_cells
 
 DRAWS_IN_ALL = 1000
 DRAWS_AT_ONCE = 100
@@ -127,21 +126,11 @@ def summarise_predictive(
 
 
 def _expect(parameters: Parameters, *, arrays: ElectionArrays, samples: np.ndarray) -> Expectation:
-    rows = arrays.rows
-    shares = expected_shares(parameters, arrays=arrays, samples=samples)
-    design_effect = row_design_effect(
-        kappa=parameters.kappa[samples],
-        rho=parameters.rho[samples],
-        house_of_row=rows.house_of_row,
-        poll_respondents=rows.poll_respondents,
-        weighting_known=rows.weighting_known,
-    )
+    expected = expected_answers(parameters, arrays=arrays, samples=samples)
     return Expectation(
-        cells=cell_shares(shares, partition=rows.partition, used=rows.used),
-        precision=answer_precision(
-            respondents=rows.respondents, design_effect=design_effect, larger=np.maximum
-        ),
-        log_likelihood=row_log_likelihood(parameters, arrays=arrays, samples=samples),
+        cells=expected.cells,
+        precision=expected.precision,
+        log_likelihood=answers_log_likelihood(arrays.rows, expected=expected),
     )
 
 

@@ -162,14 +162,19 @@ def support_of_regions(
     moments = np.append(days, knots.national_day[-1])
     lean = np.exp(region_lean)
     out = np.empty((len(parameters.walk), len(moments), *country.standing.shape), dtype=np.float32)
+    phases = []
     for day in np.unique(voting):
-        regions = np.flatnonzero(voting == day)
         at = np.minimum(moments, day)
-        national = knot_weights(knots.national_day, first_day=at, last_day=at)
-        regional = knot_weights(knots.region_day, first_day=at, last_day=at)
-        # In slices, so that no array of double precision holds all draws, dates and regions at once.
-        for part in np.array_split(np.arange(len(out)), max(1, len(out) // 250)):
-            share = region_support(parameters.region[part], country=country, weight=regional, regions=regions)
+        national, regional = (
+            knot_weights(knot_day, first_day=at, last_day=at)
+            for knot_day in (knots.national_day, knots.region_day)
+        )
+        phases.append((np.flatnonzero(voting == day), national, regional))
+    # In slices, so that no array of double precision holds all draws, dates and regions at once.
+    for part in np.array_split(np.arange(len(out)), max(1, len(out) // 250)):
+        own = support_at_knots(parameters.region[part], country=country)
+        for regions, national, regional in phases:
+            share = between_knots(own[:, :, regions], weight=regional)
             share *= np.exp(national @ parameters.walk[part])[:, :, None, :] * lean[part][:, None, regions]
             out[np.ix_(part, np.arange(len(moments)), regions)] = share / share.sum(axis=-1, keepdims=True)
     if arrays.counted is not None:
@@ -178,32 +183,36 @@ def support_of_regions(
     return out
 
 
-def region_support(
-    region: Floats, *, country: CountryArrays, weight: Floats, regions: np.ndarray | None = None
-) -> Floats:
-    """Each region's own support E at some moments, zero for absent parties.
+def support_at_knots(region: Floats, *, country: CountryArrays) -> Floats:
+    """Each region's own support E at the regional knots, zero for absent parties.
 
     Parameters
     ----------
     region
-        Log deviations at the regional knots, dims (sample, knot, region, party).
-    weight
-        Weights of the knots, dims (moment, knot).
-    regions
-        Positions of the regions wanted; all of them by default.
+        Log deviations at the knots, dims (sample, knot, region, party).
 
     Returns
     -------
-    dims (sample, moment, region, party).
+    dims (sample, knot, region, party).
     """
-    own = own_support(
+    return own_support(
         region,
         start_share=country.standing * np.exp(country.start_log_share),
         turnout=country.turnout,
         exp=np.exp,
     )
-    if regions is not None and len(regions) < own.shape[2]:
-        own = own[:, :, regions]
+
+
+def between_knots(own: Floats, *, weight: Floats) -> Floats:
+    """Own support at some moments, dims (sample, moment, region, party).
+
+    Parameters
+    ----------
+    own
+        At the regional knots, dims (sample, knot, region, party).
+    weight
+        Weights of the knots, dims (moment, knot).
+    """
     flat = own.reshape(*own.shape[:2], -1)
     return (weight @ flat).reshape(len(own), len(weight), *own.shape[2:])
 
