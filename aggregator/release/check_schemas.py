@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from aggregator.release.table_columns import (
     ANY_COUNT,
+    ANY_NUMBER,
     CODE,
     LEVEL,
     PERCENT,
-    Bounds,
     Column,
     ColumnType,
     TableSchema,
@@ -15,12 +15,12 @@ from aggregator.release.table_columns import (
     number_column,
     typed_column,
     whole_column,
+    yes_no_column,
 )
 
 _REFIT = "the draws of this run cannot say: the model would have to be fitted again"
 _NO_SEATS = "nothing is counted in seats, or the draws of this run cannot say"
 _NO_LEADER = f"an alliance or others; {_NO_SEATS}"
-_ANY = Bounds(float("-inf"), float("inf"))
 
 ASSUMPTIONS = TableSchema(
     "public/assumptions.csv",
@@ -28,13 +28,7 @@ ASSUMPTIONS = TableSchema(
     (
         Column("assumption", ColumnType.TEXT, "–", "What is assumed"),
         Column("setting", ColumnType.TEXT, "–", "How it is set"),
-        Column(
-            "in_use",
-            ColumnType.YES_NO,
-            "–",
-            "Whether all other tables stand on this setting",
-            allowed=("yes", "no"),
-        ),
+        yes_no_column("in_use", "Whether all other tables stand on this setting"),
         CODE,
         LEVEL,
         number_column("mean", "percent of the vote", "Mean of support on polling day", blank=_REFIT),
@@ -75,7 +69,7 @@ PREDICTIVE = TableSchema(
             "standard deviations",
             "Mean distance of the figures from what was expected, in standard deviations of what the model "
             "would have expected; below zero: figures lie lower",
-            bounds=_ANY,
+            bounds=ANY_NUMBER,
         ),
         number_column(
             "spread_z",
@@ -83,13 +77,10 @@ PREDICTIVE = TableSchema(
             "Root mean square of the same distance: about 1 where the noise of the polls is as it should be",
             bounds=ANY_COUNT,
         ),
-        Column(
+        yes_no_column(
             "stands_out",
-            ColumnType.YES_NO,
-            "–",
             "Whether the figures of the house are too far from, or too near to, what was expected: their "
             "ranks leave the band that would hold them with chance 98 %, all houses taken together",
-            allowed=("yes", "no"),
             blank="said of a house as a whole only",
         ),
     ),

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from markdown_it import MarkdownIt
 from markupsafe import Markup
 
@@ -15,7 +14,6 @@ from aggregator.release.chart_files import DrawnChart
 from aggregator.release.chart_style import code_looks
 from aggregator.release.contents import ReleaseContents
 from aggregator.release.lean_page_tables import asked_together_sentences, houses_table, ways_of_asking_table
-from aggregator.release.method_note import TEMPLATES
 from aggregator.release.page_tables import (
     chances_table,
     closest_seats_table,
@@ -25,7 +23,7 @@ from aggregator.release.page_tables import (
     support_table,
     worth_table,
 )
-from aggregator.release.rounding import date_text, whole_text
+from aggregator.release.page_templates import chart_markup, page_environment
 
 DESK_ONLY_COLUMNS = frozenset({"note", "why_not", "source"})
 """Findings about these columns may quote the desk's own remarks, and stay in the desk's half."""
@@ -47,63 +45,42 @@ def build_page(
     replay
         Link to the contest's replay, relative to the page; None where it has none.
     """
-    environment = Environment(
-        loader=FileSystemLoader(TEMPLATES),
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-        autoescape=True,
-        finalize=keep_percent_together,
-    )
-    environment.filters |= {"day": date_text, "whole": whole_text}
     latest, older = polls_tables(contents)
-    return environment.get_template("page.html.j2").render(
-        contents=contents,
-        contest=contents.contest,
-        replay=replay,
-        cautions=CAUTIONS,
-        colours={look.name: look.colour for look in code_looks(contents.codes).values()},
-        charts={drawn.chart.name: _markup(drawn) for drawn in charts},
-        support=support_table(contents),
-        regions=regions_table(contents),
-        seats=seats_table(contents),
-        chances=chances_table(contents),
-        closest=closest_seats_table(contents),
-        houses=houses_table(contents),
-        asking=ways_of_asking_table(contents),
-        asked_together=asked_together_sentences(contents),
-        assumptions=assumptions_table(contents),
-        shared_lean=shared_lean_sentences(contents),
-        worth=worth_table(contents),
-        latest=latest,
-        older=older,
-        warnings=[
-            public_warning(problem)
-            for problem in contents.inputs.warnings
-            if problem.column not in DESK_ONLY_COLUMNS
-        ],
-        method=Markup(
-            MarkdownIt("commonmark", {"html": False})
-            .enable("table")
-            .render(_below_page_headings(method_note))
-        ),
-    )
-
-
-def keep_percent_together(value: object) -> object:
-    """Keep a number and its percent sign on one line."""
     return (
-        value.replace(" %", "\u00a0%") if isinstance(value, str) and not isinstance(value, Markup) else value
+        page_environment()
+        .get_template("page.html.j2")
+        .render(
+            contents=contents,
+            contest=contents.contest,
+            replay=replay,
+            cautions=CAUTIONS,
+            colours={look.name: look.colour for look in code_looks(contents.codes).values()},
+            charts=chart_markup(charts),
+            support=support_table(contents),
+            regions=regions_table(contents),
+            seats=seats_table(contents),
+            chances=chances_table(contents),
+            closest=closest_seats_table(contents),
+            houses=houses_table(contents),
+            asking=ways_of_asking_table(contents),
+            asked_together=asked_together_sentences(contents),
+            assumptions=assumptions_table(contents),
+            shared_lean=shared_lean_sentences(contents),
+            worth=worth_table(contents),
+            latest=latest,
+            older=older,
+            warnings=[
+                public_warning(problem)
+                for problem in contents.inputs.warnings
+                if problem.column not in DESK_ONLY_COLUMNS
+            ],
+            method=Markup(
+                MarkdownIt("commonmark", {"html": False})
+                .enable("table")
+                .render(_below_page_headings(method_note))
+            ),
+        )
     )
-
-
-def _markup(drawn: DrawnChart) -> dict[str, object]:
-    return {
-        "wide": Markup(drawn.wide),
-        "narrow": Markup(drawn.narrow),
-        "name": drawn.chart.name,
-        "alt": drawn.chart.alt_text,
-    }
 
 
 def public_warning(problem: Problem) -> str:

@@ -77,6 +77,7 @@ PERCENT = Bounds(0.0, 100.0)
 POINTS = Bounds(-100.0, 100.0)
 PROBABILITY = Bounds(0.0, 1.0)
 ANY_COUNT = Bounds(0.0, float("inf"))
+ANY_NUMBER = Bounds(float("-inf"), float("inf"))
 
 
 def number_column(
@@ -105,6 +106,11 @@ def typed_column(name: str, meaning: str, *, blank: str | None = None) -> Column
 def date_column(name: str, meaning: str, *, blank: str | None = None) -> Column:
     """Describe a column of days."""
     return Column(name, ColumnType.DATE, "ISO 8601", meaning, blank=blank)
+
+
+def yes_no_column(name: str, meaning: str, *, blank: str | None = None) -> Column:
+    """Describe a column of yes or no."""
+    return Column(name, ColumnType.YES_NO, "–", meaning, allowed=("yes", "no"), blank=blank)
 
 
 def chance_column(name: str, meaning: str, *, blank: str | None = None) -> Column:

@@ -13,6 +13,7 @@ from aggregator.release.rounding import CHANCE_DECIMALS, SHARE_DECIMALS_TABLE
 from aggregator.release.screens_schema import SCREENS
 from aggregator.release.table_columns import (
     ANY_COUNT,
+    ANY_NUMBER,
     CODE,
     LEVEL,
     PERCENT,
@@ -25,6 +26,7 @@ from aggregator.release.table_columns import (
     number_column,
     typed_column,
     whole_column,
+    yes_no_column,
 )
 from aggregator.release.table_words import Kind
 from aggregator.seats.majorities import Outcome
@@ -258,7 +260,7 @@ POLLS_WEIGHED = TableSchema(
         typed_column("house", "Who did the fieldwork", blank="not given"),
         date_column("start", "First day of fieldwork", blank="not given"),
         date_column("end", "Last day of fieldwork", blank="not given"),
-        Column("used", ColumnType.YES_NO, "–", "Whether the row is in the fit", allowed=("yes", "no")),
+        yes_no_column("used", "Whether the row is in the fit"),
         typed_column("why_not", "Why the row is not in the fit", blank="it is"),
         whole_column(
             "respondents",
@@ -279,7 +281,7 @@ POLLS_WEIGHED = TableSchema(
             "–",
             "Pareto shape of the poll's importance weights: above 0.7 the model finds the poll hard to "
             "foresee; read it again",
-            bounds=Bounds(float("-inf"), float("inf")),
+            bounds=ANY_NUMBER,
             blank="not worked out",
         ),
         typed_column("warnings", "What was doubtful about the row when it was read", blank="nothing"),

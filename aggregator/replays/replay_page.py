@@ -5,13 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from pathlib import Path
 
-from jinja2 import Environment, FileSystemLoader, StrictUndefined
-from markupsafe import Markup
-
 from aggregator.release.chart_files import DrawnChart
-from aggregator.release.method_note import TEMPLATES as RELEASE_TEMPLATES
-from aggregator.release.page import keep_percent_together
-from aggregator.release.rounding import date_text, whole_text
+from aggregator.release.page_templates import chart_markup, page_environment
 from aggregator.replays.methods import EVERY_LEAD, Quantity, Where
 from aggregator.replays.replay_cautions import REPLAY_CAUTIONS
 from aggregator.replays.replay_page_tables import (
@@ -46,40 +41,31 @@ def build_replay_page(contents: ReportContents, *, charts: Sequence[DrawnChart])
     charts
         Drawn charts, which go in as markup.
     """
-    environment = Environment(
-        loader=FileSystemLoader([TEMPLATES, RELEASE_TEMPLATES]),
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-        autoescape=True,
-        finalize=keep_percent_together,
-    )
-    environment.filters |= {"day": date_text, "whole": whole_text}
     tables = [comparison_table(contents, quantity=quantity, where=where) for quantity, where in COMPARED]
-    return environment.get_template("replay.html.j2").render(
-        contents=contents,
-        cautions=REPLAY_CAUTIONS,
-        charts={drawn.chart.name: _markup(drawn) for drawn in charts},
-        colours={look.name: look.colour for look in contents.looks},
-        opening=opening_sentences(contents),
-        last_day=last_day_tables(contents),
-        support_errors=error_table(contents, quantity=Quantity.SUPPORT, where=Where.COUNTRY),
-        rivals=rival_sentences(contents),
-        unit=unit_sentence(contents),
-        comparisons=[table for table in tables if table is not None],
-        coverage=coverage_table(contents),
-        by_size=by_size_table(contents),
-        seat_scores=seat_score_table(contents),
-        staleness=staleness_table(contents),
-        staleness_words=staleness_sentence(contents),
-        every_lead=EVERY_LEAD.label,
-        files=[schema.path for schema in REPLAY_SCHEMAS if schema.path in _written(contents)],
+    return (
+        page_environment(TEMPLATES)
+        .get_template("replay.html.j2")
+        .render(
+            contents=contents,
+            cautions=REPLAY_CAUTIONS,
+            charts=chart_markup(charts),
+            colours={look.name: look.colour for look in contents.looks},
+            opening=opening_sentences(contents),
+            last_day=last_day_tables(contents),
+            support_errors=error_table(contents, quantity=Quantity.SUPPORT, where=Where.COUNTRY),
+            rivals=rival_sentences(contents),
+            unit=unit_sentence(contents),
+            comparisons=[table for table in tables if table is not None],
+            coverage=coverage_table(contents),
+            by_size=by_size_table(contents),
+            seat_scores=seat_score_table(contents),
+            staleness=staleness_table(contents),
+            staleness_words=staleness_sentence(contents),
+            every_lead=EVERY_LEAD.label,
+            files=[schema.path for schema in REPLAY_SCHEMAS if schema.path in _written(contents)],
+        )
     )
 
 
 def _written(contents: ReportContents) -> set[str]:
     return {schema.path for schema, _ in contents.with_schemas()}
-
-
-def _markup(drawn: DrawnChart) -> dict[str, object]:
-    return {"wide": Markup(drawn.wide), "narrow": Markup(drawn.narrow), "alt": drawn.chart.alt_text}

@@ -62,9 +62,8 @@ def _last_day_table(contents: ReportContents, quantity: Quantity) -> PageTable:
                 )
             )
     return PageTable(
-        f"{'Support' if support else 'Seats'}, {days[0].lower()}{days[1:]} before polling day: mean, 90 "
-        "% interval "
-        "below it, and the result. An alliance is the sum of its members.",
+        f"{'Support' if support else 'Seats'}, {days[0].lower()}{days[1:]} before polling day: mean, 90 % "
+        "interval below it, and the result. An alliance is the sum of its members.",
         ("", "Estimate", "Result", "Error", "Inside 90 %"),
         tuple(body),
     )
@@ -103,9 +102,8 @@ def error_table(contents: ReportContents, *, quantity: Quantity, where: Where) -
     if not body:
         return None
     return PageTable(
-        f"Mean absolute error of {named(quantity, where)}, in {UNIT[quantity]}, by days before polling "
-        "day. Parties and "
-        "others; every figure counts the same.",
+        f"Mean absolute error of {named(quantity, where)}, in {UNIT[quantity]}, by days before polling day. "
+        "Parties and others; every figure counts the same.",
         ("", *(f"{lead} days" for lead in leads)),
         tuple(body),
     )
@@ -133,8 +131,7 @@ def comparison_table(contents: ReportContents, *, quantity: Quantity, where: Whe
             body.append((f"{name[0].upper()}{name[1:]}", *cells))
     return PageTable(
         f"{named(quantity, where).capitalize()}: mean absolute error of the rival, then of this model on "
-        "the same days, "
-        f"in {UNIT[quantity]}.",
+        f"the same days, in {UNIT[quantity]}.",
         ("Rival", *(f"{lead} days" for lead in leads)),
         tuple(body),
     )
@@ -165,9 +162,8 @@ def coverage_table(contents: ReportContents) -> PageTable:
                 )
             )
     return PageTable(
-        "How often this model's intervals held the result, by days before polling day, and the mean "
-        "width of the 90 % "
-        "interval. Intervals of whole seats hold at least their share.",
+        "How often this model's intervals held the result, by days before polling day, and the mean width "
+        "of the 90 % interval. Intervals of whole seats hold at least their share.",
         ("", "Dates", *(f"{percent} % interval" for percent in INTERVALS), "Width of 90 %"),
         tuple(body),
     )
@@ -194,9 +190,9 @@ def seat_score_table(contents: ReportContents) -> PageTable | None:
                 )
             )
     return PageTable(
-        "Single seats, mean over replayed days: Brier score (0 to 2) and log score of the chances, "
-        "smaller is better, "
-        "and seats whose likeliest winner lost. A rival is always sure, so that it has no log score.",
+        "Single seats, mean over replayed days: Brier score (0 to 2) and log score of the chances, smaller "
+        "is better, and seats whose likeliest winner lost. A rival is always sure, so that it has no log "
+        "score.",
         ("", "Brier score", "Log score", "Called wrong", "Seats"),
         tuple(body),
     )
@@ -220,8 +216,7 @@ def by_size_table(contents: ReportContents) -> PageTable | None:
                 body.append((f"{first:.0f} to {last:.0f} %\n{METHOD_NAMES[method]}", *cells))
     return PageTable(
         "Mean absolute error of support in the country, in points, by size of party as this model "
-        "estimated it and "
-        "days before polling day; each contest counts once.",
+        "estimated it and days before polling day; each contest counts once.",
         ("Party of", *(f"{lead} days" for lead in leads)),
         tuple(body),
     )
@@ -253,8 +248,8 @@ def staleness_table(contents: ReportContents) -> PageTable | None:
     )
     return PageTable(
         "Root mean square error over parties, in points, by days to polling day: single polls with their "
-        "median sample; "
-        "what the formula expects of a poll of 1,000; this model's estimates, and the error they claimed.",
+        "median sample; what the formula expects of a poll of 1,000; this model's estimates, and the error "
+        "they claimed.",
         ("To polling day", "Polls", "Sample", "Error", "Formula", "Estimates", "Error", "As claimed"),
         body,
     )

@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from aggregator.release.table_columns import (
     ANY_COUNT,
+    ANY_NUMBER,
     CODE,
     LEVEL,
     PROBABILITY,
-    Bounds,
     Column,
     ColumnType,
     TableSchema,
@@ -15,12 +15,12 @@ from aggregator.release.table_columns import (
     number_column,
     typed_column,
     whole_column,
+    yes_no_column,
 )
 from aggregator.release.table_words import Level
 from aggregator.replays.distribution_scores import INTERVALS
 from aggregator.replays.methods import LEADS, Method, Nearer, Quantity, Where
 
-_ANY = Bounds(float("-inf"), float("inf"))
 _UNIT = "percent, or seats"
 _POINTS = "points, or seats"
 _NO_DRAWS = "a rival, which gives one number and no interval"
@@ -34,10 +34,9 @@ METHOD = Column(
     ColumnType.TEXT,
     "–",
     "`fieldfold`: this program. `latest_poll`: the last poll published. `mean_30_days`: mean of the polls "
-    "whose fieldwork ended in the 30 days before. `decaying_mean`: all polls, weighed by respondents, "
-    "half as "
-    "much for every 30 days. `last_result`: no change. `uniform_swing`: in every seat (and region) the last "
-    "result plus the change of the decaying mean since; the leader takes the seat",
+    "whose fieldwork ended in the 30 days before. `decaying_mean`: all polls, weighed by respondents, half "
+    "as much for every 30 days. `last_result`: no change. `uniform_swing`: in every seat (and region) the "
+    "last result plus the change of the decaying mean since; the leader takes the seat",
     allowed=tuple(Method),
 )
 QUANTITY = Column(
@@ -64,7 +63,7 @@ def _inside(percent: int) -> Column:
 
 
 def _score(name: str, unit: str, meaning: str, *, blank: str | None = None, decimals: int = 3) -> Column:
-    return number_column(name, unit, meaning, bounds=_ANY, blank=blank, decimals=decimals)
+    return number_column(name, unit, meaning, bounds=ANY_NUMBER, blank=blank, decimals=decimals)
 
 
 def _band(once: str) -> tuple[Column, ...]:
@@ -80,6 +79,17 @@ def _band(once: str) -> tuple[Column, ...]:
         number_column("high", "0 to 1", "Upper end of that band", bounds=PROBABILITY),
     )
 
+
+_HELD = tuple(
+    number_column(
+        f"inside_{percent}",
+        "percent",
+        f"How often the {percent} % interval held the truth",
+        decimals=1,
+        blank=_NO_DRAWS,
+    )
+    for percent in INTERVALS
+)
 
 SCORES = TableSchema(
     "tables/scores.csv",
@@ -105,8 +115,7 @@ SCORES = TableSchema(
             "log_score",
             "–",
             "Minus the logarithm of the density (percent scale) or chance (seats) given to the truth; "
-            "smaller is "
-            "better",
+            "smaller is better",
             blank=_NO_DRAWS,
         ),
         *(
@@ -199,16 +208,7 @@ SUMMARY = TableSchema(
             _score(f"width_{p}", _POINTS, f"Mean width of the {p} % interval", blank=_NO_DRAWS, decimals=2)
             for p in INTERVALS
         ),
-        *(
-            number_column(
-                f"inside_{p}",
-                "percent",
-                f"How often the {p} % interval held the truth",
-                decimals=1,
-                blank=_NO_DRAWS,
-            )
-            for p in INTERVALS
-        ),
+        *_HELD,
     ),
 )
 
@@ -251,9 +251,8 @@ COMPARISONS = TableSchema(
             "nearer",
             ColumnType.TEXT,
             "–",
-            "Who came nearer by absolute error, if the difference is above its standard error. In a "
-            "single contest "
-            "this is said of that election alone",
+            "Who came nearer by absolute error, if the difference is above its standard error. In a single "
+            "contest this is said of that election alone",
             allowed=tuple(Nearer),
         ),
     ),
@@ -277,8 +276,7 @@ STALENESS = TableSchema(
             "expected_error",
             "percentage points",
             "What the formula of `shelf_life.csv` expects of a poll of 1,000 by a typical house taken "
-            "then; root mean "
-            "square over the replayed days that speak of it",
+            "then; root mean square over the replayed days that speak of it",
             blank="no replayed day speaks of it, or an alliance",
         ),
         whole_column("estimates", "dates", "Replayed days then"),
@@ -321,16 +319,7 @@ BY_SIZE = TableSchema(
             "mean_error", "percentage points", "Mean error: above zero, the estimate was too high", decimals=2
         ),
         _score("crps", "percentage points", "Mean CRPS"),
-        *(
-            number_column(
-                f"inside_{p}",
-                "percent",
-                f"How often the {p} % interval held the truth",
-                decimals=1,
-                blank=_NO_DRAWS,
-            )
-            for p in INTERVALS
-        ),
+        *_HELD,
         _score(
             "width_90", "percentage points", "Mean width of the 90 % interval", blank=_NO_DRAWS, decimals=2
         ),
@@ -342,9 +331,7 @@ FITS = TableSchema(
     "replayed day",
     (
         AS_OF,
-        Column(
-            "passed", ColumnType.YES_NO, "–", "Whether the checks of the fit passed", allowed=("yes", "no")
-        ),
+        yes_no_column("passed", "Whether the checks of the fit passed"),
         Column("verdict", ColumnType.TEXT, "–", "The judgement in words", blank="not recorded"),
         whole_column("divergences", "steps", "Divergent steps", blank="not recorded"),
         _score("worst_rhat", "–", "Largest R-hat", decimals=4, blank="not recorded"),

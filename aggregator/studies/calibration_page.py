@@ -5,13 +5,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 from pathlib import Path
 
-from jinja2 import Environment, FileSystemLoader, StrictUndefined
-from markupsafe import Markup
-
 from aggregator.refits.pace import measure_costs, words_for
 from aggregator.release.chart_files import DrawnChart
-from aggregator.release.method_note import TEMPLATES as RELEASE_TEMPLATES
-from aggregator.release.page import keep_percent_together
+from aggregator.release.page_templates import chart_markup, page_environment
 from aggregator.studies.calibration_report import FEWEST_ELECTIONS, CalibrationReport
 from aggregator.studies.calibration_tables import page_tables
 
@@ -26,29 +22,18 @@ MANY_ELECTIONS = 200
 
 def build_page(report: CalibrationReport, *, charts: Sequence[DrawnChart]) -> str:
     """Write the page."""
-    environment = Environment(
-        loader=FileSystemLoader([TEMPLATES, RELEASE_TEMPLATES]),
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-        autoescape=True,
-        finalize=keep_percent_together,
-    )
-    return environment.get_template("calibration.html.j2").render(
-        title=title_of(report),
-        headlines=headlines(report),
-        caution=CAUTION,
-        tables=page_tables(report),
-        charts={
-            drawn.chart.name: {
-                "wide": Markup(drawn.wide),
-                "narrow": Markup(drawn.narrow),
-                "alt": drawn.chart.alt_text,
-            }
-            for drawn in charts
-        },
-        colours={},
-        facts=facts_of_study(report),
+    return (
+        page_environment(TEMPLATES)
+        .get_template("calibration.html.j2")
+        .render(
+            title=title_of(report),
+            headlines=headlines(report),
+            caution=CAUTION,
+            tables=page_tables(report),
+            charts=chart_markup(charts),
+            colours={},
+            facts=facts_of_study(report),
+        )
     )
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from aggregator.release.table_columns import (
     ANY_COUNT,
+    ANY_NUMBER,
     CODE,
     PERCENT,
     PROBABILITY,
@@ -13,11 +14,11 @@ from aggregator.release.table_columns import (
     TableSchema,
     number_column,
     whole_column,
+    yes_no_column,
 )
 from aggregator.replays.distribution_scores import INTERVALS
 from aggregator.studies.invented_elections import Quantity
 
-_ANY = Bounds(float("-inf"), float("inf"))
 _UNIT = "percent, or seats"
 _POINTS = "points, or seats"
 _ONE_ELECTION = "a single election"
@@ -33,12 +34,14 @@ ELECTIONS = whole_column("elections", "–", "Number of elections")
 KIND = _text("kind", "Kind of number")
 
 
-def _yes_no(name: str, meaning: str) -> Column:
-    return Column(name, ColumnType.YES_NO, "–", meaning, allowed=("yes", "no"))
-
-
 def _number(
-    name: str, unit: str, meaning: str, *, decimals: int = 2, bounds: Bounds = _ANY, blank: str | None = None
+    name: str,
+    unit: str,
+    meaning: str,
+    *,
+    decimals: int = 2,
+    bounds: Bounds = ANY_NUMBER,
+    blank: str | None = None,
 ) -> Column:
     return number_column(name, unit, meaning, decimals=decimals, bounds=bounds, blank=blank)
 
@@ -102,7 +105,7 @@ FITS = TableSchema(
         ELECTION,
         whole_column("silent_days", "days", "From the last publication of a poll to polling day"),
         whole_column("polls", "–", "Polls in the fit"),
-        _yes_no("passed", "Whether the checks of the fit passed"),
+        yes_no_column("passed", "Whether the checks of the fit passed"),
         whole_column("divergences", "–", "Divergent transitions"),
         _number(
             "chi_square",
@@ -156,7 +159,9 @@ PLACES = TableSchema(
     (
         KIND,
         Column("code", ColumnType.CODE, "–", "Party code; `any` for one drawn by lot in each election"),
-        _yes_no("inside", "Whether all places lie inside the 95 % band that holds all codes of the kind"),
+        yes_no_column(
+            "inside", "Whether all places lie inside the 95 % band that holds all codes of the kind"
+        ),
         _number(
             "chance", "0 to 1", "Of uniform places that stray as far, by another test", decimals=4,
             bounds=PROBABILITY,
@@ -212,7 +217,7 @@ CHECKS = TableSchema(
         _text("check", "What is checked"),
         _number("value", "–", "What was found", decimals=1),
         _text("limit", "What it is held to"),
-        _yes_no("passed", "Whether it holds"),
+        yes_no_column("passed", "Whether it holds"),
         _text("meaning", "What a failure would mean"),
     ),
 )
