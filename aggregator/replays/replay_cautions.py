@@ -13,8 +13,7 @@ REPLAY_CAUTIONS = (
     Caution(
         "The polls of one election err together.",
         "What all houses got wrong is in every poll, in this model's estimate and in every rival's. A "
-        "replay of one "
-        "election shows that error once, and cannot tell a good method from a lucky year.",
+        "replay of one election shows that error once, and cannot tell a good method from a lucky year.",
     ),
     Caution(
         "Past accuracy is no promise.",
@@ -22,15 +21,13 @@ REPLAY_CAUTIONS = (
     ),
     Caution(
         "Known then, chosen now.",
-        "Each date saw only what had been published by then. The method itself, and what was entered "
-        "into the "
-        "register, were settled later, by people who may have known the result.",
+        "Each date saw only what had been published by then. The method itself, and what was entered into "
+        "the register, were settled later, by people who may have known the result.",
     ),
     Caution(
         "A document for the desk.",
         "The report judges methods and single polls with the benefit of hindsight. It is not written for "
-        "publication; "
-        "a sentence taken from it needs the number of elections behind it, and its interval.",
+        "publication; a sentence taken from it needs the number of elections behind it, and its interval.",
     ),
     CAUTIONS[-1],
 )

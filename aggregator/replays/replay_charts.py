@@ -97,10 +97,9 @@ def _places_chart(contents: ReportContents) -> ReleaseChart:
         name="places",
         title=title,
         reading="Flat at the dashed line: intervals are right. Heaped in the middle: too wide; at both ends: "
-        "too narrow; "
-        "at one end: one-sided. Grey: where a tenth would end with chance 90 % if each party counted "
-        "once per contest; "
-        "since parties and dates hang together, only many contests show more than a rough shape.",
+        "too narrow; at one end: one-sided. Grey: where a tenth would end with chance 90 % if each party "
+        "counted once per contest; since parties and dates hang together, only many contests show more "
+        "than a rough shape.",
         alt_text=_said(f"{title}. Share of forecasts by tenth, lowest first: {'; '.join(parts)}.", contents),
         draw=lambda layout: build_places_chart(places, layout=layout),
     )
@@ -118,10 +117,8 @@ def _reliability_chart(contents: ReportContents) -> ReleaseChart:
         name="reliability",
         title=title,
         reading="Each point: all chances of about that size, their number beside it; on the dashed line they "
-        "are right. "
-        "Grey: 90 % band if each seat and party counted once and on its own; seats move together, so "
-        "that right chances "
-        "leave it more often.",
+        "are right. Grey: 90 % band if each seat and party counted once and on its own; seats move "
+        "together, so that right chances leave it more often.",
         alt_text=_said(f"{title} {'; '.join(parts)}.", contents),
         draw=lambda layout: build_reliability_chart(table, layout=layout),
     )

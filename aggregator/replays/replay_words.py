@@ -47,8 +47,7 @@ def _coverage_sentence(contents: ReportContents, quantity: Quantity) -> str:
     place = f" of {contents.title}" if contents.is_pooled else ""
     return (
         f"Over {whole_text(row['dates'])} {contents.rhythm}replays{place} the 90 % intervals for {what} "
-        "held the "
-        f"result in {whole_text(row['inside_90'])} % of cases, the 50 % intervals in "
+        f"held the result in {whole_text(row['inside_90'])} % of cases, the 50 % intervals in "
         f"{whole_text(row['inside_50'])} %."
     )
 
@@ -63,10 +62,9 @@ def _last_day_sentence(contents: ReportContents) -> str:
     held = "inside" if worst["inside_90"] == 1 else "outside"
     return (
         f"{days_text(int(rows['days_before'].iloc[0]))} before polling day, the last replay, support was "
-        "off by "
-        f"{share_text(rows['error'].abs().mean(), unit=False)} points on average; most for "
-        f"{names[worst['code']]}, "
-        f"{share_text(worst['estimate'])} against {share_text(worst['truth'])}, {held} its 90 % interval."
+        f"off by {share_text(rows['error'].abs().mean(), unit=False)} points on average; most for "
+        f"{names[worst['code']]}, {share_text(worst['estimate'])} against {share_text(worst['truth'])}, "
+        f"{held} its 90 % interval."
     )
 
 
@@ -148,17 +146,16 @@ def unit_sentence(contents: ReportContents) -> str:
     if contents.is_pooled:
         return (
             f"The unit is the contest: {len(contents.titles)} of them, each counted once. A difference "
-            "within its own "
-            "standard error over contests is called no clear difference."
+            "within its own standard error over contests is called no clear difference."
         )
     units = contents.comparisons.loc[contents.comparisons["lead"] == EVERY_LEAD.label, "units"]
     low, high = (0.0, 0.0) if units.empty else (float(units.min()), float(units.max()))
     counted = f"{low:.0f}" if round(low) == round(high) else f"{low:.0f} to {high:.0f}"
     return (
-        "A difference within its own standard error is called no clear difference. Neighbouring dates "
-        "are almost the "
-        f"same forecast: the {whole_text(contents.replays)} dates count as {counted} here. All of them stand "
-        "on one election, and which method is better in general only several elections can say."
+        "A difference within its own standard error is called no clear difference. Neighbouring dates are "
+        f"almost the same forecast: the {whole_text(contents.replays)} dates count as {counted} here. All "
+        "of them stand on one election, and which method is better in general only several elections can "
+        "say."
     )
 
 
@@ -175,12 +172,10 @@ def staleness_sentence(contents: ReportContents) -> str:
     formula = float(((both["expected_error"] ** 2 * weight).sum()) ** 0.5)
     return (
         f"{whole_text(both['polls'].sum())} single polls missed by {share_text(measured, unit=False)} "
-        "points (root mean "
-        f"square over parties), where the formula expects {share_text(formula, unit=False)} of a poll of "
-        "1,000: a "
-        f"difference of {points_text(measured - formula)}. Polls of one election share an error, so that "
-        "one election "
-        "may well lie above or below the formula."
+        "points (root mean square over parties), where the formula expects "
+        f"{share_text(formula, unit=False)} of a poll of 1,000: a difference of "
+        f"{points_text(measured - formula)}. Polls of one election share an error, so that one election may "
+        "well lie above or below the formula."
     )
 
 

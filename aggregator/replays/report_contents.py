@@ -139,8 +139,7 @@ class ReportContents:
         fits = "fit" if len(failed) == 1 else "fits"
         return (
             f"CHECKS FAILED for {len(failed)} of {self.replays} {fits} ({listed}): their scores may be "
-            "those of a "
-            "sampler that did not finish, not of the model.",
+            "those of a sampler that did not finish, not of the model.",
         )
 
     @property
