@@ -1,0 +1,1 @@
+"""Votes of lists into seats: methods, ties, thresholds, joint lists, mixed chambers."""
