@@ -134,8 +134,8 @@ def continue_averages(
     _raise_for_bad_rows(state)
     tied = np.zeros(len(votes), dtype=np.bool_)
     for row in np.flatnonzero(state == DOUBTFUL):
-        # A party's averages are far apart, so rounding can have cost or brought it one seat at most.
-        sure = np.maximum(filled[row] - 1, start[row])
+        # Of a party's averages two at most are within rounding of each other: those of its first two seats.
+        sure = np.maximum(filled[row] - 2, start[row])
         _count_again(row, votes, seats, method, sure, lot, ties, filled, tied)
     return Apportioned(seats=filled, tied=tied)
 

@@ -42,6 +42,7 @@ def _divisor(seat, first_divisor, step):  # type: ignore[no-untyped-def]
 
 @njit(cache=True)
 def _fill(votes, seats, first_divisor, step, filled, held, scratch):  # type: ignore[no-untyped-def]
+    """Jump to where the votes alone put the parties, step to the number of seats, and prove the result."""
     share, won, coming = scratch[0], scratch[1], scratch[2]
     n_parties = votes.size
     n_held = 0
@@ -50,15 +51,17 @@ def _fill(votes, seats, first_divisor, step, filled, held, scratch):  # type: ig
         n_held += held[party]
     if n_held > seats:
         return TOO_MANY_HELD
-    if n_held == seats:
-        return SURE
     total, standing = 0.0, 0
     for party in range(n_parties):
         if not votes[party] >= 0:
             return BAD_VOTES
         total += votes[party]
         standing += votes[party] > 0
-    if not 0 < total < np.inf:
+    if not total < np.inf:
+        return BAD_VOTES
+    if n_held == seats:
+        return SURE
+    if total == 0:
         return BAD_VOTES
 
     reach = seats + standing * (1.0 / step - 0.5)
@@ -68,7 +71,7 @@ def _fill(votes, seats, first_divisor, step, filled, held, scratch):  # type: ig
         number = int(share[party] * reach + 1.0 - 1.0 / step)
         if number <= 1:
             number = int(share[party] * reach * step >= first_divisor)
-        number = max(number, held[party])
+        number = max(min(number, seats), held[party])
         filled[party] = number
         n_filled += number
         won[party] = np.inf

@@ -32,14 +32,16 @@ def fill_by_remainders(votes, seats, quota_seats, filled):  # type: ignore[no-un
 @njit(cache=True)
 def _fill(votes, seats, quota_seats, filled, remainder):  # type: ignore[no-untyped-def]
     filled[:] = 0
-    if seats == 0:
-        return SURE
     total = 0.0
     for party in range(votes.size):
         if not votes[party] >= 0:
             return BAD_VOTES
         total += votes[party]
-    if not 0 < total < np.inf:
+    if not total < np.inf:
+        return BAD_VOTES
+    if seats == 0:
+        return SURE
+    if total == 0:
         return BAD_VOTES
 
     rounding = _ROUNDING * (seats + quota_seats)

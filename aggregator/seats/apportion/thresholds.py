@@ -46,12 +46,14 @@ def passes_threshold(
     Raises
     ------
     ValueError
-        If a threshold is not a share below 1, or joint lists overlap or name no party.
+        If a threshold is not a share below 1, ``exempt`` is not one per party, or joint lists overlap or name no party.
     """
     for name, value in (("threshold", threshold), ("alliance_threshold", alliance_threshold)):
         if value is not None and not 0 <= value < 1:
             raise ValueError(f"{name}: got {value}; expected a share, 0 or more and below 1")
     check_lists(lists, n_parties=shares.shape[1])
+    if exempt is not None and exempt.shape != shares.shape[1:]:
+        raise ValueError(f"exempt: got shape {exempt.shape}; expected {shares.shape[1:]}, one per party")
     free = np.zeros(shares.shape[1], dtype=np.bool_) if exempt is None else np.asarray(exempt)
     passes = (shares >= threshold * (1 - _ROUNDING)) | free
     needed = threshold if alliance_threshold is None else alliance_threshold
