@@ -113,6 +113,25 @@ def test_a_cluster_that_is_there_makes_the_same_records_and_so_does_a_refresh(ta
     assert np.array_equal(by_two[0].data["national_support_polling_day"].to_numpy(), whole)
 
 
+def test_a_scheduler_that_dies_in_the_middle_is_named_and_finished_fits_are_kept(tasks, by_two, tmp_path):
+    with LocalCluster(
+        n_workers=1, threads_per_worker=1, processes=False, protocol="tcp", host="127.0.0.1",
+        dashboard_address="127.0.0.1:0", local_directory=tmp_path / "scratch",
+    ) as cluster:  # fmt: skip
+
+        def end_scheduler(pace: Pace) -> None:
+            if pace.finished == 1:
+                cluster.sync(cluster.scheduler.close)
+
+        records = run_tasks(
+            tasks, store=tmp_path, scheduler=cluster.scheduler_address, progress=end_scheduler
+        )
+        with pytest.raises(MachineError, match=r"The scheduler does not answer any more.*Finished fits are"):
+            list(records)
+    (kept,) = (tmp_path / "fits").iterdir()
+    assert kept.stem == tasks[0].key
+
+
 class EndsWorkers:
     """Stands in for inputs that kill whatever worker unpacks them, as a want of memory would."""
 
