@@ -3,10 +3,13 @@
 from __future__ import annotations
 
 from datetime import date
-from enum import StrEnum
 from typing import Annotated
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field
+from pydantic import BeforeValidator, Field
+
+from aggregator.inputs.contest_table import ContestTable
+from aggregator.inputs.counting_terms import Counting, CountingTerms
+from aggregator.inputs.counting_terms import CountingRule as CountingRule
 
 OTHERS = "OTH"
 
@@ -29,23 +32,7 @@ Day = Annotated[date, BeforeValidator(_no_number), Field(ge=FIRST_DAY, le=LAST_D
 Colour = Annotated[str, Field(pattern=r"^#[0-9a-fA-F]{6}$")]
 
 
-class _Frozen(BaseModel):
-    model_config = ConfigDict(frozen=True, extra="forbid", populate_by_name=True)
-
-
-class CountingRule(StrEnum):
-    """How votes become seats."""
-
-    NONE = "none"
-    PLURALITY = "plurality"
-    HIGHEST_AVERAGES = "highest_averages"
-    LARGEST_REMAINDER = "largest_remainder"
-    MIXED_PARALLEL = "mixed_parallel"
-    MIXED_COMPENSATORY = "mixed_compensatory"
-    TWO_ROUND = "two_round"
-
-
-class Party(_Frozen):
+class Party(ContestTable):
     """A party: its code (the column name in every file), its name, where it stands."""
 
     code: str = Field(description="a short code like HU, the party's column in every file")
@@ -59,7 +46,7 @@ class Party(_Frozen):
     colour: Colour | None = Field(default=None, description="a colour like #1f6f8b")
 
 
-class Alliance(_Frozen):
+class Alliance(ContestTable):
     """Parties that are polled or counted together, from one day to another; either end may be open."""
 
     code: str = Field(description="a short code like LAKE, the alliance's column in the poll register")
@@ -68,16 +55,18 @@ class Alliance(_Frozen):
     from_: Day | None = Field(default=None, alias="from", description="its first day, like 2030-11-01")
     until: Day | None = Field(default=None, description="its last day, like 2031-05-18")
     colour: Colour | None = Field(default=None, description="a colour like #1f6f8b")
+    joint_list: bool = Field(default=False, strict=True, description="true or false")
 
     def active_on(self, day: date) -> bool:
         """Tell whether the alliance exists on a day (both ends included)."""
         return (self.from_ is None or self.from_ <= day) and (self.until is None or day <= self.until)
 
 
-class Region(_Frozen):
+class Region(ContestTable):
     """A part of the country with its own support; ``electorate`` weighs it where no last result does.
 
-    ``counted`` is the day on which the count of a region that votes early was published.
+    ``counted`` is the day on which the count of a region that votes early was published; ``list_seats`` are
+    filled from lists of the region.
     """
 
     code: str = Field(description="a short code like NORTH, used in the region column of every file")
@@ -85,9 +74,10 @@ class Region(_Frozen):
     polling_day: Day | None = Field(default=None, description="the region's own polling day, like 2031-05-11")
     electorate: float | None = Field(default=None, gt=0, description="the number of voters, above 0")
     counted: Day | None = Field(default=None, description="the day its count was published, like 2031-05-14")
+    list_seats: int | None = Field(default=None, ge=1, description="a whole number of seats, 1 or more")
 
 
-class LastResult(_Frozen):
+class LastResult(ContestTable):
     """When the last election was and which file holds it."""
 
     date: Day = Field(description="the day of the last election, like 2027-05-16")
@@ -98,7 +88,7 @@ class LastResult(_Frozen):
     )
 
 
-class Jolt(_Frozen):
+class Jolt(ContestTable):
     """A day on which opinion may have jumped: a leader goes, an alliance breaks."""
 
     date: Day = Field(description="the day, like 2031-02-03")
@@ -106,17 +96,7 @@ class Jolt(_Frozen):
     name: str = Field(default="", description="what happened, as text")
 
 
-class Counting(_Frozen):
-    """The rule by which votes become seats."""
-
-    rule: CountingRule = Field(
-        default=CountingRule.PLURALITY, description="one of " + ", ".join(CountingRule)
-    )
-    seats: int | None = Field(default=None, ge=1, description="a whole number of seats, 1 or more")
-    majority: int | None = Field(default=None, ge=1, description="a whole number of seats, 1 or more")
-
-
-class Silence(_Frozen):
+class Silence(ContestTable):
     """A window in which local law forbids publishing polls: both ends included, in one time zone."""
 
     from_: Day = Field(alias="from", description="the first day, like 2031-05-16")
@@ -126,14 +106,14 @@ class Silence(_Frozen):
     law: str | None = Field(default=None, description="the law, as text")
 
 
-class ReleaseRules(_Frozen):
+class ReleaseRules(ContestTable):
     """What the desk says about publication."""
 
     silence: tuple[Silence, ...] = Field(default=(), description="windows, each with from and until")
     publisher: str | None = Field(default=None, description="the publisher's name")
 
 
-class ModelOverrides(_Frozen):
+class ModelOverrides(ContestTable):
     """Settings of the model that a contest may override; every default stands in ``docs/method.md``."""
 
     shared_lean: bool = Field(default=True, strict=True, description="true or false")
@@ -145,7 +125,7 @@ class ModelOverrides(_Frozen):
     )
 
 
-class Contest(_Frozen):
+class Contest(ContestTable):
     """One election: parties, alliances, regions, how votes become seats, publication rules."""
 
     title: str = Field(min_length=1, description="the contest's title")
@@ -191,6 +171,31 @@ class Contest(_Frozen):
     def region_codes(self) -> tuple[str, ...]:
         """Codes of all regions in file order; one nameless region, ``ALL``, where there are none."""
         return tuple(r.code for r in self.regions) or (WHOLE_COUNTRY,)
+
+    @property
+    def counting_groups(self) -> tuple[tuple[CountingTerms, tuple[str, ...]], ...]:
+        """Settled terms and the regions they hold in: of the whole chamber first, then of each exception.
+
+        Every region is in one group; a group without any is left out.
+        """
+        apart = {region for where in self.counting.where for region in where.regions}
+        found: list[tuple[CountingTerms, set[str]]] = [(self.counting, set(self.region_codes) - apart)]
+        found += [(where, set(where.regions)) for where in self.counting.where]
+        groups = []
+        taken: set[str] = set()
+        for terms, named in found:
+            regions = tuple(r for r in self.region_codes if r in named - taken)
+            taken.update(regions)
+            if regions:
+                groups.append((terms.settled, regions))
+        return tuple(groups)
+
+    def terms_in(self, region: str) -> CountingTerms:
+        """Give the settled terms by which a region counts."""
+        for terms, regions in self.counting_groups:
+            if region in regions:
+                return terms
+        return self.counting.settled
 
     def polling_day_of(self, region: str) -> date:
         """Give a region's polling day: its own where voting is in phases, else the contest's."""

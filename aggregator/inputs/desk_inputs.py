@@ -39,11 +39,12 @@ class DeskInputs:
     unused_polls
         Poll rows that do not enter, as read, with the column ``why_not``.
     last_result
-        Votes by party, one row per seat: columns ``seat``, ``name``, ``region``, then one per party code
-        (votes as float, others included), splits and mergers already applied (``inherits``). NaN where the
-        party did not stand, or had no column: not the same as 0 votes. Votes where a party does not stand
-        any more are kept. ``seat`` is blank where the file has one row per region. None without a last
-        result.
+        Votes by party, one row per seat: columns ``seat``, ``name``, ``region``, ``seats`` (members the row
+        elects; 0 where it elects none and the file does not say how many its region has), ``cluster``
+        (neighbouring seats that move together; blank: none), then one per party code (votes as float, others
+        included), splits and mergers already applied (``inherits``). NaN where the party did not stand, or
+        had no column: not the same as 0 votes. Votes where a party does not stand any more are kept.
+        ``seat`` is blank where the file has one row per region. None without a last result.
     counted_result
         Votes of the regions that have voted and been counted as of the run, columns as in ``last_result``;
         None where no region has.
@@ -51,6 +52,11 @@ class DeskInputs:
         The desk's record of earlier elections, one row per election and party: ``election``
         (``datetime64``), ``code``, ``polled`` (final poll average) and ``result``, both percent. None without
         a record.
+    before_last
+        Votes of the election before the last, columns as in ``last_result``; None without one.
+    transfers
+        Where voters go in a run-off, one row per ordered pair of party codes: ``from``, ``to``, ``rate`` and
+        ``sd``, percent of the voters of ``from``. None where nobody counts in two rounds.
     warnings
         What was doubtful; travels into the release.
     unpublished
@@ -73,3 +79,5 @@ class DeskInputs:
     fingerprints: tuple[Fingerprint, ...] = ()
     counted_result: pd.DataFrame | None = None
     past_errors: pd.DataFrame | None = None
+    before_last: pd.DataFrame | None = None
+    transfers: pd.DataFrame | None = None

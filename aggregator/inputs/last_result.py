@@ -21,6 +21,7 @@ from aggregator.inputs.result_rows import (
     read_votes,
     region_of,
 )
+from aggregator.inputs.row_members import check_members
 from aggregator.inputs.sheet_table import SheetTable, as_text, check_columns
 from aggregator.problems import Problem, Severity
 
@@ -30,8 +31,8 @@ def read_last_result(table: SheetTable, *, contest: Contest) -> tuple[pd.DataFra
 
     Returns
     -------
-    Columns ``seat``, ``name``, ``region``, then one per party code: votes, NaN where the cell is blank
-    (the party did not stand there). None where something is wrong. And what was found.
+    Columns ``seat``, ``name``, ``region``, ``seats``, ``cluster``, then one per party code: votes, NaN where
+    the cell is blank (the party did not stand there). None where something is wrong. And what was found.
     """
     donors = list(dict.fromkeys(d for p in contest.parties for d in p.inherits))
     codes = [c for c in table.columns if c in contest.party_codes or c in donors]
@@ -52,6 +53,7 @@ def read_last_result(table: SheetTable, *, contest: Contest) -> tuple[pd.DataFra
     problems += _check_regions(table, contest)
     problems += check_totals(table, rows, broken={p.row for p in problems if p.rule is not Rule.PLACE_TWICE})
     problems += check_kind(table, rows)
+    problems += check_members(table, contest=contest)
     problems += _check_standing(table, rows, contest)
     if any(p.severity is Severity.ERROR for p in problems):
         return None, problems

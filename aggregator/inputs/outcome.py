@@ -30,8 +30,8 @@ class Outcome:
     Attributes
     ----------
     votes
-        Columns as of the last result: ``seat``, ``name``, ``region``, then votes by party code, NaN where the
-        party did not stand; the same seats, or regions, as the last result.
+        Columns as of the last result: ``seat``, ``name``, ``region``, ``seats``, ``cluster``, then votes by
+        party code, NaN where the party did not stand; the same seats, or regions, as the last result.
     warnings
         What was doubtful.
     fingerprint

@@ -41,7 +41,7 @@ REGISTER_COLUMNS = (
 REGISTER_NEEDED = ("house", "end", "sample")
 REGISTER_DATES = ("start", "end", "published", "status_date")
 
-RESULT_COLUMNS = ("seat", "name", "region")
+RESULT_COLUMNS = ("seat", "name", "region", "seats", "cluster")
 
 RECORD_NEEDED = ("election", "code", "polled", "result")
 RECORD_COLUMNS = (*RECORD_NEEDED, "source", "note")

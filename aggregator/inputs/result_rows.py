@@ -187,19 +187,51 @@ def region_of(row: SheetRow, *, contest: Contest) -> str:
     return cell if cell and contest.regions else contest.region_codes[0]
 
 
+def members_of(row: SheetRow, *, elects: bool) -> int:
+    """Give the members that a checked row elects.
+
+    Parameters
+    ----------
+    elects
+        Whether rows of its region elect members: then a seat or district of which the file says nothing
+        elects one. Else 0, which says that the file leaves the number to the contest.
+    """
+    cell = as_text(row.cells.get("seats", ""))
+    if cell:
+        return int(cell)
+    return 1 if elects and as_text(row.cells.get("seat", "")) else 0
+
+
 def build_result(table: SheetTable, rows: Sequence[Votes], *, contest: Contest) -> pd.DataFrame:
-    """Build the table of votes by place: ``seat``, ``name``, ``region``, then one column per party code.
+    """Build the table of votes by place.
+
+    Its columns are ``seat``, ``name``, ``region``, ``seats``, ``cluster``, then one per party code.
 
     Parameters
     ----------
     rows
         Votes of today's parties, by row of the table; NaN where a party did not stand.
+
+    Raises
+    ------
+    ValueError
+        If the file's ``seats`` were not checked (`aggregator.inputs.row_members.check_members`).
     """
+    by_row = {region: contest.terms_in(region).elects_by_row for region in contest.region_codes}
     places = []
     for row, votes in zip(table.rows, rows, strict=True):
         region = region_of(row, contest=contest)
         seat = as_text(row.cells.get("seat", ""))
         name = as_text(row.cells.get("name", "")) or seat or region
-        places.append({"seat": seat, "name": name, "region": region, **votes})
+        places.append(
+            {
+                "seat": seat,
+                "name": name,
+                "region": region,
+                "seats": members_of(row, elects=by_row[region]),
+                "cluster": as_text(row.cells.get("cluster", "")),
+                **votes,
+            }
+        )
     frame = pd.DataFrame(places, columns=[*RESULT_COLUMNS, *contest.party_codes])
-    return frame.astype(dict.fromkeys(contest.party_codes, float))
+    return frame.astype({"seats": int} | dict.fromkeys(contest.party_codes, float))

@@ -21,6 +21,7 @@ from aggregator.inputs.result_rows import (
     read_votes,
     region_of,
 )
+from aggregator.inputs.row_members import check_members
 from aggregator.inputs.sheet_table import SheetTable, as_text, check_columns
 from aggregator.problems import Problem, Severity
 
@@ -43,8 +44,8 @@ def read_votes_of_today(
 
     Returns
     -------
-    Columns as of the last result: ``seat``, ``name``, ``region``, then votes by party code, NaN where the
-    party did not stand. None where something is wrong. And what was found.
+    Columns as of the last result: ``seat``, ``name``, ``region``, ``seats``, ``cluster``, then votes by party
+    code, NaN where the party did not stand. None where something is wrong. And what was found.
     """
     codes = [c for c in table.columns if c in contest.party_codes]
     problems = check_columns(
@@ -63,6 +64,7 @@ def read_votes_of_today(
     problems += places
     problems += check_totals(table, rows, broken={p.row for p in problems if p.rule is not Rule.PLACE_TWICE})
     problems += check_kind(table, rows)
+    problems += check_members(table, contest=contest)
     problems += _check_standing(table, rows, contest)
     if last_result is not None and not places:
         problems += _check_seats(table, last_result=last_result, contest=contest, unfinished=unfinished)
