@@ -129,7 +129,7 @@ def continue_averages(
     votes, seats = _checked(votes, seats, lot, ties)
     if start.shape != votes.shape or (start.size and start.min() < 0):
         raise ValueError("start: expected a number of seats, zero or more, for every row and party")
-    filled = start.astype(np.int16)
+    filled = np.array(start, dtype=np.int16, order="C")
     state = fill_by_averages(votes, seats, float(method.first_divisor), method.step, filled)
     _raise_for_bad_rows(state)
     tied = np.zeros(len(votes), dtype=np.bool_)
@@ -173,7 +173,8 @@ def _checked(
         raise ValueError(f"votes: got {votes.ndim} dims; expected (row, party)")
     if lot.shape != votes.shape:
         raise ValueError(f"lot: got shape {lot.shape}; expected that of the votes, {votes.shape}")
-    seats = np.ascontiguousarray(np.broadcast_to(np.asarray(seats, dtype=np.int64), len(votes)))
+    # A copy: the compiled count would be compiled again for arrays that may not be written to.
+    seats = np.array(np.broadcast_to(np.asarray(seats, dtype=np.int64), len(votes)))
     if seats.size and not 0 <= seats.min() <= seats.max() <= MOST_SEATS:
         raise ValueError(f"seats: got {seats.min()} to {seats.max()}; expected 0 to {MOST_SEATS}")
     return np.ascontiguousarray(votes, dtype=np.float64), seats

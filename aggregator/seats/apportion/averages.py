@@ -16,23 +16,29 @@ SURE, DOUBTFUL, BAD_VOTES, TOO_MANY_HELD = 0, 1, 2, 3
 
 # A quotient carries the rounding of a sum over parties, a share and a division: some 1e-14 at worst.
 _ROUNDING = 1e-12
-# Rows that one thread does on one piece of scratch memory.
-_BLOCK = 128
+# Rows that one thread does on one piece of scratch memory. A single block is not worth waking other threads.
+_BLOCK = 256
 
 
 # A row is one thread's work from start to end: the number of threads changes nothing.
 @njit(parallel=True, cache=True)
 def fill_by_averages(votes, seats, first_divisor, step, filled):  # type: ignore[no-untyped-def]
     """Fill ``filled`` (row, party), which holds the seats held at the start, up to ``seats`` (row)."""
-    n_rows, n_parties = votes.shape
-    state = np.empty(n_rows, dtype=np.uint8)
-    n_blocks = (n_rows + _BLOCK - 1) // _BLOCK
-    for block in prange(n_blocks):
-        scratch = np.empty((3, n_parties), dtype=np.float64)
-        held = np.empty(n_parties, dtype=np.int64)
-        for row in range(block * _BLOCK, min((block + 1) * _BLOCK, n_rows)):
-            state[row] = _fill(votes[row], seats[row], first_divisor, step, filled[row], held, scratch)
+    state = np.empty(len(votes), dtype=np.uint8)
+    if len(votes) <= _BLOCK:
+        _fill_block(0, votes, seats, first_divisor, step, filled, state)
+        return state
+    for block in prange((len(votes) + _BLOCK - 1) // _BLOCK):
+        _fill_block(block, votes, seats, first_divisor, step, filled, state)
     return state
+
+
+@njit(cache=True)
+def _fill_block(block, votes, seats, first_divisor, step, filled, state):  # type: ignore[no-untyped-def]
+    scratch = np.empty((3, votes.shape[1]), dtype=np.float64)
+    held = np.empty(votes.shape[1], dtype=np.int64)
+    for row in range(block * _BLOCK, min((block + 1) * _BLOCK, len(votes))):
+        state[row] = _fill(votes[row], seats[row], first_divisor, step, filled[row], held, scratch)
 
 
 @njit(cache=True)

@@ -130,6 +130,8 @@ def _by_largest_remainder(votes: list[Fraction], seats: int, method: LargestRema
     quota = sum(votes) / (seats + method.quota_seats)
     quotas = [of_party / quota for of_party in votes]
     full = [floor(of_party) for of_party in quotas]
+    if sum(full) > seats and max(full) > seats:
+        return ExactApportionment(tuple(min(number, seats) for number in full), (), 0)
     if sum(full) > seats:
         standing = tuple(party for party, number in enumerate(full) if number)
         without_last = tuple(max(number - 1, 0) for number in full)

@@ -46,7 +46,8 @@ def passes_threshold(
     Raises
     ------
     ValueError
-        If a threshold is not a share below 1, ``exempt`` is not one per party, or joint lists overlap or name no party.
+        If a threshold is not a share below 1, ``exempt`` is not one per party, or joint lists overlap or
+        name no party.
     """
     for name, value in (("threshold", threshold), ("alliance_threshold", alliance_threshold)):
         if value is not None and not 0 <= value < 1:
