@@ -51,7 +51,8 @@ def build_baseline(
     Parameters
     ----------
     last_result
-        Votes, one row per seat: columns ``seat``, ``name``, ``region`` and one per party code.
+        Votes, one row per seat: columns ``seat``, ``name``, ``region`` and one per party code; ``seats``, the
+        members that the row elects (else one), and ``cluster`` (else none).
     contest
         The contest: its parties and where they stand.
     priors
@@ -63,7 +64,8 @@ def build_baseline(
         ``log_share`` (seat, party), ``-inf`` where the party does not stand in the region;
         ``unseen_sd`` (seat, party), log units, zero where the party has last votes;
         ``last_share`` (seat, party), 0–1, as counted; ``weight`` (seat), the seat's part of its region's
-        votes; coordinates ``seat_name``, ``seat_region``.
+        votes; coordinates ``seat_name``, ``seat_region``, ``seat_cluster`` (blank: none) and
+        ``seat_magnitude``, the members it elects.
 
     Raises
     ------
@@ -94,8 +96,14 @@ def build_baseline(
             PARTY: parties,
             "seat_name": (SEAT, rows["name"].astype(str).to_numpy(dtype=str)),
             "seat_region": (SEAT, region),
+            "seat_cluster": (SEAT, _column(rows, "cluster", "").astype(str).to_numpy(dtype=str)),
+            "seat_magnitude": (SEAT, _column(rows, "seats", 1).to_numpy(dtype=np.int64)),
         },
     )
+
+
+def _column(rows: pd.DataFrame, name: str, otherwise: object) -> pd.Series:
+    return rows[name] if name in rows else pd.Series([otherwise] * len(rows), index=rows.index)
 
 
 def _seat_totals(votes: FloatArray, region: npt.NDArray[np.str_]) -> FloatArray:

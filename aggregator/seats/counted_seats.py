@@ -16,8 +16,9 @@ import xarray as xr
 from aggregator.seats.local_swing import LocalStrength, region_starts
 from models.dimensions import PARTY, SEAT
 
-# A party without votes in a seat keeps a trace there: before polling day its region may still support it.
-_TRACE = 1e-6
+# A party without votes in a seat keeps a trace there, in votes: before polling day its region may still
+# support it.
+_TRACE = 0.01
 
 
 @dataclass(frozen=True)
@@ -26,8 +27,8 @@ class CountedSeats:
 
     Attributes
     ----------
-    share
-        Share of the votes, dims (counted seat, party), in the baseline's order of parties.
+    votes
+        Votes, dims (counted seat, party), in the baseline's order of parties.
     weight
         Each seat's part of its region's votes, dims (counted seat).
     place
@@ -36,7 +37,7 @@ class CountedSeats:
         Positions of the counted regions among the baseline's, dims (counted region).
     """
 
-    share: npt.NDArray[np.float64]
+    votes: npt.NDArray[np.float64]
     weight: npt.NDArray[np.float64]
     place: npt.NDArray[np.int64]
     region: npt.NDArray[np.int64]
@@ -64,7 +65,7 @@ def find_counted_seats(counted_result: pd.DataFrame | None, *, baseline: xr.Data
     total = pd.Series(votes.sum(axis=1))
     region = rows["region"].to_numpy(dtype=str)
     return CountedSeats(
-        share=votes / total.to_numpy()[:, None],
+        votes=votes,
         weight=(total / total.groupby(region).transform("sum")).to_numpy(),
         place=place,
         region=np.flatnonzero(np.isin(names, region)),
@@ -74,11 +75,14 @@ def find_counted_seats(counted_result: pd.DataFrame | None, *, baseline: xr.Data
 def put_counts_in(
     local: LocalStrength, *, weight: npt.NDArray[np.float64], counted: CountedSeats
 ) -> tuple[LocalStrength, npt.NDArray[np.float64]]:
-    """Replace drawn strengths by counted shares, the same in every draw; the seats' weights with them."""
+    """Replace drawn strengths by counted votes, the same in every draw; the seats' weights with them.
+
+    Whole numbers of votes stay exact in single precision up to sixteen million in a seat.
+    """
     if not counted.place.size:
         return local, weight
     strength, deviation, weight = local.strength.copy(), local.region_deviation.copy(), weight.copy()
-    known = np.where(counted.share > 0, counted.share, _TRACE)
+    known = np.where(counted.votes > 0, counted.votes, _TRACE)
     stands = local.strength[:1, :, counted.place] > 0
     strength[:, :, counted.place] = np.where(stands, known.T.astype(np.float32), np.float32(0))
     deviation[:, counted.region] = 0.0

@@ -1,33 +1,52 @@
-"""From draws of support to draws of seats.
+"""From draws of support to draws of seats, by the rule or rules of the contest.
 
-The order is that of the story: where seats start (`baseline`), how they stray from their region
-(`local_swing`), the move that makes a region's seats meet its support (`recentring`), and the count by the
-contest's rule (`plurality`). Expected seats are sums of chances, never a count of leaders.
-
-References
-----------
-Curtice, J. and Firth, D. (2008). Exit polling in a cold climate. Journal of the Royal Statistical Society A
-171, 509–539. doi:10.1111/j.1467-985X.2007.00536.x
+Votes are prepared first (`prepare`), then each group of regions is counted by its own rule. Expected seats
+are sums of chances, never a count of leaders.
 """
 
 from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from datetime import date
 
 import numpy as np
 import numpy.typing as npt
 import pandas as pd
 import xarray as xr
 
-from aggregator.errors import UsageError
-from aggregator.inputs.contest import Contest, CountingRule
-from aggregator.seats.baseline import BaselinePriors, build_baseline
-from aggregator.seats.counted_seats import find_counted_seats, put_counts_in
-from aggregator.seats.local_swing import LocalPriors, draw_local_strength, region_starts
+from aggregator.inputs.contest import Contest
+from aggregator.inputs.counting_terms import CountingRule
+from aggregator.seats.baseline import BaselinePriors
+from aggregator.seats.list_count import count_by_lists
+from aggregator.seats.local_noise import LocalPriors
+from aggregator.seats.mixed import count_mixed_compensatory, count_mixed_parallel
 from aggregator.seats.plurality import count_by_plurality
-from aggregator.seats.recentring import solve_multipliers
-from aggregator.seats.rules import CountSeats, SeatVotes
-from models.dimensions import CHAIN, DATE, DRAW, PARTY, REGION, SEAT
+from aggregator.seats.prepare import PreparedGroup, PreparedSeats, prepare_seats
+from aggregator.seats.recentring import mean_shares
+from aggregator.seats.rules import CountSeats, FloatArray, IntArray, SeatArray, SeatsCounted
+from aggregator.seats.swing_forms import SwingForm
+from aggregator.seats.two_round import count_by_two_rounds
+from models.dimensions import CHAIN, DATE, DRAW, PARTY, SEAT
 
-COUNTING_RULES: dict[CountingRule, CountSeats] = {CountingRule.PLURALITY: count_by_plurality}
+COUNTING_RULES: dict[CountingRule, CountSeats] = {
+    CountingRule.PLURALITY: count_by_plurality,
+    CountingRule.TWO_ROUND: count_by_two_rounds,
+    CountingRule.HIGHEST_AVERAGES: count_by_lists,
+    CountingRule.LARGEST_REMAINDER: count_by_lists,
+    CountingRule.MIXED_PARALLEL: count_mixed_parallel,
+    CountingRule.MIXED_COMPENSATORY: count_mixed_compensatory,
+}
+SHIFT = "shift"
+
+
+@dataclass(frozen=True)
+class _Chamber:
+    """A counted chamber: seats (draw, date, party), ties (draw), and each group's count of polling day."""
+
+    seats: SeatArray
+    ties: IntArray
+    last: tuple[SeatsCounted, ...]
 
 
 def count_seats(
@@ -37,6 +56,9 @@ def count_seats(
     contest: Contest,
     rng: np.random.Generator,
     counted_result: pd.DataFrame | None = None,
+    before_last: pd.DataFrame | None = None,
+    transfers: pd.DataFrame | None = None,
+    form: SwingForm = SwingForm.LOG_RATIO,
     baseline_priors: BaselinePriors | None = None,
     local_priors: LocalPriors | None = None,
 ) -> xr.Dataset:
@@ -46,122 +68,244 @@ def count_seats(
     ----------
     draws
         Needs ``support`` (chain, draw, date, region, party) and ``support_polling_day`` (chain, draw,
-        region, party), share 0–1, zero for a party that does not stand in a region.
+        region, party), share 0–1, zero for a party that does not stand in a region; ``turnout_weight``
+        (chain, draw, region) where it is known.
     last_result
-        Votes at the last election, one row per seat: ``seat``, ``name``, ``region``, one column per party.
+        Votes at the last election, one row per seat or district: ``seat``, ``name``, ``region``, ``seats``,
+        ``cluster``, one column per party.
     contest
-        The contest: its parties, regions and counting rule.
+        The contest: its parties, regions and counting rules.
     rng
-        Source of randomness for slopes, local noise and lots.
+        Source of randomness for slopes, local noise, lots and transfers.
     counted_result
         Votes of the regions that have been counted, in the same form; their seats are given, from their
         region's polling day on.
+    before_last
+        Votes at the election before the last, by seat: teaches how far seats stray from their region.
+    transfers
+        Rates at which voters move on in a run-off: ``from``, ``to``, ``rate``, ``sd``, percent.
+    form
+        How a region's move reaches its seats.
     baseline_priors, local_priors
         Scales of the local swing.
 
     Returns
     -------
     xr.Dataset
-        ``seats`` (chain, draw, date, party) and ``seats_polling_day`` (chain, draw, party), int16;
-        ``seat_chance``, ``seat_share`` and ``last_share`` (seat, party), 0–1, the first two on polling day;
-        coordinates ``seat_name`` and ``seat_region``. Seats are in the order of ``last_result``, parties in
-        that of ``draws``. Attributes: those of ``draws``, ``counting_rule``, ``chamber`` (number of seats)
-        and ``recentring_gap`` (largest gap between a region's mean and its support, share units).
+        ``seats`` (chain, draw, date, party) and ``seats_polling_day`` (chain, draw, party), int16: their sum
+        is the chamber, and more where overhang seats are added. ``ties_broken`` (chain, draw): counts
+        decided by lot or by the rule for ties, over all dates. Of polling day, where a rule is mixed:
+        ``list_seats_polling_day`` (chain, draw, party), those that came from lists. Of polling day, where
+        seats are filled in rows: ``won`` (chain, draw, seat, party), members elected, int8; ``seat_votes``
+        (same dims), shares, float32; their means ``seat_expected`` and ``seat_share``, ``seat_chance`` of
+        one member or more, and ``last_share`` (seat, party); coordinates ``seat_name``, ``seat_region`` and
+        ``seat_magnitude``. Seats are in the order of ``last_result``, parties in that of ``draws``.
+        Attributes: those of ``draws``, ``counting_rule``, ``chamber`` (regular number of seats) and
+        ``recentring_gap`` (largest gap between a region's mean and its support, share units).
 
     Raises
     ------
-    UsageError
-        Where the contest's counting rule is not available.
     ValueError
         Where draws and last result do not fit each other: seats in a region without support, support for
         a party where it does not stand, rows without a seat.
     """
-    rule = COUNTING_RULES.get(contest.counting.rule)
-    if rule is None:
-        known = ", ".join(COUNTING_RULES)
-        raise UsageError(f"Counting rule {contest.counting.rule} is not available; available: {known}.")
-    baseline = build_baseline(last_result, contest=contest, priors=baseline_priors)
-    support = _support_of_seat_regions(draws, baseline)
-    n_draws = support.shape[0]
-    local = draw_local_strength(baseline, draws=n_draws, rng=rng, priors=local_priors)
-    start = region_starts(baseline)
-    done = find_counted_seats(counted_result, baseline=baseline)
-    local, weight = put_counts_in(local, weight=baseline["weight"].to_numpy(), counted=done)
-    recentred = solve_multipliers(
-        local.strength,
-        support=_with_region_deviation(support, local.region_deviation),
-        weight=weight.astype(np.float32),
-        region_start=start,
+    prepared = prepare_seats(
+        draws,
+        last_result=last_result,
+        contest=contest,
+        rng=rng,
+        counted_result=counted_result,
+        before_last=before_last,
+        transfers=transfers,
+        form=form,
+        baseline_priors=baseline_priors,
+        local_priors=local_priors,
     )
-    for region in done.region:
-        # A count is no draw: no last digit of a re-centring may turn a narrow seat.
-        recentred.multiplier[:, _since_voting(draws, baseline, contest, region), region] = 1
-    votes = SeatVotes(
-        strength=local.strength,
-        multiplier=recentred.multiplier,
-        region_start=start,
-        lot=rng.random((n_draws, baseline.sizes[SEAT]), dtype=np.float32),
+    return count_prepared(
+        prepared, draws=draws, contest=contest, order=last_result["seat"].astype(str).tolist()
     )
-    counted = rule(votes)
+
+
+def count_prepared(
+    prepared: PreparedSeats, *, draws: xr.Dataset, contest: Contest, order: Sequence[str]
+) -> xr.Dataset:
+    """Count a prepared chamber; see `count_seats`.
+
+    Parameters
+    ----------
+    prepared
+        The chamber.
+    draws
+        The draws it was prepared from.
+    contest
+        Says which joint lists there are on which day.
+    order
+        Labels of the seats, in the order wanted.
+    """
+    days = [pd.Timestamp(day).date() for day in draws[DATE].values]
+    counted = _count_chamber(prepared, contest=contest, days=[*days, contest.last_polling_day])
+    shape = (draws.sizes[CHAIN], draws.sizes[DRAW])
+    coords = {CHAIN: draws[CHAIN], DRAW: draws[DRAW], PARTY: list(prepared.parties)}
     seats = xr.DataArray(
-        counted.seats.reshape(draws.sizes[CHAIN], draws.sizes[DRAW], -1, baseline.sizes[PARTY]),
+        counted.seats.reshape(*shape, -1, len(prepared.parties)),
         dims=(CHAIN, DRAW, DATE, PARTY),
-        coords={CHAIN: draws[CHAIN], DRAW: draws[DRAW], PARTY: baseline[PARTY]},
+        coords=coords,
     )
     result = xr.Dataset(
         {
             "seats": seats.isel({DATE: slice(None, -1)}).assign_coords({DATE: draws[DATE]}),
             "seats_polling_day": seats.isel({DATE: -1}),
-            "seat_chance": ((SEAT, PARTY), counted.chance),
-            "seat_share": ((PARTY, SEAT), votes.polling_day_shares.mean(axis=0, dtype=np.float64)),
-            "last_share": baseline["last_share"],
+            "ties_broken": ((CHAIN, DRAW), counted.ties.reshape(shape)),
         },
         attrs={
             **draws.attrs,
-            "counting_rule": str(contest.counting.rule),
-            "chamber": baseline.sizes[SEAT],
-            "recentring_gap": recentred.largest_gap,
+            "counting_rule": "; ".join(dict.fromkeys(str(g.terms.terms.rule) for g in prepared.groups)),
+            "chamber": prepared.chamber,
+            "recentring_gap": prepared.recentring_gap,
         },
     )
-    return (
-        result.sel({SEAT: last_result["seat"].astype(str).to_numpy(dtype=str)})
-        .reindex({PARTY: draws[PARTY]})
-        .transpose(CHAIN, DRAW, DATE, SEAT, PARTY)
+    lists = [count.from_lists for count in counted.last if count.from_lists is not None]
+    if lists:
+        result["list_seats_polling_day"] = ((CHAIN, DRAW, PARTY), np.sum(lists, axis=0).reshape(*shape, -1))
+    if prepared.baseline is not None:
+        result = result.merge(_rows_of(prepared, counted, shape=shape)).sel(
+            {SEAT: [label for label in order if label in prepared.baseline[SEAT].to_numpy()]}
+        )
+    return result.reindex({PARTY: draws[PARTY]}).transpose(
+        CHAIN, DRAW, DATE, SEAT, PARTY, missing_dims="ignore"
     )
 
 
-def _since_voting(
-    draws: xr.Dataset, baseline: xr.Dataset, contest: Contest, region: int
-) -> npt.NDArray[np.bool_]:
-    """Whether a region had voted, by date, polling day last."""
-    name = str(baseline["seat_region"].to_numpy()[region_starts(baseline)[region]])
-    voted = draws[DATE].to_numpy() >= np.datetime64(contest.polling_day_of(name))
-    return np.append(voted, True)
+def count_shifted(
+    prepared: PreparedSeats, *, shifts: npt.ArrayLike, contest: Contest, every: int = 1
+) -> xr.Dataset:
+    """Count polling day again with every seat's votes shifted, to see how seats follow votes.
+
+    Parameters
+    ----------
+    prepared
+        The chamber.
+    shifts
+        dims (shift, party), in the order of ``prepared.parties``: logs of the factors by which a party's
+        votes are multiplied in every seat, before shares are taken again.
+    contest
+        Says which joint lists there are on polling day.
+    every
+        Use every so manieth draw.
+
+    Returns
+    -------
+    xr.Dataset
+        ``seats`` and ``votes`` (draw, shift, party): seats won, and share of the country's vote.
+    """
+    factor = np.exp(np.asarray(shifts, dtype=np.float64)).astype(np.float32)
+    groups = [_shift_group(group, factor, weight=prepared.weight, every=every) for group in prepared.groups]
+    country = np.sum(
+        [np.einsum("dr,dtrp->dtp", g.votes.turnout, g.votes.region_votes.astype(float)) for g in groups],
+        axis=0,
+    )
+    country /= country.sum(axis=-1, keepdims=True)
+    shifted = replace(
+        prepared,
+        groups=tuple(replace(g, votes=replace(g.votes, country=country)) for g in groups),
+    )
+    counted = _count_chamber(shifted, contest=contest, days=[contest.last_polling_day] * factor.shape[0])
+    dims = (DRAW, SHIFT, PARTY)
+    return xr.Dataset(
+        {"seats": (dims, counted.seats), "votes": (dims, country)}, coords={PARTY: list(prepared.parties)}
+    )
 
 
-def _support_of_seat_regions(draws: xr.Dataset, baseline: xr.Dataset) -> npt.NDArray[np.float32]:
-    """Support by date, polling day last, for the regions that have seats: (draw, date, region, party)."""
-    regions = baseline["seat_region"].to_numpy()[region_starts(baseline)[:-1]]
-    missing = sorted(set(regions) - set(draws[REGION].values.tolist()))
-    if missing:
-        raise ValueError(f"The last result has seats in regions without support: {', '.join(missing)}.")
-    if set(baseline[PARTY].values.tolist()) != set(draws[PARTY].values.tolist()):
-        raise ValueError("The parties of the draws are not those of the contest.")
-    wanted = {REGION: regions, PARTY: baseline[PARTY].to_numpy()}
-    by_date = draws["support"].sel(wanted).transpose(CHAIN, DRAW, DATE, REGION, PARTY).to_numpy()
-    last = draws["support_polling_day"].sel(wanted).transpose(CHAIN, DRAW, REGION, PARTY).to_numpy()
-    both = np.concatenate([by_date, last[:, :, None]], axis=2)
-    support = both.reshape(-1, *both.shape[2:])
-    absent = np.isneginf(baseline["log_share"].to_numpy()[region_starts(baseline)[:-1]])
-    if (support.max(axis=(0, 1)) > 0)[absent].any():
-        raise ValueError("The draws give support to a party in a region where it does not stand.")
-    return support
+def _shift_group(
+    group: PreparedGroup, factor: npt.NDArray[np.float32], *, weight: FloatArray, every: int
+) -> PreparedGroup:
+    """A group's polling day under every shift, shifts in the place of dates."""
+    votes = group.votes
+    rows, terms = votes.rows, group.terms
+    if rows is not None:
+        rows = replace(
+            rows,
+            strength=rows.strength[::every],
+            multiplier=np.ascontiguousarray(rows.multiplier[::every, -1:] * factor[None, :, None]),
+            lot=rows.lot[::every],
+        )
+        regional = mean_shares(rows, weight=weight[group.seats])
+    else:
+        regional = votes.region_votes[::every, -1:] * factor[None, :, None]
+        regional /= regional.sum(axis=-1, keepdims=True)
+    if terms.transfers is not None:
+        terms = replace(terms, transfers=terms.transfers[::every])
+    return replace(
+        group,
+        terms=terms,
+        votes=replace(
+            votes,
+            rows=rows,
+            region_votes=regional,
+            turnout=votes.turnout[::every],
+            list_lot=votes.list_lot[::every],
+        ),
+    )
 
 
-def _with_region_deviation(
-    support: npt.NDArray[np.float32], deviation: npt.NDArray[np.float64]
-) -> npt.NDArray[np.float32]:
-    """Support after the noise of the region's own seats: (draw, date, region, party)."""
-    moved = support * np.exp(deviation)[:, None].astype(np.float32)
-    moved /= moved.sum(axis=-1, keepdims=True)
-    return moved
+def _count_chamber(prepared: PreparedSeats, *, contest: Contest, days: Sequence[date]) -> _Chamber:
+    """Count every group on every day; the last day is polling day."""
+    groups = [_count_group(group, prepared.parties, contest=contest, days=days) for group in prepared.groups]
+    seats = np.sum([g.seats for g in groups], axis=0, dtype=np.int16)
+    ties: IntArray = np.sum([g.ties for g in groups], axis=0)
+    return _Chamber(seats=seats, ties=ties, last=tuple(groups))
+
+
+def _count_group(
+    group: PreparedGroup, parties: tuple[str, ...], *, contest: Contest, days: Sequence[date]
+) -> SeatsCounted:
+    """Count a group, day by day with the joint lists of that day; days with the same lists at once."""
+    rule = COUNTING_RULES[group.terms.terms.rule]
+    lists = [_joint_lists(contest, parties, day) for day in days]
+    parts = []
+    for joint in dict.fromkeys(lists):
+        places = np.array([i for i, here in enumerate(lists) if here == joint], dtype=np.int64)
+        votes = group.votes if len(places) == len(days) else group.votes.on_dates(places)
+        parts.append((places, rule(votes, replace(group.terms, joint_lists=joint))))
+    if len(parts) == 1:
+        return parts[0][1]
+    seats = np.empty((*group.votes.country.shape[:2], len(parties)), dtype=np.int16)
+    for places, counted in parts:
+        seats[:, places] = counted.seats
+    with_polling_day = next(counted for places, counted in parts if len(days) - 1 in places)
+    ties: IntArray = np.sum([counted.ties for _, counted in parts], axis=0)
+    return replace(with_polling_day, seats=seats, ties=ties)
+
+
+def _joint_lists(contest: Contest, parties: tuple[str, ...], day: date) -> tuple[tuple[int, ...], ...]:
+    return tuple(
+        tuple(parties.index(member) for member in alliance.members)
+        for alliance in contest.alliances
+        if alliance.joint_list and alliance.active_on(day)
+    )
+
+
+def _rows_of(prepared: PreparedSeats, counted: _Chamber, *, shape: tuple[int, int]) -> xr.Dataset:
+    """What is known seat by seat on polling day."""
+    baseline = prepared.baseline
+    if baseline is None:
+        raise ValueError("Nothing is counted in rows.")
+    n_seats, n_parties = baseline.sizes[SEAT], baseline.sizes[PARTY]
+    won = np.zeros((shape[0] * shape[1], n_seats, n_parties), dtype=np.int8)
+    share = np.zeros(won.shape, dtype=np.float32)
+    for group, count in zip(prepared.groups, counted.last, strict=True):
+        if group.votes.rows is not None and count.won is not None:
+            won[:, group.seats] = count.won
+            share[:, group.seats] = group.votes.rows.polling_day_shares.transpose(0, 2, 1)
+    by_draw = (CHAIN, DRAW, SEAT, PARTY)
+    return xr.Dataset(
+        {
+            "won": (by_draw, won.reshape(*shape, n_seats, n_parties)),
+            "seat_votes": (by_draw, share.reshape(*shape, n_seats, n_parties)),
+            "seat_chance": ((SEAT, PARTY), (won > 0).mean(axis=0)),
+            "seat_expected": ((SEAT, PARTY), won.mean(axis=0, dtype=np.float64)),
+            "seat_share": ((SEAT, PARTY), share.mean(axis=0, dtype=np.float64)),
+            "last_share": baseline["last_share"],
+        },
+        coords={name: baseline[name] for name in ("seat_name", "seat_region", "seat_magnitude")},
+    )

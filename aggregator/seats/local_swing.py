@@ -19,31 +19,12 @@ import numpy as np
 import numpy.typing as npt
 import xarray as xr
 
+from aggregator.seats.local_noise import NO_CLUSTER, LocalNoise, LocalPriors, learn_local_noise
 from models.dimensions import PARTY, SEAT
 
 Float32Array = npt.NDArray[np.float32]
 FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]
-
-
-@dataclass(frozen=True)
-class LocalPriors:
-    """Scales of the local swing, in log share.
-
-    Attributes
-    ----------
-    slope_sd
-        Standard deviation, over draws, of a party's slope on its last log share.
-    noise_sd_median, noise_sd_log_sd
-        Log-normal prior of a party's noise: median of its standard deviation and sd of the log.
-    noise_degrees_of_freedom
-        Degrees of freedom of the Student t noise; above 2, so that it has a standard deviation.
-    """
-
-    slope_sd: float = 0.12
-    noise_sd_median: float = 0.15
-    noise_sd_log_sd: float = 0.5
-    noise_degrees_of_freedom: float = 5.0
 
 
 @dataclass(frozen=True)
@@ -65,7 +46,12 @@ class LocalStrength:
 
 
 def draw_local_strength(
-    baseline: xr.Dataset, *, draws: int, rng: np.random.Generator, priors: LocalPriors | None = None
+    baseline: xr.Dataset,
+    *,
+    draws: int,
+    rng: np.random.Generator,
+    priors: LocalPriors | None = None,
+    noise: LocalNoise | None = None,
 ) -> LocalStrength:
     r"""Draw how far each seat strays from its region.
 
@@ -75,7 +61,8 @@ def draw_local_strength(
 
     with b the last log share, the slope :math:`\beta_p \sim N(0, 0.12^2)`, noise :math:`\epsilon` of a
     Student t distribution whose *standard deviation* is the party's drawn one, and u the extra spread where
-    a party has no last votes.
+    a party has no last votes. Seats of one cluster share a part of the noise's variance, normal; a cluster
+    that is a whole region shares none, since the region's own move is that already.
 
     Re-centring takes the mean of the noise out of a region, and would leave a region of one seat without
     any. So that mean, over the party's votes in the region, is returned beside the strength, to be added to
@@ -92,6 +79,8 @@ def draw_local_strength(
         Source of randomness; parties are drawn in the baseline's order.
     priors
         Scales of slope and noise.
+    noise
+        What was learned of the noise; the prior where None.
 
     Returns
     -------
@@ -99,6 +88,8 @@ def draw_local_strength(
         ``strength`` (draw, party, seat) and ``region_deviation`` (draw, region, party).
     """
     priors = priors or LocalPriors()
+    noise = noise or learn_local_noise(baseline, before_last=None, priors=priors)
+    cluster = _clusters(baseline)
     log_share = baseline["log_share"].transpose(PARTY, SEAT).to_numpy()
     unseen_sd = baseline["unseen_sd"].transpose(PARTY, SEAT).to_numpy()
     weight = baseline["weight"].to_numpy()
@@ -116,13 +107,16 @@ def draw_local_strength(
         votes /= np.repeat(np.add.reduceat(votes, start), seats_of_region)
 
         slope = priors.slope_sd * rng.standard_normal(draws, dtype=np.float32)
-        noise = _draw_noise(rng, draws=draws, seats=n_seats, priors=priors)
-        deviation[:, :, party] = np.add.reduceat(noise * votes.astype(np.float32), start, axis=1)
-        noise += base.astype(np.float32)
-        noise += slope[:, None] * centred.astype(np.float32)
+        sd = np.exp(noise.log_sd[party] + noise.log_sd_sd[party] * rng.standard_normal(draws))
+        stray = _draw_noise(rng, sd=sd, seats=n_seats, degrees=priors.noise_degrees_of_freedom)
+        if cluster.max(initial=-1) >= 0:
+            _share_noise(stray, sd=sd, cluster=cluster, part=noise.cluster_part, rng=rng)
+        deviation[:, :, party] = np.add.reduceat(stray * votes.astype(np.float32), start, axis=1)
+        stray += base.astype(np.float32)
+        stray += slope[:, None] * centred.astype(np.float32)
         unseen = np.flatnonzero(unseen_sd[party])
-        noise[:, unseen] += unseen_sd[party, unseen] * rng.standard_normal((draws, unseen.size))
-        strength[:, party] = np.where(stands, np.exp(noise), np.float32(0.0))
+        stray[:, unseen] += unseen_sd[party, unseen] * rng.standard_normal((draws, unseen.size))
+        strength[:, party] = np.where(stands, np.exp(stray), np.float32(0.0))
     return LocalStrength(strength=strength, region_deviation=deviation)
 
 
@@ -132,13 +126,33 @@ def region_starts(baseline: xr.Dataset) -> IntArray:
     return np.append(np.flatnonzero(np.append(True, region[1:] != region[:-1])), region.size)
 
 
-def _draw_noise(rng: np.random.Generator, *, draws: int, seats: int, priors: LocalPriors) -> Float32Array:
+def _clusters(baseline: xr.Dataset) -> IntArray:
+    """Number of each seat's cluster, counted over regions; -1 where the seat shares its noise with none."""
+    region = baseline["seat_region"].to_numpy()
+    names = baseline["seat_cluster"].to_numpy()
+    keys = np.char.add(np.char.add(region.astype(str), "\n"), names.astype(str))
+    _, number, size = np.unique(keys, return_inverse=True, return_counts=True)
+    seats_of_region = np.array([(region == r).sum() for r in region])
+    alone = (names == NO_CLUSTER) | (size[number] == seats_of_region)
+    return np.where(alone, -1, number)
+
+
+def _draw_noise(rng: np.random.Generator, *, sd: FloatArray, seats: int, degrees: float) -> Float32Array:
     """One party's noise (draw, seat): Student t, scaled to the standard deviation drawn for each draw."""
-    degrees = priors.noise_degrees_of_freedom
-    sd = priors.noise_sd_median * np.exp(priors.noise_sd_log_sd * rng.standard_normal(draws))
-    noise = rng.standard_normal((draws, seats), dtype=np.float32)
+    noise = rng.standard_normal((sd.size, seats), dtype=np.float32)
     # z / sqrt(chi2 / degrees) has variance degrees / (degrees - 2); chi2 is twice a gamma variate.
-    half_chi2 = rng.standard_gamma(degrees / 2, (draws, seats), dtype=np.float32)
+    half_chi2 = rng.standard_gamma(degrees / 2, (sd.size, seats), dtype=np.float32)
     noise *= np.sqrt(np.float32((degrees - 2) / 2) / half_chi2)
     noise *= sd[:, None].astype(np.float32)
     return noise
+
+
+def _share_noise(
+    noise: Float32Array, *, sd: FloatArray, cluster: IntArray, part: float, rng: np.random.Generator
+) -> None:
+    """Put a part of the noise of each clustered seat in common, in place; its variance stays."""
+    common = rng.standard_normal((sd.size, int(cluster.max()) + 1), dtype=np.float32)
+    common *= (np.sqrt(part) * sd[:, None]).astype(np.float32)
+    together = np.flatnonzero(cluster >= 0)
+    noise[:, together] *= np.float32(np.sqrt(1 - part))
+    noise[:, together] += common[:, cluster[together]]

@@ -10,26 +10,25 @@ from __future__ import annotations
 import numpy as np
 from numba import njit, prange
 
-from aggregator.seats.rules import SeatsCounted, SeatVotes
+from aggregator.seats.rules import GroupTerms, GroupVotes, SeatsCounted, SeatVotes
 
 
-def count_by_plurality(votes: SeatVotes) -> SeatsCounted:
-    """Count the seats each party wins, draw by draw.
+def count_by_plurality(votes: GroupVotes, terms: GroupTerms) -> SeatsCounted:
+    """Count the seats each party wins, draw by draw; every seat has at least one party standing."""
+    return count_firsts(votes.in_rows)
+
+
+def count_firsts(votes: SeatVotes) -> SeatsCounted:
+    """Count the seats in which each party has most votes, draw by draw and date by date.
 
     Parameters
     ----------
     votes
         Votes in every seat; every seat has at least one party standing.
-
-    Returns
-    -------
-    SeatsCounted
-        Seats per draw, date and party, and the chance of each seat on the last date.
     """
-    seats = _count(votes.strength, votes.multiplier, votes.region_start, votes.lot)
-    winner = _winners(votes.strength, votes.multiplier[:, -1], votes.region_start, votes.lot)
-    chance = np.stack([(winner == party).mean(axis=0) for party in range(votes.strength.shape[1])], axis=1)
-    return SeatsCounted(seats=seats, chance=chance)
+    seats, ties = _count(votes.strength, votes.multiplier, votes.region_start, votes.lot)
+    won = _winners(votes.strength, votes.multiplier[:, -1], votes.region_start, votes.lot)
+    return SeatsCounted(seats=seats, won=won, from_lists=None, ties=ties)
 
 
 # Each draw is one thread's work from start to end: the number of threads changes nothing. Party after party
@@ -39,6 +38,7 @@ def _count(strength, multiplier, region_start, lot):  # type: ignore[no-untyped-
     n_draws, n_parties, _ = strength.shape
     n_dates, n_regions = multiplier.shape[1], multiplier.shape[2]
     seats = np.zeros((n_draws, n_dates, n_parties), dtype=np.int16)
+    ties = np.zeros(n_draws, dtype=np.int64)
     for draw in prange(n_draws):
         won = np.empty(n_parties, dtype=np.int32)
         for region in range(n_regions):
@@ -51,10 +51,12 @@ def _count(strength, multiplier, region_start, lot):  # type: ignore[no-untyped-
                 if won.sum() > most.size:
                     won[:] = 0
                     for seat in range(most.size):
-                        won[_winner(here[:, seat], factor, lot[draw, first + seat])] += 1
+                        winner, tied = _winner(here[:, seat], factor, lot[draw, first + seat])
+                        won[winner] += 1
+                        ties[draw] += tied > 1
                 for party in range(n_parties):
                     seats[draw, date, party] += won[party]
-    return seats
+    return seats, ties
 
 
 @njit(cache=True)
@@ -76,20 +78,21 @@ def _count_firsts(strength, factor, most, won):  # type: ignore[no-untyped-def]
 
 @njit(parallel=True, cache=True)
 def _winners(strength, multiplier, region_start, lot):  # type: ignore[no-untyped-def]
-    """Index of the winning party: dims (draw, seat)."""
-    n_draws, _, n_seats = strength.shape
-    winner = np.empty((n_draws, n_seats), dtype=np.int16)
+    """Whether each party wins each seat, 0 or 1: dims (draw, seat, party)."""
+    n_draws, n_parties, n_seats = strength.shape
+    won = np.zeros((n_draws, n_seats, n_parties), dtype=np.int8)
     for draw in prange(n_draws):
         for region in range(multiplier.shape[1]):
             factor = multiplier[draw, region]
             for seat in range(region_start[region], region_start[region + 1]):
-                winner[draw, seat] = _winner(strength[draw, :, seat], factor, lot[draw, seat])
-    return winner
+                winner, _ = _winner(strength[draw, :, seat], factor, lot[draw, seat])
+                won[draw, seat, winner] = 1
+    return won
 
 
 @njit(cache=True)
 def _winner(strength, factor, lot):  # type: ignore[no-untyped-def]
-    """Index of the party with most votes in one seat; of several, the one the lot points at."""
+    """Party with most votes in one seat, of several the one the lot points at, and how many had most."""
     most = np.float32(-1)
     tied = 0
     for party in range(factor.size):
@@ -102,6 +105,6 @@ def _winner(strength, factor, lot):  # type: ignore[no-untyped-def]
     for party in range(factor.size):
         if strength[party] * factor[party] == most:
             if chosen == 0:
-                return party
+                return party, tied
             chosen -= 1
-    return 0
+    return 0, tied

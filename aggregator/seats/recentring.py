@@ -19,8 +19,7 @@ import numpy as np
 import numpy.typing as npt
 from numba import njit, prange
 
-Float32Array = npt.NDArray[np.float32]
-IntArray = npt.NDArray[np.int64]
+from aggregator.seats.rules import Float32Array, IntArray, SeatVotes
 
 # Largest accepted gap between a region's mean and its support: a fiftieth of the last published digit.
 TOLERANCE = 2e-5
@@ -86,6 +85,43 @@ def solve_multipliers(
         max_steps,
     )
     return Recentred(multiplier=multiplier, largest_gap=float(gap.max(initial=0.0)))
+
+
+def mean_shares(rows: SeatVotes, *, weight: npt.NDArray[np.float64]) -> Float32Array:
+    """Mean share of each party over the seats of each region: dims (draw, date, region, party).
+
+    Parameters
+    ----------
+    rows
+        Votes by seat.
+    weight
+        dims (seat): each seat's part of its region's votes.
+    """
+    means: Float32Array = _mean(
+        rows.strength,
+        np.ascontiguousarray(rows.multiplier),
+        np.ascontiguousarray(weight, dtype=np.float32),
+        rows.region_start,
+    )
+    return means
+
+
+@njit(parallel=True, cache=True, fastmath={"reassoc", "contract", "nsz", "arcp"})
+def _mean(strength, multiplier, weight, region_start):  # type: ignore[no-untyped-def]
+    means = np.empty(multiplier.shape, dtype=np.float32)
+    for draw in prange(multiplier.shape[0]):
+        for region in range(multiplier.shape[2]):
+            first, last = region_start[region], region_start[region + 1]
+            each = np.empty(last - first, dtype=np.float32)
+            for date in range(multiplier.shape[1]):
+                _region_mean(
+                    strength[draw, :, first:last],
+                    multiplier[draw, date, region],
+                    weight[first:last],
+                    each,
+                    means[draw, date, region],
+                )
+    return means
 
 
 # Sums may be reordered (the machine adds several seats at a time); NaN and infinity keep their meaning.

@@ -9,11 +9,10 @@ import xarray as xr
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from aggregator.errors import UsageError
-from aggregator.inputs.contest import Contest, Counting, CountingRule
+from aggregator.inputs.contest import Contest
 from aggregator.seats.baseline import BaselinePriors
 from aggregator.seats.counting import count_seats
-from aggregator.seats.local_swing import LocalPriors
+from aggregator.seats.local_noise import LocalPriors
 from tests.made_up_draws import made_up_contest, made_up_draws, made_up_last_result
 
 STILL = LocalPriors(slope_sd=0.0, noise_sd_median=1e-9)
@@ -154,12 +153,6 @@ def test_last_result_without_noise_or_swing_returns_the_seats_won_then() -> None
 def test_same_seed_gives_the_same_seats() -> None:
     draws = made_up_draws(draws=30)
     xr.testing.assert_identical(count(draws, seed=9), count(draws, seed=9))
-
-
-def test_counting_rule_that_is_not_available_is_named() -> None:
-    contest = made_up_contest().model_copy(update={"counting": Counting(rule=CountingRule.TWO_ROUND)})
-    with pytest.raises(UsageError, match="two_round is not available; available: plurality"):
-        count(made_up_draws(draws=2), contest=contest)
 
 
 def test_seats_in_a_region_without_support_are_refused() -> None:

@@ -7,7 +7,8 @@ import pytest
 import xarray as xr
 
 from aggregator.seats.baseline import BaselinePriors, build_baseline
-from aggregator.seats.local_swing import LocalPriors, draw_local_strength
+from aggregator.seats.local_noise import LocalPriors
+from aggregator.seats.local_swing import draw_local_strength
 from tests.made_up_draws import made_up_contest, made_up_last_result
 
 

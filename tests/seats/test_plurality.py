@@ -6,7 +6,7 @@ import numba
 import numpy as np
 import pytest
 
-from aggregator.seats.plurality import count_by_plurality
+from aggregator.seats.plurality import count_firsts
 from aggregator.seats.recentring import solve_multipliers
 from aggregator.seats.rules import SeatVotes
 from tests.seats.reference_count import reference_count, reference_votes
@@ -42,26 +42,29 @@ def tied_votes(*, draws: int, seats: int, parties: int = 3) -> SeatVotes:
 def test_seats_equal_those_of_a_plain_numpy_count(seed: int) -> None:
     votes = seat_votes(seed, draws=20)
     expected = reference_count(reference_votes(votes.strength, votes.multiplier, votes.region_start))
-    np.testing.assert_array_equal(count_by_plurality(votes).seats, expected)
+    np.testing.assert_array_equal(count_firsts(votes).seats, expected)
 
 
-def test_seat_chances_add_up_to_the_mean_of_counted_seats() -> None:
-    counted = count_by_plurality(seat_votes(2, draws=50))
-    np.testing.assert_allclose(counted.chance.sum(axis=0), counted.seats[:, -1].mean(axis=0), atol=1e-9)
-    np.testing.assert_allclose(counted.chance.sum(axis=1), 1, atol=1e-12)
+def test_winners_of_seats_add_up_to_the_counted_seats() -> None:
+    counted = count_firsts(seat_votes(2, draws=50))
+    np.testing.assert_array_equal(counted.won.sum(axis=1), counted.seats[:, -1])
+    assert (counted.won.sum(axis=2) == 1).all()
 
 
 def test_an_exact_tie_is_decided_by_lot_with_equal_chances() -> None:
-    counted = count_by_plurality(tied_votes(draws=2000, seats=5))
+    counted = count_firsts(tied_votes(draws=2000, seats=5))
     assert (counted.seats.sum(axis=-1) == 5).all()
     # Binomial standard error of a half over 2,000 draws is .011; four of them.
-    np.testing.assert_allclose(counted.chance[:, :2], 0.5, atol=0.045)
-    assert (counted.chance[:, 2] == 0).all()
+    chance = counted.won.mean(axis=0)
+    np.testing.assert_allclose(chance[:, :2], 0.5, atol=0.045)
+    assert (chance[:, 2] == 0).all()
+    # Every seat on each of the two dates was decided by lot, and is said to be.
+    assert (counted.ties == 2 * 5).all()
     np.testing.assert_array_equal(counted.seats[:, 0], counted.seats[:, 1])
 
 
 def test_ties_of_different_seats_are_decided_apart() -> None:
-    seats = count_by_plurality(tied_votes(draws=4000, seats=4)).seats[:, -1, 0]
+    seats = count_firsts(tied_votes(draws=4000, seats=4)).seats[:, -1, 0]
     # Four fair lots: variance 1; one lot for all four would give 4.
     assert abs(seats.var() - 1) < 0.15
 
@@ -69,14 +72,14 @@ def test_ties_of_different_seats_are_decided_apart() -> None:
 def test_number_of_threads_changes_nothing() -> None:
     votes = seat_votes(4, draws=40)
     before = numba.get_num_threads()
-    several = count_by_plurality(votes)
+    several = count_firsts(votes)
     try:
         numba.set_num_threads(1)
-        one = count_by_plurality(votes)
+        one = count_firsts(votes)
         chamber = random_chamber(4, draws=40)
         alone = solve_multipliers(**chamber).multiplier
     finally:
         numba.set_num_threads(before)
     np.testing.assert_array_equal(one.seats, several.seats)
-    np.testing.assert_array_equal(one.chance, several.chance)
+    np.testing.assert_array_equal(one.won, several.won)
     np.testing.assert_array_equal(alone, votes.multiplier)

@@ -7,7 +7,8 @@ import pytest
 
 from aggregator.seats.baseline import BaselinePriors, build_baseline
 from aggregator.seats.counting import count_seats
-from aggregator.seats.local_swing import LocalPriors, draw_local_strength, region_starts
+from aggregator.seats.local_noise import LocalPriors
+from aggregator.seats.local_swing import draw_local_strength, region_starts
 from aggregator.seats.recentring import solve_multipliers
 from tests.made_up_draws import made_up_contest, made_up_draws, made_up_last_result
 
