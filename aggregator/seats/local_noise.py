@@ -154,33 +154,23 @@ def stray_between(baseline: xr.Dataset, before_last: pd.DataFrame) -> pd.DataFra
     )
     share = votes.div(votes.sum(axis=1), axis=0).reindex(baseline[SEAT].to_numpy()).to_numpy(dtype=float)
     old, new = _log_share(share), _log_share(baseline["last_share"].transpose(SEAT, PARTY).to_numpy())
-    moved = new - old
-    weight = np.where(np.isnan(moved), 0.0, _mean_share(baseline))
-    # Shares sum to one: what one party gains in a seat all others lose there. A fixed mean over the parties
-    # takes that out exactly, in place of a sum that itself varies from seat to seat.
-    moved -= (weight * np.nan_to_num(moved)).sum(axis=1, keepdims=True) / np.maximum(
-        weight.sum(axis=1, keepdims=True), np.finfo(float).tiny
-    )
     region = baseline["seat_region"].to_numpy()
-    slopes = np.nan_to_num(_less_region_mean(np.where(np.isnan(moved), np.nan, old), region))
-    frames = []
-    for place, party in enumerate(parties):
-        seen = ~np.isnan(moved[:, place])
-        size = pd.Series(region[seen]).value_counts()
-        seen &= np.isin(region, size.index[size >= 2].to_numpy(dtype=region.dtype))
-        if not seen.any():
-            continue
-        frames.append(
-            pd.DataFrame(
-                {
-                    "party": party,
-                    "seat": baseline[SEAT].to_numpy()[seen],
-                    "region": region[seen],
-                    "cluster": baseline["seat_cluster"].to_numpy()[seen],
-                    "stray": _residual(moved[seen, place], slopes[seen], region[seen]),
-                }
-            )
+    moved = _centre(new - old, region, weight=_mean_share(baseline))
+    slopes = _shared_slopes(moved, np.where(np.isnan(moved), np.nan, old), region, _mean_share(baseline))
+    taken = _degrees_taken(moved, region)
+    frames = [
+        pd.DataFrame(
+            {
+                "party": party,
+                "seat": baseline[SEAT].to_numpy()[seen],
+                "region": region[seen],
+                "cluster": baseline["seat_cluster"].to_numpy()[seen],
+                "stray": (moved - slopes)[seen, place] * np.sqrt(seen.sum() / (seen.sum() - taken[place])),
+            }
         )
+        for place, party in enumerate(parties)
+        if (seen := ~np.isnan(moved[:, place])).sum() > taken[place]
+    ]
     columns = ["party", "seat", "region", "cluster", "stray"]
     return pd.concat(frames, ignore_index=True) if frames else pd.DataFrame(columns=columns)
 
@@ -196,20 +186,43 @@ def _mean_share(baseline: xr.Dataset) -> FloatArray:
     return mean / mean.sum()
 
 
-def _less_region_mean(values: FloatArray, region: npt.NDArray[np.str_]) -> FloatArray:
-    frame = pd.DataFrame(values)
-    centred: FloatArray = (frame - frame.groupby(region).transform("mean")).to_numpy()
-    return centred
+def _centre(values: FloatArray, region: npt.NDArray[np.str_], *, weight: FloatArray) -> FloatArray:
+    """Less each seat's weighted mean over parties, then less each region's mean by party; NaN stays.
+
+    Shares sum to one: what one party gains in a seat all others lose there. A fixed mean over the parties
+    takes that out exactly, in place of a sum that itself varies from seat to seat. A party's only seat in a
+    region says nothing, and becomes NaN.
+    """
+    there = np.where(np.isnan(values), 0.0, weight)
+    total = np.maximum(there.sum(axis=1, keepdims=True), np.finfo(float).tiny)
+    frame = pd.DataFrame(values - (there * np.nan_to_num(values)).sum(axis=1, keepdims=True) / total)
+    groups = frame.groupby(region)
+    return (frame - groups.transform("mean")).where(groups.transform("count") > 1).to_numpy(dtype=float)
 
 
-def _residual(moved: FloatArray, slopes: FloatArray, region: npt.NDArray[np.str_]) -> FloatArray:
-    """What regions and slopes leave of a move, scaled up by the degrees of freedom they took."""
-    move = _less_region_mean(moved[:, None], region)[:, 0]
-    regressors = _less_region_mean(slopes, region)
-    coefficients, _, rank, _ = np.linalg.lstsq(regressors, move, rcond=1e-9)
-    left = max(len(moved) - len(np.unique(region)) - int(rank), 1)
-    residual: FloatArray = (move - regressors @ coefficients) * np.sqrt(len(moved) / left)
-    return residual
+def _shared_slopes(
+    moved: FloatArray, old: FloatArray, region: npt.NDArray[np.str_], weight: FloatArray
+) -> FloatArray:
+    """What the slopes of all parties explain of the moves, dims (seat, party), by least squares.
+
+    One slope by party, on its own old log share; through the mean over parties it reaches the others' moves.
+    """
+    seen = ~np.isnan(moved)
+    columns = []
+    for place in range(old.shape[1]):
+        alone = np.where(np.arange(old.shape[1]) == place, old, 0.0)
+        columns.append(np.nan_to_num(_centre(np.where(seen, alone, np.nan), region, weight=weight))[seen])
+    design = np.stack(columns, axis=1)
+    slopes, *_ = np.linalg.lstsq(design, moved[seen], rcond=1e-9)
+    explained = np.zeros_like(moved)
+    explained[seen] = design @ slopes
+    return explained
+
+
+def _degrees_taken(moved: FloatArray, region: npt.NDArray[np.str_]) -> npt.NDArray[np.int64]:
+    """Degrees of freedom that region means and a slope took from each party."""
+    regions = pd.DataFrame(~np.isnan(moved)).groupby(region).any().sum().to_numpy(dtype=np.int64)
+    return regions + 1
 
 
 def _spread(stray: FloatArray, *, degrees: float) -> tuple[float, float]:
