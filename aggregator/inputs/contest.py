@@ -61,6 +61,12 @@ class Alliance(ContestTable):
         """Tell whether the alliance exists on a day (both ends included)."""
         return (self.from_ is None or self.from_ <= day) and (self.until is None or day <= self.until)
 
+    def meets(self, other: Alliance) -> bool:
+        """Tell whether two alliances exist on some day together."""
+        starts = [d for d in (self.from_, other.from_) if d is not None]
+        ends = [d for d in (self.until, other.until) if d is not None]
+        return not starts or not ends or max(starts) <= min(ends)
+
 
 class Region(ContestTable):
     """A part of the country with its own support; ``electorate`` weighs it where no last result does.

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from datetime import date, timedelta
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
-from aggregator.inputs.close_spelling import did_you_mean
 from aggregator.inputs.contest import OTHERS, WHOLE_COUNTRY, Contest
 from aggregator.inputs.contest_file import CONTEST_FILE
+from aggregator.inputs.contest_references import check_references
+from aggregator.inputs.counting_keys import check_counting
 from aggregator.inputs.reading_rules import Rule
 from aggregator.inputs.register_columns import REGISTER_COLUMNS, RESULT_COLUMNS
 from aggregator.problems import Problem, Severity
@@ -31,6 +32,7 @@ def check_contest(contest: Contest) -> list[Problem]:
         *_check_counts(contest),
         *_check_jolts(contest),
         *_check_silence(contest),
+        *check_counting(contest),
     ]
 
 
@@ -80,28 +82,12 @@ def _check_codes(contest: Contest) -> Iterator[Problem]:
                 )  # fmt: skip
 
 
-def _check_references(
-    key: str, codes: Sequence[str], *, known: Sequence[str], what: str
-) -> Iterator[Problem]:
-    for i, code in enumerate(codes, start=1):
-        place = f"{key}[{i}]"
-        if code not in known:
-            yield _problem(
-                place, f'"{code}"', f"the code of a {what} of this contest",
-                did_you_mean(code, known) or f"Add the {what} first, or delete the list.", Rule.CODE_UNKNOWN,
-            )  # fmt: skip
-        elif code in codes[: i - 1]:
-            yield _problem(
-                place, f'"{code}" a second time', "each code once", "Delete one of the two.", Rule.MEMBERS
-            )
-
-
 def _check_parties(contest: Contest) -> Iterator[Problem]:
     regions = [r.code for r in contest.regions]
     taken: dict[str, float] = {}
     for i, party in enumerate(contest.parties, start=1):
         if party.regions is not None:
-            yield from _check_references(f"party[{i}].regions", party.regions, known=regions, what="region")
+            yield from check_references(f"party[{i}].regions", party.regions, known=regions, what="region")
         for donor, part in party.inherits.items():
             key = f"party[{i}].inherits.{donor}"
             taken[donor] = taken.get(donor, 0.0) + part
@@ -133,7 +119,7 @@ def _check_alliances(contest: Contest) -> Iterator[Problem]:
     parties = [p.code for p in contest.parties]
     for i, alliance in enumerate(contest.alliances, start=1):
         key = f"alliance[{i}]"
-        yield from _check_references(f"{key}.members", alliance.members, known=parties, what="party")
+        yield from check_references(f"{key}.members", alliance.members, known=parties, what="party")
         if len(set(alliance.members)) < 2:
             yield _problem(
                 f"{key}.members", f"{len(alliance.members)} member(s)", "two members or more",
@@ -143,9 +129,7 @@ def _check_alliances(contest: Contest) -> Iterator[Problem]:
             yield _backwards(key, alliance.from_, alliance.until)
         for j, other in enumerate(contest.alliances[: i - 1], start=1):
             both = [m for m in alliance.members if m in other.members]
-            starts = [d for d in (alliance.from_, other.from_) if d is not None]
-            ends = [d for d in (alliance.until, other.until) if d is not None]
-            if both and (not starts or not ends or max(starts) <= min(ends)):
+            if both and alliance.meets(other):
                 yield _problem(
                     f"{key}.members", f"{', '.join(both)} also in alliance[{j}] ({other.code}) at that time",
                     "a party in one alliance at a time",
@@ -247,7 +231,7 @@ def _check_silence(contest: Contest) -> Iterator[Problem]:
         key = f"release.silence[{i}]"
         if silence.from_ > silence.until:
             yield _backwards(key, silence.from_, silence.until)
-        yield from _check_references(f"{key}.regions", silence.regions or (), known=regions, what="region")
+        yield from check_references(f"{key}.regions", silence.regions or (), known=regions, what="region")
         try:
             ZoneInfo(silence.time_zone)
         except (ZoneInfoNotFoundError, ValueError):

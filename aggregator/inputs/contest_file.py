@@ -140,9 +140,13 @@ def _shown(value: Any) -> str:
 def _rough_contest(raw: dict[str, Any], details: list[Any]) -> Contest | None:
     """Build the contest without what is wrong in it, for checking codes in the other files."""
     dropped: list[tuple[list[Any], int]] = []
+    broken_tables: set[int] = set()
     try:
         for detail in details:
             *parents, key = detail["loc"]
+            if parents[:2] == ["counting", "where"]:
+                broken_tables.add(parents[2] if len(parents) > 2 else key)
+                continue
             holder: Any = raw
             for part in parents:
                 holder = holder[part]
@@ -154,6 +158,8 @@ def _rough_contest(raw: dict[str, Any], details: list[Any]) -> Contest | None:
                 holder[key] = _STAND_IN[key]
             else:
                 holder.pop(key, None)
+        if broken_tables:
+            dropped += [(raw["counting"]["where"], place) for place in broken_tables]
         for listed, place in sorted(dropped, key=lambda d: -d[1]):
             del listed[place]
         return Contest.model_validate(raw)

@@ -28,7 +28,12 @@ from aggregator.inputs.reading_rules import Rule
 from aggregator.inputs.register_doubts import check_doubts
 from aggregator.inputs.register_file import Register, read_all_shares, read_register
 from aggregator.inputs.register_frames import build_polls, build_unused
-from aggregator.inputs.result_files import read_counted_file, read_last_result_file, read_record_file
+from aggregator.inputs.result_files import (
+    read_before_last_file,
+    read_counted_file,
+    read_last_result_file,
+    read_record_file,
+)
 from aggregator.inputs.run_day import RunDay, check_future, choose_run_day
 from aggregator.inputs.tracking_windows import (
     check_asked_there_too,
@@ -36,6 +41,7 @@ from aggregator.inputs.tracking_windows import (
     check_windows,
     regions_by_poll,
 )
+from aggregator.inputs.transfers_file import read_transfers_file
 from aggregator.inputs.voting_phases import check_phases
 from aggregator.problems import Problem, Severity
 
@@ -43,7 +49,6 @@ from aggregator.problems import Problem, Severity
 UNREAD_FILES = (
     "candidates.csv",
     "local_judgements.csv",
-    "result_before_last.csv",
 )
 
 
@@ -57,6 +62,8 @@ class _Files:
     last_result: pd.DataFrame | None
     counted_result: pd.DataFrame | None
     past_errors: pd.DataFrame | None
+    before_last: pd.DataFrame | None
+    transfers: pd.DataFrame | None
 
 
 def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date) -> DeskInputs:
@@ -97,7 +104,7 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
     contest, register, last_result = files.contest, files.register, files.last_result
     if contest is None or not files.sound or register is None:
         raise InputError(_in_order(problems, read))
-    if last_result is not None or contest.last_result is None:
+    if _can_settle(contest, last_result, problems):
         contest, more = settle_counting(contest, last_result=last_result)
         problems += more
     if not any(p.rule is Rule.POLLING_DAYS and p.severity is Severity.ERROR for p in problems):
@@ -145,6 +152,8 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
         fingerprints=tuple(_fingerprints(read)),
         counted_result=counted_as_of(files.counted_result, contest=contest, day=run_day.day),
         past_errors=past_errors_as_of(files.past_errors, day=run_day.day),
+        before_last=files.before_last,
+        transfers=files.transfers,
     )
 
 
@@ -159,8 +168,23 @@ def _read_files(folder: Path, read: dict[str, bytes]) -> tuple[_Files, list[Prob
     )
     problems += more
     past_errors, more = read_record_file(folder, contest=contest, read=read)
+    problems += more
+    before_last, more = read_before_last_file(
+        folder, contest=contest, sound=sound, last_result=last_result, read=read
+    )
+    problems += more
+    transfers, more = read_transfers_file(folder, contest=contest, sound=sound, read=read)
     problems += more + _check_unread(folder, contest)
-    return _Files(contest, sound, register, last_result, counted_result, past_errors), problems
+    return (
+        _Files(contest, sound, register, last_result, counted_result, past_errors, before_last, transfers),
+        problems,
+    )
+
+
+def _can_settle(contest: Contest, last_result: pd.DataFrame | None, problems: Iterable[Problem]) -> bool:
+    """Tell whether seats can be added up: the last result is there, and the rules have their keys."""
+    known = last_result is not None or contest.last_result is None
+    return known and not any(p.rule in (Rule.COUNTING_KEYS, Rule.COUNTING_WHERE) for p in problems)
 
 
 def _errors(problems: Iterable[Problem]) -> bool:

@@ -10,7 +10,9 @@ from aggregator.inputs.reading_rules import Rule
 from aggregator.problems import Problem, Severity
 
 # Keys of a party, alliance or region on which no code and no figure in another file rests.
-_HARMLESS_KEYS = re.compile(r"(party|alliance|region)\[\d+\]\.(name|colour|electorate|polling_day|counted)")
+_HARMLESS_KEYS = re.compile(
+    r"(party|alliance|region)\[\d+\]\.(name|colour|electorate|polling_day|counted|list_seats|joint_list)"
+)
 
 _OF_FIGURES = {
     Rule.TOO_FEW_CODES, Rule.SUM_OFF, Rule.SUM_SHORT, Rule.UNDECIDED, Rule.UNDECIDED_OUTSIDE,
@@ -20,7 +22,8 @@ _OF_FIGURES = {
 _OF_CODES = _OF_FIGURES | {
     Rule.COLUMN_UNKNOWN, Rule.ROW_REGION, Rule.COUNTED_TWICE, Rule.ALLIANCE_PERIOD, Rule.NOT_STANDING,
     Rule.INHERITS, Rule.REGION_WITHOUT_RESULT, Rule.VOTES_NOT_STANDING, Rule.PARTY_WITHOUT_VOTES,
-    Rule.COUNT_REGIONS, Rule.COUNT_PLACES, Rule.PAST_CODE,
+    Rule.COUNT_REGIONS, Rule.COUNT_PLACES, Rule.PAST_CODE, Rule.EARLIER_PLACES, Rule.TRANSFER_PAIR,
+    Rule.TRANSFER_MISSING,
 }  # fmt: skip
 
 
@@ -28,10 +31,11 @@ def without_consequences(problems: Sequence[Problem]) -> list[Problem]:
     """Leave out what cannot be known until something else is mended.
 
     Where the codes of the contest are in doubt, nothing is said about codes and shares in the other files;
-    where a column of a file is unknown, nothing about sums in that file; where a workbook has lost a value,
-    nothing about blank cells in that row.
+    where the rule of counting is, nothing about what it asks of seats; where a column of a file is unknown,
+    nothing about sums in that file; where a workbook has lost a value, nothing about blank cells in that row.
     """
     doubtful_codes = any(_is_about_codes(p) for p in problems)
+    doubtful_counting = any(_is_about_counting(p) for p in problems)
     doubtful_columns = {p.file for p in problems if p.rule is Rule.COLUMN_UNKNOWN}
     lost_values = {(p.file, p.row) for p in problems if p.rule is Rule.WORKBOOK_SHAPE}
     kept = []
@@ -39,7 +43,8 @@ def without_consequences(problems: Sequence[Problem]) -> list[Problem]:
         follows_from_codes = doubtful_codes and problem.file != CONTEST_FILE and problem.rule in _OF_CODES
         follows_from_columns = problem.file in doubtful_columns and problem.rule in _OF_FIGURES
         only_looks_blank = (problem.file, problem.row) in lost_values and problem.rule is Rule.CELL_NEEDED
-        if not (follows_from_codes or follows_from_columns or only_looks_blank):
+        follows_from_counting = doubtful_counting and _hangs_on_counting(problem)
+        if not (follows_from_codes or follows_from_counting or follows_from_columns or only_looks_blank):
             kept.append(problem)
     return kept
 
@@ -52,3 +57,16 @@ def _is_about_codes(problem: Problem) -> bool:
         and key.startswith(("party", "alliance", "region"))
         and not _HARMLESS_KEYS.fullmatch(key)
     )
+
+
+def _is_about_counting(problem: Problem) -> bool:
+    return (
+        problem.file == CONTEST_FILE
+        and problem.severity is Severity.ERROR
+        and (problem.column or "").startswith("counting")
+    )
+
+
+def _hangs_on_counting(problem: Problem) -> bool:
+    blank_seat = problem.rule is Rule.CELL_NEEDED and problem.column == "seat"
+    return problem.rule is Rule.SEVERAL_MEMBERS or blank_seat

@@ -21,7 +21,7 @@ from aggregator.inputs.result_rows import (
     read_votes,
     region_of,
 )
-from aggregator.inputs.row_members import check_members
+from aggregator.inputs.row_members import check_clusters, check_members
 from aggregator.inputs.sheet_table import SheetTable, as_text, check_columns
 from aggregator.problems import Problem, Severity
 
@@ -54,6 +54,7 @@ def read_last_result(table: SheetTable, *, contest: Contest) -> tuple[pd.DataFra
     problems += check_totals(table, rows, broken={p.row for p in problems if p.rule is not Rule.PLACE_TWICE})
     problems += check_kind(table, rows)
     problems += check_members(table, contest=contest)
+    problems += check_clusters(table, contest=contest)
     problems += _check_standing(table, rows, contest)
     if any(p.severity is Severity.ERROR for p in problems):
         return None, problems

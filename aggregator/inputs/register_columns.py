@@ -45,3 +45,6 @@ RESULT_COLUMNS = ("seat", "name", "region", "seats", "cluster")
 
 RECORD_NEEDED = ("election", "code", "polled", "result")
 RECORD_COLUMNS = (*RECORD_NEEDED, "source", "note")
+
+TRANSFER_NEEDED = ("from", "to", "rate", "sd")
+TRANSFER_COLUMNS = (*TRANSFER_NEEDED, "source", "note")

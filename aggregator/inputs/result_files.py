@@ -1,4 +1,4 @@
-"""The files of results in a folder: the last election's, counts of today, the record of polls' errors."""
+"""The files of results in a folder: of the last elections, counts of today, the record of polls' errors."""
 
 from __future__ import annotations
 
@@ -6,6 +6,7 @@ from pathlib import Path
 
 import pandas as pd
 
+from aggregator.inputs.before_last_result import read_before_last_result
 from aggregator.inputs.contest import Contest
 from aggregator.inputs.contest_file import CONTEST_FILE
 from aggregator.inputs.counted_result import check_counted_regions, read_counted_result
@@ -18,6 +19,7 @@ from aggregator.inputs.table_file import read_table
 from aggregator.problems import Problem
 
 DEFAULT_RESULT_FILE = "result_last.csv"
+BEFORE_LAST = "result_before_last"
 
 type _Found = tuple[pd.DataFrame | None, list[Problem]]
 
@@ -93,6 +95,35 @@ def read_counted_file(
     if sound and table.rows and (len(contest.regions) < 2 or "region" in table.columns):
         problems += check_counted_regions(table, contest=contest)
     return result, problems
+
+
+def read_before_last_file(
+    folder: Path,
+    *,
+    contest: Contest | None,
+    sound: bool,
+    last_result: pd.DataFrame | None,
+    read: dict[str, bytes],
+) -> _Found:
+    """Read ``result_before_last.csv`` or ``.xlsx``, the result before the last, where the desk has one."""
+    found, problems = read_text_or_workbook(folder, BEFORE_LAST, what="result before the last", read=read)
+    if found is None:
+        return None, problems
+    file, data = found
+    if sound and contest is not None and contest.last_result is None:
+        return None, [
+            Problem(
+                file, None, None, f"the file, while {CONTEST_FILE} has no [last_result]",
+                "[last_result] with the date of the election",
+                "Add it, or move the file out of the folder.", Rule.FILE_UNREAD,
+            )
+        ]  # fmt: skip
+    codes = contest.party_codes if contest is not None else ()
+    table, problems = read_table(data, file=file, sheet="result", columns=(*RESULT_COLUMNS, *codes))
+    if table is None or contest is None:
+        return None, problems
+    result, more = read_before_last_result(table, contest=contest, last_result=last_result)
+    return result, problems + more
 
 
 def read_record_file(folder: Path, *, contest: Contest | None, read: dict[str, bytes]) -> _Found:

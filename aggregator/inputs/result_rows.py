@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 import statistics
 from collections.abc import Iterable, Iterator, Sequence
 
@@ -21,6 +22,9 @@ UNUSUAL_SEAT = 20
 
 # Whole percentages of a row sum to 100, give or take their rounding.
 _PERCENT_TOTAL = range(98, 103)
+
+# A number of members, as a cell has it.
+MEMBERS = re.compile(r"[1-9][0-9]{0,3}")
 
 type Votes = dict[str, float]
 
@@ -71,19 +75,23 @@ def check_code_columns(table: SheetTable, *, codes: Sequence[str], contest: Cont
 
 
 def check_places(table: SheetTable, *, contest: Contest) -> Iterator[Problem]:
-    """Check that each row is of a seat or region that no other row has, in a region that exists."""
+    """Check that each row is of a seat or region that no other row has, in a region that exists.
+
+    A file of seats may have one row, its seat left blank, for a region whose rows elect nobody.
+    """
     by_seat = "seat" in table.columns
-    column = "seat" if by_seat else "region"
-    first: dict[str, int] = {}
+    first: dict[tuple[str, str], int] = {}
     for row in table.rows:
-        place = as_text(row.cells.get(column, ""))
-        if by_seat and not place:
+        seat, region = (as_text(row.cells.get(column, "")) for column in ("seat", "region"))
+        elects = contest.terms_in(region_of(row, contest=contest)).elects_by_row
+        if by_seat and not seat and elects:
             yield Problem(
                 table.file, row.number, "seat", "a blank cell", "a seat's name or number",
                 "Name the seat, or drop the column where each row is a region.", Rule.CELL_NEEDED,
             )  # fmt: skip
-        elif place or not by_seat:
-            earlier = first.setdefault(place, row.number)
+        elif seat or not by_seat or region:
+            column, place = ("seat", seat) if seat else ("region", region)
+            earlier = first.setdefault((column, place), row.number)
             if earlier != row.number:
                 yield Problem(
                     table.file, row.number, column, f'"{place}", already in row {earlier}',
@@ -125,9 +133,14 @@ def check_totals(table: SheetTable, rows: Sequence[Votes], *, broken: set[int | 
         Numbers of rows of which a cell could not be read.
     """
     totals = [total_votes(votes) for votes in rows]
-    filled = [t for t in totals if t > 0]
-    median = statistics.median(filled) if filled else 0.0
-    for row, total in zip(table.rows, totals, strict=True):
+    # Votes by member, so that districts of many members are no rarity; a whole region is no seat.
+    sizes = [
+        total / _members(row) if "seat" in row.cells else 0.0
+        for row, total in zip(table.rows, totals, strict=True)
+    ]
+    seats = [size for size in sizes if size > 0]
+    median = statistics.median(seats) if seats else 0.0
+    for row, total, size in zip(table.rows, totals, sizes, strict=True):
         if row.number in broken:
             continue
         if total <= 0:
@@ -135,12 +148,19 @@ def check_totals(table: SheetTable, rows: Sequence[Votes], *, broken: set[int | 
                 table.file, row.number, None, "no vote for any party", "votes for one party or more",
                 "Enter the votes.", Rule.NO_VOTES,
             )  # fmt: skip
-        elif "seat" in table.columns and not median / UNUSUAL_SEAT <= total <= median * UNUSUAL_SEAT:
+        elif "seat" in row.cells and not median / UNUSUAL_SEAT <= size <= median * UNUSUAL_SEAT:
+            several = f", {size:.0f} for each of its members" if size != total else ""
             yield Problem(
-                table.file, row.number, None, f"{total:.0f} votes in all",
+                table.file, row.number, None, f"{total:.0f} votes in all{several}",
                 f"a total nearer to the median seat's ({median:.0f})",
                 "Look for a digit too many or too few.", Rule.SEAT_UNUSUAL, Severity.WARNING,
             )  # fmt: skip
+
+
+def _members(row: SheetRow) -> int:
+    """Members that a row elects, as far as its cell can be read."""
+    cell = as_text(row.cells.get("seats", ""))
+    return int(cell) if MEMBERS.fullmatch(cell) else 1
 
 
 def check_kind(table: SheetTable, rows: Sequence[Votes]) -> Iterator[Problem]:

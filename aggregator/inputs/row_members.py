@@ -1,18 +1,16 @@
-"""How many members each row of a result elects: the column ``seats``."""
+"""What stands beside votes in the row of a seat: how many members it elects, and which seats are near."""
 
 from __future__ import annotations
 
-import re
 from collections.abc import Iterator
 
+from aggregator.inputs.close_spelling import close_spelling
 from aggregator.inputs.contest import Contest
 from aggregator.inputs.counting_terms import LIST_RULES, CountingRule
 from aggregator.inputs.reading_rules import Rule
-from aggregator.inputs.result_rows import region_of
+from aggregator.inputs.result_rows import MEMBERS, region_of
 from aggregator.inputs.sheet_table import SheetRow, SheetTable, as_text, quoted
-from aggregator.problems import Problem
-
-_MEMBERS = re.compile(r"[1-9][0-9]{0,3}")
+from aggregator.problems import Problem, Severity
 
 
 def check_members(table: SheetTable, *, contest: Contest) -> Iterator[Problem]:
@@ -27,7 +25,7 @@ def check_members(table: SheetTable, *, contest: Contest) -> Iterator[Problem]:
         if "seats" not in row.cells:
             continue
         text = as_text(row.cells["seats"])
-        if not _MEMBERS.fullmatch(text):
+        if not MEMBERS.fullmatch(text):
             yield Problem(
                 table.file, row.number, "seats", quoted(row.cells["seats"]),
                 "a whole number of members, 1 or more",
@@ -45,5 +43,27 @@ def check_members(table: SheetTable, *, contest: Contest) -> Iterator[Problem]:
             table.file, rows[0].number, "seats", f"{quoted(rows[0].cells['seats'])}{likewise}{more}",
             f"1: {rule} fills one seat a row",
             f"Enter 1, or count by {' or '.join(sorted(LIST_RULES))} where districts elect several.",
-            Rule.ROW_MEMBERS,
+            Rule.SEVERAL_MEMBERS,
         )  # fmt: skip
+
+
+def check_clusters(table: SheetTable, *, contest: Contest) -> Iterator[Problem]:
+    """Look for clusters of one seat, as a slip of the pen makes them; one finding names them all."""
+    seats: dict[tuple[str, str], list[SheetRow]] = {}
+    for row in table.rows:
+        cluster = as_text(row.cells.get("cluster", ""))
+        if cluster:
+            seats.setdefault((region_of(row, contest=contest), cluster), []).append(row)
+    alone = [(cluster, rows[0]) for (_, cluster), rows in seats.items() if len(rows) == 1]
+    if not alone:
+        return
+    named = ", ".join(f'"{cluster}" (row {row.number})' for cluster, row in alone[:5])
+    more = f", … ({len(alone)} in total)" if len(alone) > 5 else ""
+    labels = {cluster for (_, cluster), rows in seats.items() if len(rows) > 1}
+    near = close_spelling(alone[0][0], labels)
+    meant = f'If "{near}" is meant, correct it: a' if near else "A"
+    yield Problem(
+        table.file, alone[0][1].number, "cluster", f"{named}{more}, of one seat each",
+        "two seats or more of one region in a cluster", f"{meant} seat alone has nobody to move with.",
+        Rule.CLUSTER_ALONE, Severity.WARNING,
+    )  # fmt: skip

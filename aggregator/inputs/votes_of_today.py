@@ -68,10 +68,12 @@ def read_votes_of_today(
     problems += _check_standing(table, rows, contest)
     if last_result is not None and not places:
         problems += _check_seats(table, last_result=last_result, contest=contest, unfinished=unfinished)
+        problems += _check_members(table, last_result=last_result)
     if any(p.severity is Severity.ERROR for p in problems):
         return None, problems
     result = build_result(table, rows, contest=contest)
     if last_result is not None:
+        result = _with_places_of(last_result, result)
         problems += _check_turnout(
             table, result, last_result=last_result, contest=contest, unfinished=unfinished
         )
@@ -127,22 +129,24 @@ def _check_seats(
         return
     if not by_seat:
         return
-    region_of_seat = dict(zip(last_result["seat"], last_result["region"], strict=True))
+    named = last_result[last_result["seat"] != ""]
+    region_of_seat = dict(zip(named["seat"], named["region"], strict=True))
     rows: dict[str, dict[str, int]] = {}
     for row in table.rows:
-        rows.setdefault(region_of(row, contest=contest), {})[as_text(row.cells["seat"])] = row.number
+        rows.setdefault(region_of(row, contest=contest), {})[as_text(row.cells.get("seat", ""))] = row.number
     for region, row_of_seat in rows.items():
-        wanted = [seat for seat, r in region_of_seat.items() if r == region]
+        wanted = last_result.loc[last_result["region"] == region, "seat"].tolist()
         for seat, number in row_of_seat.items():
             if seat not in wanted:
                 where = region_of_seat.get(seat)
                 remedy = f"The last result has it in {where}." if where else did_you_mean(seat, wanted)
                 yield Problem(
-                    table.file, number, "seat", f'"{seat}"', f"a seat of {region} in the last result",
+                    table.file, number, "seat", f'"{seat}"' if seat else "a blank cell",
+                    f"a seat of {region} in the last result",
                     f"{remedy} Correct one of the two files.", Rule.COUNT_PLACES,
                 )  # fmt: skip
         missing = [seat for seat in wanted if seat not in row_of_seat]
-        if missing:
+        if missing and missing != [""]:
             more = f", … ({len(missing)} in total)" if len(missing) > 5 else ""
             yield Problem(
                 table.file, min(row_of_seat.values()), "seat",
@@ -150,6 +154,27 @@ def _check_seats(
                 f"Add them. {unfinished}",
                 Rule.COUNT_PLACES,
             )  # fmt: skip
+
+
+def _check_members(table: SheetTable, *, last_result: pd.DataFrame) -> Iterator[Problem]:
+    """Check that members, where the file has them, are those of the last result."""
+    members = dict(zip(last_result["seat"], last_result["seats"], strict=True))
+    for row in table.rows:
+        seat, cell = (as_text(row.cells.get(column, "")) for column in ("seat", "seats"))
+        wanted = members.get(seat) if seat else None
+        if cell and wanted is not None and cell != str(wanted):
+            yield Problem(
+                table.file, row.number, "seats", cell, f"{wanted}, as in the last result",
+                "The rows of the last result say how many members are elected now: correct either.",
+                Rule.COUNT_PLACES,
+            )  # fmt: skip
+
+
+def _with_places_of(last_result: pd.DataFrame, result: pd.DataFrame) -> pd.DataFrame:
+    """Take members and clusters of the seats from the last result, which says them for this election."""
+    places = last_result.drop_duplicates(["seat", "region"]).set_index(["seat", "region"])
+    of_row = places.reindex(pd.MultiIndex.from_frame(result[["seat", "region"]]))
+    return result.assign(seats=of_row["seats"].to_numpy(dtype=int), cluster=of_row["cluster"].to_numpy())
 
 
 def _check_turnout(
