@@ -98,12 +98,14 @@ def test_the_party_with_most_votes_wins_a_tie_where_the_law_says_so() -> None:
 
 
 def test_a_first_divisor_close_to_the_second_is_still_exact() -> None:
-    # 3 - 1e-13 and 3 are within rounding of each other: two averages of one party are at the line at once.
-    method = highest_averages("modified_sainte_lague", first_divisor=3 - Fraction(1, 10**13))
-    votes = [3.0, 3.0, 1.0]
-    counted = apportion(np.array([votes]), seats=4, method=method, lot=np.zeros((1, 3)))
-    exact = apportion_exactly([3, 3, 1], seats=4, method=method)
-    assert counted.seats[0].tolist() == list(exact.seats) == [2, 2, 0]
+    # In floats the first divisor is the second, 3, and the first two parties have equal shares: all four of
+    # their averages are at the line, for two seats. In fractions both are the second party's, by one vote.
+    method = highest_averages("modified_sainte_lague", first_divisor=3 - Fraction(1, 10**20))
+    votes = [9 * 10**15, 9 * 10**15 + 1, 151 * 10**14]
+    lot = np.array([[0.9, 0.1, 0.1]])
+    counted = apportion(np.array([votes], float), seats=5, method=method, lot=lot)
+    exact = apportion_exactly(votes, seats=5, method=method)
+    assert counted.seats[0].tolist() == list(exact.seats) == [0, 2, 3]
     assert not counted.tied[0]
 
 
@@ -123,8 +125,10 @@ def test_the_largest_chamber_fits(method: str) -> None:
         np.array([[7.0, 2.0, 1.0]]), seats=32767, method=METHODS[method], lot=np.zeros((1, 3))
     )
     assert counted.seats.sum() == 32767
-    alone = apportion(np.array([[7.0, 0.0]]), seats=32767, method=METHODS[method], lot=np.zeros((1, 2)))
-    assert alone.seats.tolist() == [[32767, 0]]
+    # Where the count starts, before it is mended, one party may stand above the number of seats.
+    nearly_alone = np.array([[1.0, *[1e-9] * 10]])
+    counted = apportion(nearly_alone, seats=32767, method=METHODS[method], lot=np.zeros((1, 11)))
+    assert counted.seats.tolist() == [[32767, *[0] * 10]]
 
 
 def test_votes_in_single_precision_and_views_of_tickets_will_do() -> None:

@@ -26,7 +26,7 @@ def test_a_joint_list_wins_a_seat_its_members_would_not_win_apart() -> None:
 
 
 def test_a_tie_among_members_is_marked() -> None:
-    # 30, 20 and 15 are the averages of the three seats: no tie among lists, but one for the joint list's seat.
+    # 30, 20 and 15 are the averages of the three seats: no tie among lists, but one within the joint list.
     votes, lot = np.array([[10.0, 10.0, 30.0]]), np.array([[0.2, 0.8, 0.5]])
     counted = apportion_lists(votes, seats=3, method=highest_averages(), lists=[[0, 1]], lot=lot)
     assert counted.seats.tolist() == [[0, 1, 2]]
