@@ -61,10 +61,11 @@ def find_parts(
         if not regions:
             continue
         if terms.elects_by_row:
-            found = _without_seats(key, terms, rows, file)
+            found = _without_seats(key, terms, rows)
             problems += found
             if not found:
-                parts.append(ChamberPart(f"in the rows of {file}", key, int(rows["seats"].sum())))
+                whose = ", ".join(regions) if contest.counting.where else file
+                parts.append(ChamberPart(f"in the rows of {whose}", key, int(rows["seats"].sum())))
         if terms.rule in MIXED_RULES:
             parts.append(_list_part(key, terms, regions, contest))
         elif terms.rule in LIST_RULES and terms.across is Across.REGION:
@@ -74,39 +75,40 @@ def find_parts(
         elif terms.rule in LIST_RULES and terms.across is Across.COUNTRY:
             listed = int(rows["seats"].sum()) or None
             problems += _stated_twice(f"{key}.list_seats", terms.list_seats, listed, file)
-            parts.append(ChamberPart(f"from the lists of [{key}]", key, terms.list_seats or listed))
+            parts.append(ChamberPart(_of_lists(key), key, terms.list_seats or listed))
     return parts, problems
 
 
-def _without_seats(key: str, terms: CountingTerms, rows: pd.DataFrame, file: str) -> list[Problem]:
+def _without_seats(key: str, terms: CountingTerms, rows: pd.DataFrame) -> list[Problem]:
     """Find rows that are no seats where the rule fills seats in rows."""
     if (rows["seat"] != "").all():
         return []
-    where = ", ".join(dict.fromkeys(rows.loc[rows["seat"] == "", "region"]))
-    place = "" if key == "counting" else f" of {where}"
+    whole = key == "counting"
+    place = "" if whole else f" of {', '.join(dict.fromkeys(rows.loc[rows['seat'] == '', 'region']))}"
     district = "district" if terms.rule in LIST_RULES else "seat"
     return [
         Problem(
             CONTEST_FILE, None, f"{key}.rule", f'"{terms.rule}"',
             f"a last result with one row per {district}{place}",
-            f"Add the column seat to the last result{_blank_cells(rows, file)}, or count by another rule "
-            "(none: votes only).", Rule.COUNTING,
+            "Add the column seat to the last result, or count by another rule"
+            + (" (none: votes only)." if whole else "."),
+            Rule.COUNTING,
         )
     ]  # fmt: skip
-
-
-def _blank_cells(rows: pd.DataFrame, file: str) -> str:
-    return f" (in {file} some cells are blank)" if (rows["seat"] != "").any() else ""
 
 
 def _list_part(key: str, terms: CountingTerms, regions: tuple[str, ...], contest: Contest) -> ChamberPart:
     """Seats from lists in a mixed chamber."""
     if terms.across is Across.COUNTRY:
-        return ChamberPart(f"from lists ({key}.list_seats)", key, terms.list_seats)
+        return ChamberPart(_of_lists(key), key, terms.list_seats)
     stated = [r.list_seats for r in contest.regions if r.code in regions]
     known = [seats for seats in stated if seats is not None]
     whole = sum(known) if known and len(known) == len(stated) else None
     return ChamberPart("from lists (list_seats of the regions)", key, whole)
+
+
+def _of_lists(key: str) -> str:
+    return f"from lists ({key}.list_seats)"
 
 
 def _parts_by_region(

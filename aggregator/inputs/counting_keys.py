@@ -95,7 +95,7 @@ def _check_where(contest: Contest) -> Iterator[Problem]:
         )  # fmt: skip
     if regions and set(regions) <= set(first):
         yield _problem(
-            "counting.where", f"all {len(regions)} region(s)", "some region by the rule of [counting]",
+            "counting.where", "tables for all regions", "some region by the rule of [counting]",
             "Give one of these tables to [counting] itself, and leave its regions out.", Rule.COUNTING_WHERE,
         )  # fmt: skip
 
@@ -108,7 +108,7 @@ def _check_taken(key: str, terms: CountingTerms) -> Iterator[Problem]:
         unsaid = "" if "rule" in terms.model_fields_set else ", which holds since none is named"
         yield _problem(
             f"{key}.{name}", _shown(getattr(terms, name)), f"no such key with rule {terms.rule}{unsaid}",
-            f"Delete it, or correct the rule: {takers} take(s) it.",
+            f"Delete it, or name a rule that takes it: {takers}.",
         )  # fmt: skip
 
 
@@ -121,7 +121,7 @@ def _check_methods(key: str, terms: CountingTerms, contest: Contest) -> Iterator
     if "first_divisor" in given and terms.divisors is not Divisors.MODIFIED_SAINTE_LAGUE:
         yield _problem(
             f"{key}.first_divisor", _shown(terms.first_divisor),
-            f'it beside divisors = "{Divisors.MODIFIED_SAINTE_LAGUE}"',
+            f'divisors = "{Divisors.MODIFIED_SAINTE_LAGUE}" beside it',
             "Delete it, or name those divisors: the others begin at 1.",
         )  # fmt: skip
     if terms.rule in MIXED_RULES and terms.across is Across.DISTRICT:
@@ -141,8 +141,8 @@ def _check_thresholds(key: str, terms: CountingTerms, contest: Contest) -> Itera
     for name in _OF_THRESHOLD:
         if name in given and terms.threshold is None:
             yield _problem(
-                f"{key}.{name}", _shown(getattr(terms, name)), "it beside threshold",
-                "Add threshold, or delete it.",
+                f"{key}.{name}", _shown(getattr(terms, name)), "threshold beside it",
+                "Add threshold, or delete this key.",
             )  # fmt: skip
     yield from check_references(
         f"{key}.exempt", terms.exempt, known=[p.code for p in contest.parties], what="party"
@@ -184,7 +184,8 @@ def _check_list_seats(
         return
     if terms.list_seats is not None:
         yield _problem(
-            f"{key}.list_seats", str(terms.list_seats), "list_seats in each [[region]], as lists are of it",
+            f"{key}.list_seats", str(terms.list_seats),
+            f'list_seats in each [[region]], where across = "{Across.REGION}"',
             'Move it to the regions, or set across = "country".',
         )  # fmt: skip
     if terms.rule in MIXED_RULES:

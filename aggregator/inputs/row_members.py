@@ -6,7 +6,7 @@ from collections.abc import Iterator
 
 from aggregator.inputs.close_spelling import close_spelling
 from aggregator.inputs.contest import Contest
-from aggregator.inputs.counting_terms import LIST_RULES, CountingRule
+from aggregator.inputs.counting_terms import LIST_RULES, Across, CountingRule
 from aggregator.inputs.reading_rules import Rule
 from aggregator.inputs.result_rows import MEMBERS, region_of
 from aggregator.inputs.sheet_table import SheetRow, SheetTable, as_text, quoted
@@ -20,6 +20,7 @@ def check_members(table: SheetTable, *, contest: Contest) -> Iterator[Problem]:
     """
     if "seats" not in table.columns:
         return
+    yield from _check_blanks(table, contest)
     several: dict[CountingRule, list[SheetRow]] = {}
     for row in table.rows:
         if "seats" not in row.cells:
@@ -45,6 +46,24 @@ def check_members(table: SheetTable, *, contest: Contest) -> Iterator[Problem]:
             f"Enter 1, or count by {' or '.join(sorted(LIST_RULES))} where districts elect several.",
             Rule.SEVERAL_MEMBERS,
         )  # fmt: skip
+
+
+def _check_blanks(table: SheetTable, contest: Contest) -> Iterator[Problem]:
+    """Check that rows whose members are added up, for a region or the country, all say how many."""
+    together: dict[object, list[SheetRow]] = {}
+    for row in table.rows:
+        region = region_of(row, contest=contest)
+        terms = contest.terms_in(region)
+        if not terms.elects_by_row:
+            together.setdefault(region if terms.across is Across.REGION else terms, []).append(row)
+    for rows in together.values():
+        blank = [row for row in rows if "seats" not in row.cells]
+        if len(blank) < len(rows):
+            for row in blank:
+                yield Problem(
+                    table.file, row.number, "seats", "a blank cell", "members in every row, or in none",
+                    "Enter how many members the row has of those that lists fill.", Rule.CELL_NEEDED,
+                )  # fmt: skip
 
 
 def check_clusters(table: SheetTable, *, contest: Contest) -> Iterator[Problem]:

@@ -69,7 +69,7 @@ def _finding(key: str, terms: CountingTerms, shares: pd.DataFrame, *, severity: 
     places = [str(place) for place in shares.index]
     named = ", ".join(places[:5]) + (f", … ({len(places)} in total)" if len(places) > 5 else "")
     excluded = severity is Severity.ERROR
-    who = "nobody" if excluded else "one list only"
+    many, who = ("some lists", "nobody") if excluded else ("several lists", "one list only")
     remedy = (
         "Lower it; it is in percent, 5 for 5 %."
         if excluded
@@ -77,6 +77,6 @@ def _finding(key: str, terms: CountingTerms, shares: pd.DataFrame, *, severity: 
     )
     return Problem(
         CONTEST_FILE, None, f"{key}.threshold", f"{terms.threshold:g}",
-        f"a percentage that some lists reach; at the last election {who} did in {named}", remedy,
+        f"a percentage that {many} reach; at the last election {who} did in {named}", remedy,
         Rule.THRESHOLD, severity,
     )  # fmt: skip

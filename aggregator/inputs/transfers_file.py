@@ -38,7 +38,7 @@ def read_transfers_file(
     if found is None:
         tables = _tables_with_run_offs(contest) if contest is not None and sound else []
         if tables and not problems:
-            needed = f"where voters go in a run-off, which rule {CountingRule.TWO_ROUND} of {tables[0]} needs"
+            needed = f"where voters go in a run-off, which {CountingRule.TWO_ROUND} ({tables[0]}.rule) needs"
             problems = [missing_file(folder, f"{_STEM}.csv", needed=needed, read=read)]
         return None, problems
     file, data = found

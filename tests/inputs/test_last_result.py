@@ -20,7 +20,7 @@ def result_of(tmp_path, **files: str):
 def test_a_party_takes_its_part_and_others_the_rest(tmp_path):
     result = result_of(tmp_path).last_result
     first = result.iloc[0]
-    assert list(result.columns) == ["seat", "name", "region", "HU", "UP", "OL", "OTH"]
+    assert list(result.columns) == ["seat", "name", "region", "seats", "cluster", "HU", "UP", "OL", "OTH"]
     assert (first["seat"], first["name"], first["region"]) == ("N1", "Northgate", "NORTH")
     assert first["HU"] == 9120
     assert first["UP"] == pytest.approx(6310 + 800)

@@ -26,6 +26,7 @@ from aggregator.inputs.contest import (
 )
 from aggregator.inputs.contest_file import known_keys, read_contest
 from aggregator.inputs.contest_folder import read_contest_folder
+from aggregator.inputs.counting_terms import CountingWhere
 from aggregator.inputs.new_contest import new_contest
 from aggregator.inputs.register_columns import REGISTER_COLUMNS, RESULT_COLUMNS
 
@@ -55,7 +56,8 @@ def test_a_new_contest_still_reads_when_its_polling_day_has_passed(tmp_path):
 def test_every_key_is_explained(tmp_path):
     text = new_contest(tmp_path / "lakes", today=TODAY)[0].read_text(encoding="utf-8")
     for model in (
-        Contest, Party, Alliance, Region, LastResult, Jolt, Counting, ReleaseRules, Silence, ModelOverrides,
+        Contest, Party, Alliance, Region, LastResult, Jolt, Counting, CountingWhere, ReleaseRules, Silence,
+        ModelOverrides,
     ):  # fmt: skip
         for key in known_keys(model):
             assert re.search(rf"\b{key}\b", text), key

@@ -31,7 +31,7 @@ def report(folder: Path, text: str) -> list[str]:
 
 def test_an_outcome_has_the_form_of_the_last_result(tmp_path):
     found = outcome(tmp_path, OUTCOME)
-    assert list(found.votes) == ["seat", "name", "region", "HU", "UP", "OL", "OTH"]
+    assert list(found.votes) == ["seat", "name", "region", "seats", "cluster", "HU", "UP", "OL", "OTH"]
     assert found.votes["OL"].isna().tolist() == [True, True, False, False, False]
     assert (found.warnings, found.fingerprint.file) == ((), "result_outcome.csv")
 
@@ -49,8 +49,8 @@ def test_parties_other_than_the_contests_are_named(tmp_path):
     text = OUTCOME.replace("seat,name,region,HU,UP,OL,OTH", "seat,name,region,HU,UP,NEW,OTH")
     assert report(tmp_path, text) == [
         "result_outcome.csv, row 1, column NEW: found a column of this name; expected a known column. "
-        "Known: seat, name, region, HU, UP, OL, OTH. Votes of parties not in the contest belong in OTH; "
-        "nothing is inherited here. [R07]",
+        "Known: seat, name, region, seats, cluster, HU, UP, OL, OTH. Votes of parties not in the contest "
+        "belong in OTH; nothing is inherited here. [R07]",
         "result_outcome.csv, row 1, column OL: found no such column; expected votes of Orchard League. "
         "Add the column, its cells blank where it had no candidate. [R08]",
     ]
