@@ -7,6 +7,8 @@ from dataclasses import dataclass
 import numpy as np
 import pandas as pd
 
+from data_demo.made_up_before_last import as_it_stood, draw_next_votes
+from data_demo.made_up_local_noise import draw_local_sd
 from data_demo.made_up_scenery import OTHERS, Scenery
 from data_demo.made_up_time import opinion_days, still_after_voting
 
@@ -52,6 +54,11 @@ class Country:
         Shared lean, log points, dims (day, region, party), regional part and undecided included.
     undecided_lean
         The part of it that is due to the undecided, dims (day, region, party).
+    before_last
+        Votes by seat at the election before the last one, as ``last_votes``; None where nobody has them.
+    local_sd
+        Sd of the local noise between these two elections, log points, dims (party,); it is that of the next
+        one too. None where the next election's is drawn with it.
     """
 
     scenery: Scenery
@@ -66,6 +73,8 @@ class Country:
     undecided_scale: np.ndarray
     lean: np.ndarray
     undecided_lean: np.ndarray
+    before_last: pd.DataFrame | None = None
+    local_sd: np.ndarray | None = None
 
     @property
     def last_shares(self) -> np.ndarray:
@@ -91,7 +100,7 @@ def log_softmax(log_weights: np.ndarray) -> np.ndarray:
 
 def draw_country(scenery: Scenery, *, shared_lean: bool, rng: np.random.Generator) -> Country:
     """Draw a last result, the walk of support since then and the lean all houses share."""
-    votes = draw_last_votes(scenery, rng=rng)
+    votes, before_last, local_sd = _draw_results(scenery, rng=rng)
     baseline, weights = _baseline(scenery, votes=votes, rng=rng)
     shares = weights @ softmax(baseline)
     usual_sigma = scenery.drift * SIGMA_AT_15_PERCENT * np.sqrt(0.15 / shares)
@@ -120,7 +129,22 @@ def draw_country(scenery: Scenery, *, shared_lean: bool, rng: np.random.Generato
         undecided_scale=undecided_scale,
         lean=lean + undecided_lean,
         undecided_lean=undecided_lean,
+        before_last=before_last,
+        local_sd=local_sd,
     )
+
+
+def _draw_results(
+    scenery: Scenery, *, rng: np.random.Generator
+) -> tuple[pd.DataFrame, pd.DataFrame | None, np.ndarray | None]:
+    """Last result; where the one before is at hand, that one and the local noise between them."""
+    votes = draw_last_votes(scenery, rng=rng)
+    if scenery.since_before_last is None:
+        return votes, None, None
+    (next_rng,) = rng.spawn(1)
+    local_sd = draw_local_sd(len(scenery.codes), rng=next_rng)
+    last = draw_next_votes(votes, scenery=scenery, local_sd=local_sd, rng=next_rng)
+    return last, as_it_stood(votes, scenery=scenery), local_sd
 
 
 def draw_last_votes(scenery: Scenery, *, rng: np.random.Generator) -> pd.DataFrame:
@@ -149,6 +173,7 @@ def draw_last_votes(scenery: Scenery, *, rng: np.random.Generator) -> pd.DataFra
         names = region.seat_names
         shares = softmax(centre + np.array(seat_spread) * rng.normal(size=(len(names), len(codes))))
         turnout = SEAT_VOTES * np.exp(0.12 * rng.normal() + 0.12 * rng.normal(size=len(names)))
+        turnout *= region.voters_per_member * np.array(region.members_by_seat)
         table = pd.DataFrame(np.rint(shares * turnout[:, None]).astype(int), columns=codes)
         table.insert(0, "seat", [f"{region.code}-{k + 1:02d}" for k in range(len(names))])
         table.insert(1, "name", names)

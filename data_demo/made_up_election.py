@@ -54,6 +54,9 @@ class MadeUpElection:
         Votes by seat, as in ``result_last.csv`` and ``result_outcome.csv``.
     counted
         The outcome of the regions that are counted before polling day, as in ``result_counted.csv``.
+    before_last
+        Votes by seat of the election before the last one, as in ``result_before_last.csv``; no row where
+        nobody has them.
     past_errors
         As in ``past_errors.csv``: election, code, polled, result (percent); no row without a record.
     """
@@ -64,6 +67,7 @@ class MadeUpElection:
     result_last: pd.DataFrame
     outcome: pd.DataFrame
     counted: pd.DataFrame
+    before_last: pd.DataFrame
     past_errors: pd.DataFrame
     truth: Truth
 
@@ -120,6 +124,7 @@ def simulate_scenery(
         result_last=country.last_votes,
         outcome=result.votes,
         counted=result.votes[result.votes["region"].isin(early)].reset_index(drop=True),
+        before_last=country.last_votes.iloc[:0] if country.before_last is None else country.before_last,
         past_errors=draw_past_errors(country, shared_lean=shared_lean, rng=record_rng),
         truth=tell_truth(country, houses=houses, register=register, result=result),
     )

@@ -1,4 +1,4 @@
-"""Polling day of an invented election: votes and winners, seat by seat."""
+"""Polling day of an invented election: votes, seat by seat."""
 
 from __future__ import annotations
 
@@ -7,17 +7,15 @@ from dataclasses import dataclass
 import numpy as np
 import pandas as pd
 
+from data_demo.made_up_counting import draw_transfers
 from data_demo.made_up_country import Country, handed_on, log_softmax, softmax
+from data_demo.made_up_local_noise import draw_local_noise, draw_local_sd
 
 TURNOUT_NOISE = 0.04
 """Log sd of a region's weight on polling day about its last one."""
 TURNOUT_TILT = 0.2
 """Sd over parties of how much more, in log points, regions turn out per unit of the party's share there."""
 SLOPE_SD = 0.12
-LOCAL_SD = 0.15
-LOCAL_SD_NOISE = 0.25
-LOCAL_TAIL = 4
-"""Degrees of freedom of the local noise."""
 NEW_PARTY_SEAT_SPREAD = 0.35
 
 
@@ -37,6 +35,9 @@ class PollingDay:
         How much stronger than its log share a party moved where it was strong, dims (party,).
     local_sd
         Sd of the local noise, log points, dims (party,).
+    transfers
+        Percent of each party's voters who voted for each other one in run-offs: from, to, rate; no row
+        where there are none.
     """
 
     votes: pd.DataFrame
@@ -44,10 +45,11 @@ class PollingDay:
     turnout_tilt: np.ndarray
     slope: np.ndarray
     local_sd: np.ndarray
+    transfers: pd.DataFrame
 
 
 def draw_polling_day(country: Country, *, rng: np.random.Generator) -> PollingDay:
-    """Draw turnout, votes by seat, and so the winners.
+    """Draw turnout and votes by seat, and how voters move on in run-offs.
 
     A region's votes are its true support, moved by the mean of its seats' local noise; the seats are
     then centred on the region's votes exactly (up to whole votes).
@@ -55,30 +57,35 @@ def draw_polling_day(country: Country, *, rng: np.random.Generator) -> PollingDa
     scenery = country.scenery
     codes = list(scenery.codes)
     turnout_noise = TURNOUT_NOISE * rng.normal(size=country.weights.size)
-    (tilt_rng,) = rng.spawn(1)
+    tilt_rng, transfer_rng = rng.spawn(2)
     tilt = scenery.turnout_tilt * TURNOUT_TILT * tilt_rng.normal(size=len(codes))
     turnout_weights = country.weights * np.exp(turnout_noise + _above_country(country) @ tilt)
     turnout_weights /= turnout_weights.sum()
     slope = SLOPE_SD * rng.normal(size=len(codes))
-    local_sd = LOCAL_SD * np.exp(LOCAL_SD_NOISE * rng.normal(size=len(codes)))
+    local_sd = draw_local_sd(len(codes), rng=rng) if country.local_sd is None else country.local_sd
     last_total = country.last_votes.drop(columns=["seat", "name", "region"]).to_numpy().sum()
     frames = []
-    for r, region in enumerate(scenery.region_codes):
-        seats = country.last_votes[country.last_votes["region"] == region].reset_index(drop=True)
+    for r, region in enumerate(scenery.regions):
+        seats = country.last_votes[country.last_votes["region"] == region.code].reset_index(drop=True)
         last_turnout = seats.drop(columns=["seat", "name", "region"]).sum(axis=1).to_numpy()
         turnout = last_turnout * np.exp(0.03 * rng.normal(size=len(seats)))
         turnout *= turnout_weights[r] * last_total / turnout.sum()
         strength = _last_strength(country, seats=seats, region=r, rng=rng)
-        # Scaled to unit variance: a Student t's own variance is df / (df - 2).
-        unit = rng.standard_t(LOCAL_TAIL, size=strength.shape) / np.sqrt(LOCAL_TAIL / (LOCAL_TAIL - 2))
-        noise = local_sd * unit
+        noise = draw_local_noise(local_sd, seats=len(seats), clusters=region.clusters, rng=rng)
         log_support = log_softmax(country.log_support[-1, r] + noise.mean(axis=0))
         shares = _centred(
             (1 + slope) * strength + log_support + noise, turnout=turnout, target=np.exp(log_support)
         )
         table = pd.DataFrame(np.rint(shares * turnout[:, None]).astype(int), columns=codes)
         frames.append(pd.concat([seats[["seat", "name", "region"]], table], axis=1))
-    return PollingDay(pd.concat(frames, ignore_index=True), turnout_weights, tilt, slope, local_sd)
+    return PollingDay(
+        votes=pd.concat(frames, ignore_index=True),
+        turnout_weights=turnout_weights,
+        turnout_tilt=tilt,
+        slope=slope,
+        local_sd=local_sd,
+        transfers=draw_transfers(scenery.counting, codes=codes, rng=transfer_rng),
+    )
 
 
 def _above_country(country: Country) -> np.ndarray:

@@ -11,6 +11,8 @@ from datetime import date
 
 import numpy as np
 
+from data_demo.made_up_counting import MixedCounting
+
 OTHERS = "OTH"
 TARGET_POPULATION = "voters"
 """Whom the result is about: a house that asks them has no population lean."""
@@ -66,6 +68,12 @@ class MadeUpRegion:
         The day it votes where that is before the contest's; its support stands still from then on.
     counted
         The day its count is published, before the contest's polling day.
+    members
+        Members that each of its seats elects; empty where it is one everywhere.
+    clusters
+        Name of each seat's cluster of neighbours, blank for none; empty where no seat has one.
+    voters_per_member
+        Votes per member over the usual number.
     """
 
     code: str
@@ -73,6 +81,22 @@ class MadeUpRegion:
     seat_names: tuple[str, ...]
     polling_day: date | None = None
     counted: date | None = None
+    members: tuple[int, ...] = ()
+    clusters: tuple[str, ...] = ()
+    voters_per_member: float = 1.0
+
+    @property
+    def members_by_seat(self) -> tuple[int, ...]:
+        """Members that each seat elects."""
+        return self.members or (1,) * len(self.seat_names)
+
+
+@dataclass(frozen=True)
+class SinceBeforeLast:
+    """What is new since the election before the last one, whose result is at hand."""
+
+    parties: tuple[str, ...] = ()
+    seats: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -214,6 +238,10 @@ class Scenery:
         Whether regions where a party is strong turn out more or less than others.
     past_elections
         Days of the elections in the record of past polling errors.
+    counting
+        How votes become seats; None where the most votes win every seat.
+    since_before_last
+        Where there is a result of the election before the last one: what is new since then.
     """
 
     title: str
@@ -237,6 +265,8 @@ class Scenery:
     undecided_stray: bool = False
     turnout_tilt: bool = False
     past_elections: tuple[date, ...] = ()
+    counting: MixedCounting | None = None
+    since_before_last: SinceBeforeLast | None = None
 
     @property
     def codes(self) -> tuple[str, ...]:
@@ -250,8 +280,9 @@ class Scenery:
 
     @property
     def seat_count(self) -> int:
-        """Seats of the chamber."""
-        return sum(len(r.seat_names) for r in self.regions)
+        """Seats of the chamber, before it grows where it may."""
+        from_lists = self.counting.list_seats if self.counting is not None else 0
+        return from_lists + sum(sum(r.members_by_seat) for r in self.regions)
 
     @property
     def undecided(self) -> float:

@@ -10,8 +10,10 @@ import pandas as pd
 from data_demo.made_up_answers import expected_answers
 from data_demo.made_up_country import LEAN_TURN, REGIONAL_DRIFT_RATIO, REGIONAL_LEAN_RATIO, Country, softmax
 from data_demo.made_up_leans import HouseTruth
+from data_demo.made_up_local_noise import CLUSTER_PART
 from data_demo.made_up_polls import Register
 from data_demo.made_up_result import PollingDay, count_winners
+from data_demo.made_up_seat_count import PLACE_COLUMNS, RUN_OFF_COLUMNS, SeatCount, count_chamber
 
 
 @dataclass(frozen=True)
@@ -28,6 +30,12 @@ class Truth:
         support by the mean of the local noise in a region's seats.
     seats
         code, seats.
+    places
+        place (seat, district, or lists), how, code, seats: no row where the most votes win every seat.
+    run_offs
+        seat, code, first_round, run_off (votes): the first two of each seat that went to a second round.
+    transfers
+        from, to, rate: percent of a party's voters who moved on to another one in a run-off.
     at_register_end
         True support on the register's last day: region (blank: the country, by turnout on polling day),
         code, support.
@@ -65,6 +73,9 @@ class Truth:
     support: pd.DataFrame
     polling_day: pd.DataFrame
     seats: pd.DataFrame
+    places: pd.DataFrame
+    run_offs: pd.DataFrame
+    transfers: pd.DataFrame
     at_register_end: pd.DataFrame
     houses: pd.DataFrame
     design: pd.DataFrame
@@ -83,6 +94,9 @@ class Truth:
             "support_over_time": self.support,
             "support_polling_day": self.polling_day,
             "seats_won": self.seats,
+            "seats_won_by_place": self.places,
+            "run_offs": self.run_offs,
+            "run_off_transfers": self.transfers,
             "house_effects": self.houses,
             "house_design_effects": self.design,
             "mode_leans": self.leans,
@@ -98,10 +112,14 @@ class Truth:
 
 def tell_truth(country: Country, *, houses: HouseTruth, register: Register, result: PollingDay) -> Truth:
     """Gather the truth of one election."""
+    counted = _count_seats(country, result=result)
     return Truth(
         support=_support_table(country),
         polling_day=_polling_day_table(country, result=result),
-        seats=count_winners(result.votes, codes=country.scenery.codes).reset_index(),
+        seats=counted.seats.reset_index(),
+        places=counted.places,
+        run_offs=counted.run_offs,
+        transfers=result.transfers,
         at_register_end=_register_end_table(country, result=result),
         houses=_house_table(country, houses=houses),
         design=_design_table(country, houses=houses, polls=register.polls),
@@ -117,8 +135,19 @@ def tell_truth(country: Country, *, houses: HouseTruth, register: Register, resu
             }
         ),
         jolts=_jolt_table(country),
-        numbers=_number_table(country),
+        numbers=_number_table(country, elected=int(counted.seats.sum())),
         interviews=register.interviews,
+    )
+
+
+def _count_seats(country: Country, *, result: PollingDay) -> SeatCount:
+    scenery = country.scenery
+    if scenery.counting is not None:
+        return count_chamber(result.votes, scenery=scenery, transfers=result.transfers)
+    return SeatCount(
+        seats=count_winners(result.votes, codes=scenery.codes),
+        places=pd.DataFrame(columns=PLACE_COLUMNS),
+        run_offs=pd.DataFrame(columns=RUN_OFF_COLUMNS),
     )
 
 
@@ -304,7 +333,7 @@ def _jolt_table(country: Country) -> pd.DataFrame:
     return pd.concat(frames, ignore_index=True) if frames else pd.DataFrame(columns=columns)
 
 
-def _number_table(country: Country) -> pd.DataFrame:
+def _number_table(country: Country, *, elected: int) -> pd.DataFrame:
     scenery = country.scenery
     numbers = {
         "log height of the ramp of opinion time": scenery.ramp_log_height,
@@ -313,4 +342,9 @@ def _number_table(country: Country) -> pd.DataFrame:
         "correlation of the shared lean between the two elections": np.cos(LEAN_TURN),
         "usual part of undecided, percent": 100 * scenery.undecided,
     }
+    if any(region.clusters for region in scenery.regions):
+        numbers["part of a seat's local noise that its cluster shares"] = CLUSTER_PART
+    if scenery.counting is not None:
+        numbers["seats of the chamber"] = scenery.seat_count
+        numbers["seats of the chamber that was elected"] = elected
     return pd.DataFrame({"quantity": list(numbers), "value": list(numbers.values())})

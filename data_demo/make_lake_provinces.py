@@ -12,8 +12,9 @@ from pathlib import Path
 import pandas as pd
 
 from data_demo.lake_provinces_scenery import LAKE_PROVINCES
+from data_demo.made_up_contest_text import contest_text
 from data_demo.made_up_election import MadeUpElection, simulate_scenery
-from data_demo.made_up_folder import contest_text, write_contest_folder
+from data_demo.made_up_folder import write_contest_folder
 
 SEED = 1288
 """Chosen for a close race: an alliance near the line, no party near it alone."""

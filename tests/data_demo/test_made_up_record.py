@@ -8,9 +8,10 @@ import numpy as np
 import pandas as pd
 import pytest
 
+from data_demo.made_up_contest_text import contest_text
 from data_demo.made_up_country import LEAN_SCALE, draw_country
 from data_demo.made_up_election import SMALL_ELECTION, UNTIDY_ELECTION, simulate_election
-from data_demo.made_up_folder import contest_text, write_contest_folder
+from data_demo.made_up_folder import write_contest_folder
 from data_demo.made_up_record import draw_past_errors
 from data_demo.made_up_result import draw_polling_day
 from data_demo.made_up_size import draw_scenery
