@@ -168,12 +168,12 @@ def count_prepared(
     if lists:
         result["list_seats_polling_day"] = ((CHAIN, DRAW, PARTY), np.sum(lists, axis=0).reshape(*shape, -1))
     if prepared.baseline is not None:
+        in_rows = set(prepared.baseline[SEAT].to_numpy().tolist())
         result = result.merge(_rows_of(prepared, counted, shape=shape)).sel(
-            {SEAT: [label for label in order if label in prepared.baseline[SEAT].to_numpy()]}
+            {SEAT: [label for label in order if label in in_rows]}
         )
-    return result.reindex({PARTY: draws[PARTY]}).transpose(
-        CHAIN, DRAW, DATE, SEAT, PARTY, missing_dims="ignore"
-    )
+    in_order = (CHAIN, DRAW, DATE, SEAT, PARTY)
+    return result.reindex({PARTY: draws[PARTY]}).transpose(*in_order, missing_dims="ignore")
 
 
 def count_shifted(

@@ -132,8 +132,8 @@ def _clusters(baseline: xr.Dataset) -> IntArray:
     names = baseline["seat_cluster"].to_numpy()
     keys = np.char.add(np.char.add(region.astype(str), "\n"), names.astype(str))
     _, number, size = np.unique(keys, return_inverse=True, return_counts=True)
-    seats_of_region = np.array([(region == r).sum() for r in region])
-    alone = (names == NO_CLUSTER) | (size[number] == seats_of_region)
+    _, of_region, seats_of_region = np.unique(region, return_inverse=True, return_counts=True)
+    alone = (names == NO_CLUSTER) | (size[number] == seats_of_region[of_region])
     return np.where(alone, -1, number)
 
 

