@@ -152,6 +152,8 @@ def _count_seats(inputs: DeskInputs, fit: Fit) -> xr.Dataset | None:
         on_polling_day.assign(support=undated),
         last_result=inputs.last_result,
         counted_result=inputs.counted_result,
+        before_last=inputs.before_last,
+        transfers=inputs.transfers,
         contest=inputs.contest,
         rng=np.random.default_rng([fit.settings.seed, SEATS_STREAM]),
     )

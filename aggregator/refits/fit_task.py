@@ -95,6 +95,8 @@ def _as_text(bare: DeskInputs, settings: RunSettings, *, test_figures: bool) -> 
             "last_result": bare.last_result,
             "counted_result": bare.counted_result,
             "past_errors": bare.past_errors,
+            "before_last": bare.before_last,
+            "transfers": bare.transfers,
         }.items()
     }
     whole = {

@@ -41,8 +41,18 @@ SHIFT = "shift"
 
 
 @dataclass(frozen=True)
-class _Chamber:
-    """A counted chamber: seats (draw, date, party), ties (draw), and each group's count of polling day."""
+class Chamber:
+    """A counted chamber.
+
+    Attributes
+    ----------
+    seats
+        dims (draw, date, party).
+    ties
+        Counts decided by lot or by the rule for ties, dims (draw).
+    last
+        The count of each group, whose rows are of polling day.
+    """
 
     seats: SeatArray
     ties: IntArray
@@ -143,7 +153,7 @@ def count_prepared(
         Labels of the seats, in the order wanted.
     """
     days = [pd.Timestamp(day).date() for day in draws[DATE].values]
-    counted = _count_chamber(prepared, contest=contest, days=[*days, contest.last_polling_day])
+    counted = count_chamber(prepared, contest=contest, days=[*days, contest.last_polling_day])
     shape = (draws.sizes[CHAIN], draws.sizes[DRAW])
     coords = {CHAIN: draws[CHAIN], DRAW: draws[DRAW], PARTY: list(prepared.parties)}
     seats = xr.DataArray(
@@ -209,7 +219,7 @@ def count_shifted(
         prepared,
         groups=tuple(replace(g, votes=replace(g.votes, country=country)) for g in groups),
     )
-    counted = _count_chamber(shifted, contest=contest, days=[contest.last_polling_day] * factor.shape[0])
+    counted = count_chamber(shifted, contest=contest, days=[contest.last_polling_day] * factor.shape[0])
     dims = (DRAW, SHIFT, PARTY)
     return xr.Dataset(
         {"seats": (dims, counted.seats), "votes": (dims, country)}, coords={PARTY: list(prepared.parties)}
@@ -248,12 +258,12 @@ def _shift_group(
     )
 
 
-def _count_chamber(prepared: PreparedSeats, *, contest: Contest, days: Sequence[date]) -> _Chamber:
-    """Count every group on every day; the last day is polling day."""
+def count_chamber(prepared: PreparedSeats, *, contest: Contest, days: Sequence[date]) -> Chamber:
+    """Count every group on every day of its votes; the last is polling day, and joint lists are the day's."""
     groups = [_count_group(group, prepared.parties, contest=contest, days=days) for group in prepared.groups]
     seats = np.sum([g.seats for g in groups], axis=0, dtype=np.int16)
     ties: IntArray = np.sum([g.ties for g in groups], axis=0)
-    return _Chamber(seats=seats, ties=ties, last=tuple(groups))
+    return Chamber(seats=seats, ties=ties, last=tuple(groups))
 
 
 def _count_group(
@@ -285,23 +295,34 @@ def _joint_lists(contest: Contest, parties: tuple[str, ...], day: date) -> tuple
     )
 
 
-def _rows_of(prepared: PreparedSeats, counted: _Chamber, *, shape: tuple[int, int]) -> xr.Dataset:
+def won_in_rows(prepared: PreparedSeats, counted: Chamber) -> npt.NDArray[np.signedinteger]:
+    """Members that each row elects on polling day, dims (draw, seat, party), in the baseline's order."""
+    baseline = prepared.baseline
+    n_seats = 0 if baseline is None else baseline.sizes[SEAT]
+    by_rows = [count.won for count in counted.last if count.won is not None]
+    shape = (counted.seats.shape[0], n_seats, len(prepared.parties))
+    won = np.zeros(shape, dtype=np.result_type(np.int8, *(w.dtype for w in by_rows)))
+    for group, count in zip(prepared.groups, counted.last, strict=True):
+        if count.won is not None:
+            won[:, group.seats] = count.won
+    return won
+
+
+def _rows_of(prepared: PreparedSeats, counted: Chamber, *, shape: tuple[int, int]) -> xr.Dataset:
     """What is known seat by seat on polling day."""
     baseline = prepared.baseline
     if baseline is None:
         raise ValueError("Nothing is counted in rows.")
-    n_seats, n_parties = baseline.sizes[SEAT], baseline.sizes[PARTY]
-    won = np.zeros((shape[0] * shape[1], n_seats, n_parties), dtype=np.int8)
+    won = won_in_rows(prepared, counted)
     share = np.zeros(won.shape, dtype=np.float32)
-    for group, count in zip(prepared.groups, counted.last, strict=True):
-        if group.votes.rows is not None and count.won is not None:
-            won[:, group.seats] = count.won
+    for group in prepared.groups:
+        if group.votes.rows is not None:
             share[:, group.seats] = group.votes.rows.polling_day_shares.transpose(0, 2, 1)
     by_draw = (CHAIN, DRAW, SEAT, PARTY)
     return xr.Dataset(
         {
-            "won": (by_draw, won.reshape(*shape, n_seats, n_parties)),
-            "seat_votes": (by_draw, share.reshape(*shape, n_seats, n_parties)),
+            "won": (by_draw, won.reshape(*shape, *won.shape[1:])),
+            "seat_votes": (by_draw, share.reshape(*shape, *won.shape[1:])),
             "seat_chance": ((SEAT, PARTY), (won > 0).mean(axis=0)),
             "seat_expected": ((SEAT, PARTY), won.mean(axis=0, dtype=np.float64)),
             "seat_share": ((SEAT, PARTY), share.mean(axis=0, dtype=np.float64)),

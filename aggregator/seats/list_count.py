@@ -7,12 +7,13 @@ Where no list passes the threshold, all share as if there were none: seats must 
 from __future__ import annotations
 
 import numpy as np
+import numpy.typing as npt
 
 from aggregator.inputs.counting_terms import Across, CountingTerms
 from aggregator.seats.apportion.joint_lists import apportion_lists
 from aggregator.seats.apportion.list_method import ListMethod, highest_averages, largest_remainder
 from aggregator.seats.apportion.thresholds import passes_threshold
-from aggregator.seats.rules import FloatArray, GroupTerms, GroupVotes, SeatsCounted
+from aggregator.seats.rules import FloatArray, GroupTerms, GroupVotes, SeatArray, SeatsCounted
 
 PERCENT = 100.0
 
@@ -46,8 +47,14 @@ def count_by_lists(votes: GroupVotes, terms: GroupTerms) -> SeatsCounted:
         seats[:, date] = won.sum(axis=1)
         ties += counted.tied.reshape(n_draws, -1).sum(axis=1)
     return SeatsCounted(
-        seats=seats, won=won.astype(np.int8) if by_district else None, from_lists=None, ties=ties
+        seats=seats, won=_compact(won, terms) if by_district else None, from_lists=None, ties=ties
     )
+
+
+def _compact(won: SeatArray, terms: GroupTerms) -> npt.NDArray[np.signedinteger]:
+    """Members by district, a byte each where that holds them: draws times districts are many."""
+    largest = int(terms.magnitude.max(initial=0))
+    return won.astype(np.int8 if largest <= np.iinfo(np.int8).max else np.int16)
 
 
 def votes_of_lists(votes: GroupVotes, terms: GroupTerms, *, date: int) -> FloatArray:

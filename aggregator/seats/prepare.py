@@ -148,8 +148,8 @@ def prepare_seats(
             country=country,
             list_lot=list_lot,
         )
-        seats = _seats_of(rows, mine)
-        settled = _terms(
+        seats = seats_of(rows, mine)
+        settled = settle_terms(
             terms, contest, parties, [regions[r] for r in of_group], baseline, seats, last_result
         )
         if terms.rule is CountingRule.TWO_ROUND and transfers is not None:
@@ -249,7 +249,7 @@ def _turnout(draws: xr.Dataset, last_result: pd.DataFrame, regions: tuple[str, .
     return np.tile(total / total.sum(), (samples, 1))
 
 
-def _seats_of(rows: SeatVotes | None, regions: IntArray | None) -> IntArray:
+def seats_of(rows: SeatVotes | None, regions: IntArray | None) -> IntArray:
     """Positions of the seats of some regions among all rows."""
     if rows is None or regions is None:
         return np.empty(0, dtype=np.int64)
@@ -257,7 +257,7 @@ def _seats_of(rows: SeatVotes | None, regions: IntArray | None) -> IntArray:
     return np.concatenate([np.arange(start[r], start[r + 1]) for r in regions])
 
 
-def _terms(
+def settle_terms(
     terms: CountingTerms,
     contest: Contest,
     parties: tuple[str, ...],
@@ -266,7 +266,7 @@ def _terms(
     seats: IntArray,
     last_result: pd.DataFrame,
 ) -> GroupTerms:
-    """Terms of a group, its seats found."""
+    """Give the terms of a group of regions with its seats found; ``seats`` are positions in the baseline."""
     magnitude = np.empty(0, dtype=np.int64)
     if terms.elects_by_row and baseline is not None:
         magnitude = baseline["seat_magnitude"].to_numpy()[seats].astype(np.int64)
@@ -287,5 +287,4 @@ def _list_seats(
         return np.array([stated.get(r) or int(members.get(r, 0)) for r in regions], dtype=np.int64)
     if terms.list_seats is not None:
         return np.array([terms.list_seats], dtype=np.int64)
-    named = (rows["seat"].astype(str) != "").all()
-    return np.array([int(members.sum()) if named else contest.counting.seats or 0], dtype=np.int64)
+    return np.array([int(members.sum()) or contest.counting.seats or 0], dtype=np.int64)

@@ -184,7 +184,7 @@ class SeatsCounted:
     """
 
     seats: SeatArray
-    won: npt.NDArray[np.int8] | None
+    won: npt.NDArray[np.signedinteger] | None
     from_lists: SeatArray | None
     ties: IntArray
 

@@ -200,7 +200,7 @@ def test_regions_with_other_rules_count_as_they_would_alone() -> None:
 
 def test_nationwide_lists_need_no_seats_in_the_result() -> None:
     by_region = made_up_last_result().groupby("region", as_index=False).sum(numeric_only=True)
-    by_region = by_region.assign(seat="", name="", seats=1, cluster="")
+    by_region = by_region.assign(seat="", name="", seats=0, cluster="")
     contest = contest_with({**DHONDT, "across": "country", "seats": 90})
     seats = count(contest, made_up_draws(draws=20), by_region)
     assert (seats["seats_polling_day"].sum("party") == 90).all()
