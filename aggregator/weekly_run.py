@@ -27,7 +27,9 @@ from aggregator.release.folder import check_place_is_free
 from aggregator.release.model_checks import ModelChecks
 from aggregator.release.write_release import write_release
 from aggregator.screens.screen_polls import screen_polls
-from aggregator.seats.counting import count_seats
+from aggregator.seats.counting import count_prepared
+from aggregator.seats.prepare import PreparedSeats, prepare_seats
+from aggregator.seats.shifted_chamber import count_votes_to_seats
 from aggregator.settings import (
     LEAN_STREAM,
     PREDICTIVE_STREAM,
@@ -110,7 +112,13 @@ def refresh(
         check_place_is_free(out)
     fit = fit_contest(inputs, settings=settings or RunSettings(), progress=progress)
     progress("counting seats", 0.0)
-    seats = _count_seats(inputs, fit, fit.draws)
+    prepared = _prepare_seats(inputs, fit, fit.draws)
+    seats = None if prepared is None else _count_prepared(inputs, prepared, fit.draws)
+    shifted = (
+        None
+        if prepared is None or seats is None
+        else count_votes_to_seats(prepared, draws=fit.draws, seats=seats, contest=inputs.contest)
+    )
     progress("weighing the polls", 0.0)
     worth = _weigh_polls(inputs, fit)
     voting = inputs.contest.last_polling_day
@@ -129,6 +137,7 @@ def refresh(
         screens=screen_polls(inputs, rng=_stream(fit, SCREENS_STREAM)),
         verdict=fit.verdict,
         settings=_disclosed_settings(inputs, fit),
+        shifted=shifted,
         checks=checks,
         out=out,
     )
@@ -142,17 +151,25 @@ def refresh(
     )
 
 
-def _count_seats(inputs: DeskInputs, fit: Fit, draws: xr.Dataset) -> xr.Dataset | None:
-    """Count seats from draws; None where nothing is counted."""
+def _prepare_seats(inputs: DeskInputs, fit: Fit, draws: xr.Dataset) -> PreparedSeats | None:
+    """Prepare the chamber for counting from draws; None where nothing is counted."""
     if inputs.contest.counting.rule is CountingRule.NONE or inputs.last_result is None:
         return None
-    return count_seats(
+    return prepare_seats(
         draws,
         last_result=inputs.last_result,
         counted_result=inputs.counted_result,
+        before_last=inputs.before_last,
+        transfers=inputs.transfers,
         contest=inputs.contest,
         rng=_stream(fit, SEATS_STREAM),
     )
+
+
+def _count_prepared(inputs: DeskInputs, prepared: PreparedSeats, draws: xr.Dataset) -> xr.Dataset:
+    """Count a prepared chamber, its seats in the order of the last result."""
+    order = [] if inputs.last_result is None else inputs.last_result["seat"].astype(str).tolist()
+    return count_prepared(prepared, draws=draws, contest=inputs.contest, order=order)
 
 
 def _test_model(inputs: DeskInputs, fit: Fit, seats: xr.Dataset | None) -> ModelChecks:
@@ -196,7 +213,9 @@ def _with_seats(
         return replace(alternative, seats=seats if alternative.in_use else None)
     # Only polling day is asked for: a series without dates.
     undated = alternative.draws["support_polling_day"].expand_dims({DATE: pd.DatetimeIndex([])})
-    return replace(alternative, seats=_count_seats(inputs, fit, alternative.draws.assign(support=undated)))
+    draws = alternative.draws.assign(support=undated)
+    prepared = _prepare_seats(inputs, fit, draws)
+    return replace(alternative, seats=None if prepared is None else _count_prepared(inputs, prepared, draws))
 
 
 def _weigh_polls(inputs: DeskInputs, fit: Fit) -> pd.DataFrame:

@@ -9,11 +9,11 @@ import pandas as pd
 
 from aggregator.alternatives import Alternative
 from aggregator.inputs.contest import Contest
+from aggregator.release.chamber import sizes_in_draws
 from aggregator.release.check_schemas import ASSUMPTIONS
 from aggregator.release.codes import Code
 from aggregator.release.draw_summaries import stack_samples, summarise_samples
 from aggregator.release.rounding import round_chance
-from aggregator.release.seats_tables import seats_in_chamber
 from aggregator.release.table_words import Level
 from aggregator.seats.majorities import (
     FloatArray,
@@ -98,7 +98,7 @@ def _add_chances(
     if alternative.seats is None:
         return
     won = alternative.seats["seats_polling_day"].sel({PARTY: list(contest.party_codes)})
-    line = majority_line(contest, chamber=seats_in_chamber(alternative.seats))
+    line = majority_line(contest, chamber=sizes_in_draws(won))
     outcomes = [
         *leads_in_draws(won, outcome=Outcome.LARGEST),
         *majorities_in_draws(won, alliances=(), majority=line),

@@ -7,11 +7,11 @@ import pandas as pd
 import xarray as xr
 
 from aggregator.inputs.contest import Contest
+from aggregator.release.chamber import sizes_in_draws
 from aggregator.release.likelihood_words import likelihood_word
 from aggregator.release.rounding import SMALLEST_CHANCE, round_chance
-from aggregator.release.seats_tables import seats_in_chamber
+from aggregator.release.statements import days_and_kinds, values_by_day
 from aggregator.release.table_schemas import CHANCES
-from aggregator.release.table_words import Kind
 from aggregator.seats.majorities import (
     FloatArray,
     Outcome,
@@ -20,7 +20,6 @@ from aggregator.seats.majorities import (
     majority_line,
     monte_carlo_error,
 )
-from models.dimensions import DATE, PARTY
 
 
 def build_chances_table(draws: xr.Dataset, *, seats: xr.Dataset | None, contest: Contest) -> pd.DataFrame:
@@ -40,19 +39,17 @@ def build_chances_table(draws: xr.Dataset, *, seats: xr.Dataset | None, contest:
     pandas.DataFrame
         Columns of the schema ``CHANCES``.
     """
-    support = _days_of(draws, "national_support", contest)
-    won = None if seats is None else _days_of(seats, "seats", contest)
-    majority = None if seats is None else majority_line(contest, chamber=seats_in_chamber(seats))
-    days = [pd.Timestamp(day).date() for day in draws[DATE].values]
-    kinds = [Kind.ON_DATE] * len(days) + [Kind.ON_POLLING_DAY]
+    support = values_by_day(draws, "national_support", contest=contest)
+    won = None if seats is None else values_by_day(seats, "seats", contest=contest)
     labels: list[dict[str, object]] = []
     chances: list[FloatArray] = []
-    for place, (day, kind) in enumerate(zip([*days, contest.last_polling_day], kinds, strict=True)):
+    for place, (day, kind) in enumerate(days_and_kinds(draws, contest=contest)):
         outcomes = leads_in_draws(support[place], outcome=Outcome.MOST_SUPPORT)
-        if won is not None and majority is not None:
+        if won is not None:
             active = [alliance for alliance in contest.alliances if alliance.active_on(day)]
+            line = majority_line(contest, chamber=sizes_in_draws(won[place]))
             outcomes += leads_in_draws(won[place], outcome=Outcome.LARGEST)
-            outcomes += majorities_in_draws(won[place], alliances=active, majority=majority)
+            outcomes += majorities_in_draws(won[place], alliances=active, majority=line)
         for outcome, code, happens in outcomes:
             labels.append(
                 {"date": np.datetime64(day, "s"), "kind": kind.value, "outcome": outcome.value, "code": code}
@@ -65,13 +62,3 @@ def build_chances_table(draws: xr.Dataset, *, seats: xr.Dataset | None, contest:
     table["mc_error"] = np.maximum(monte_carlo_error(happened), SMALLEST_CHANCE)
     table["likelihood"] = table["probability"].map(likelihood_word)
     return table[list(CHANCES.column_names)]
-
-
-def _days_of(draws: xr.Dataset, name: str, contest: Contest) -> list[xr.DataArray]:
-    """Values of every date, polling day last, each with its parties in the contest's order."""
-    chosen = {PARTY: list(contest.party_codes)}
-    dated = draws[name].sel(chosen)
-    return [
-        *(dated.isel({DATE: place}, drop=True) for place in range(dated.sizes[DATE])),
-        draws[f"{name}_polling_day"].sel(chosen),
-    ]

@@ -2,58 +2,23 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
-from dataclasses import dataclass
-from typing import Any
-
-import altair as alt
 import pandas as pd
 
-from aggregator.inputs.contest import Silence
-from aggregator.release.chart_style import CHART_READING, CodeLook, Frame, Layout, code_looks, frame_chart
+from aggregator.release.chart_style import CHART_READING, CodeLook, Frame, code_looks
 from aggregator.release.contents import ReleaseContents
 from aggregator.release.headlines import POLL_SIZE
-from aggregator.release.interval_charts import build_houses_chart, build_seats_chart
+from aggregator.release.interval_charts import build_houses_chart
 from aggregator.release.lean_page_tables import era_name
 from aggregator.release.over_time_chart import OverTime, build_over_time_chart
 from aggregator.release.page_tables import WORTH_AGES
 from aggregator.release.poll_points import build_poll_points
+from aggregator.release.release_chart import ReleaseChart as ReleaseChart
+from aggregator.release.release_chart import silence_everywhere, silence_reading, with_alarms
 from aggregator.release.rounding import date_text, points_text, share_interval_text, share_text, whole_text
+from aggregator.release.seats_charts import build_seats_charts
 from aggregator.release.table_rows import largest_code, last_row
 from aggregator.release.table_words import Kind, Level
 from aggregator.release.worth_chart import build_worth_chart
-
-
-@dataclass(frozen=True)
-class ReleaseChart:
-    """One chart of a release, ready to be drawn in any layout.
-
-    Attributes
-    ----------
-    name
-        Its file name, without ending.
-    title, reading, alt_text
-        What it shows, how to read it, and what it says, in words and numbers.
-    draw
-        Builds the bare chart for a layout.
-    """
-
-    name: str
-    title: str
-    reading: str
-    alt_text: str
-    draw: Callable[[Layout], alt.TopLevelMixin]
-
-    def framed(self, *, frame: Frame, layout: Layout) -> dict[str, Any]:
-        """Build the chart's specification, with title, source, caution and alarms around it."""
-        return frame_chart(
-            self.draw(layout),
-            title=self.title,
-            reading=self.reading,
-            description=self.alt_text,
-            frame=frame,
-            layout=layout,
-        )
 
 
 def chart_frame(contents: ReleaseContents) -> Frame:
@@ -68,12 +33,7 @@ def build_charts(contents: ReleaseContents) -> tuple[ReleaseChart, ...]:
     alliances = [looks[code.code] for code in contents.codes if code.level is Level.ALLIANCE]
     if _have_history(alliances, contents.tables.support):
         charts.insert(1, _alliances_chart(contents, alliances))
-    if contents.tables.seats is not None:
-        charts += [
-            _seats_chart(contents, looks, contents.tables.seats),
-            _seats_over_time_chart(contents, looks, contents.tables.seats),
-        ]
-    return tuple(charts)
+    return (*charts, *build_seats_charts(contents, looks))
 
 
 def _support_chart(contents: ReleaseContents, looks: dict[str, CodeLook]) -> ReleaseChart:
@@ -116,25 +76,16 @@ def _support_over_time(
         run_date=contents.run_date,
         polling_day=contents.contest.last_polling_day,
         points=build_poll_points(contents.inputs, codes=[look.code for look in looks]),
-        silence=_silence_everywhere(contents),
+        silence=silence_everywhere(contents),
     )
     return ReleaseChart(
         name=name,
         title=title,
         reading=f"{CHART_READING} {points} at the middle of their fieldwork, the undecided set aside."
-        f"{_silence_reading(contents)}",
+        f"{silence_reading(contents)}",
         alt_text=_shares_alt_text(title, rows, looks, contents),
         draw=lambda layout: build_over_time_chart(content, layout=layout),
     )
-
-
-def _silence_everywhere(contents: ReleaseContents) -> list[Silence]:
-    """Silence windows of the whole country: a chart of it shows no region's own."""
-    return [window for window in contents.contest.release.silence if window.regions is None]
-
-
-def _silence_reading(contents: ReleaseContents) -> str:
-    return " Grey stripe: no publication by law." if _silence_everywhere(contents) else ""
 
 
 def _shares_alt_text(title: str, rows: pd.DataFrame, looks: list[CodeLook], contents: ReleaseContents) -> str:
@@ -149,7 +100,7 @@ def _shares_alt_text(title: str, rows: pd.DataFrame, looks: list[CodeLook], cont
             interval = share_interval_text(then["q05"], then["q95"])
             part += f", on polling day {share_text(then['mean'])} ({interval})"
         parts.append(part)
-    return _with_alarms(
+    return with_alarms(
         f"{title}. Mean and 90 % interval on {date_text(contents.run_date)} "
         f"and on {date_text(contents.contest.last_polling_day)}: {'; '.join(parts)}.",
         contents,
@@ -175,7 +126,7 @@ def _houses_chart(contents: ReleaseContents, looks: dict[str, CodeLook]) -> Rele
         "Shape: estimate; line: 90 % interval; upright line: average of the houses. "
         "A lean is a difference, not an error. Houses in alphabetical order; below a house's name, its way "
         "of working where it has had several.",
-        alt_text=_with_alarms(
+        alt_text=with_alarms(
             f"{title}. {houses['house'].nunique()} houses. 90 % intervals that leave out zero, in points: "
             f"{'; '.join(listed) if listed else 'none'}.",
             contents,
@@ -200,69 +151,10 @@ def _worth_chart(contents: ReleaseContents) -> ReleaseChart:
         title=title,
         reading=f"For {name}. How many people asked on the day itself would tell as much about support on "
         "that day. Band: 90 % interval.",
-        alt_text=_with_alarms(
+        alt_text=with_alarms(
             f"{title}. For {name}; worth in people asked on the day of the run, and in people asked on "
             f"polling day: {'; '.join(listed)}.",
             contents,
         ),
         draw=lambda layout: build_worth_chart(rows, layout=layout),
     )
-
-
-def _seats_chart(contents: ReleaseContents, looks: dict[str, CodeLook], seats: pd.DataFrame) -> ReleaseChart:
-    chosen = list(looks.values())
-    chamber, majority = contents.chamber or 0, contents.majority or 0
-    title = f"Seats on polling day, {date_text(contents.contest.last_polling_day)}"
-    return ReleaseChart(
-        name="seats_on_polling_day",
-        title=title,
-        reading="Shape: mean; thick line: 50 % interval; thin line: 90 % interval. "
-        "Numbers: mean and 90 % interval. An alliance is the sum of its members.",
-        alt_text=_seats_alt_text(f"{title}. Majority {majority} of {chamber}", seats, chosen, contents),
-        draw=lambda layout: build_seats_chart(
-            seats, looks=chosen, chamber=chamber, majority=majority, layout=layout
-        ),
-    )
-
-
-def _seats_over_time_chart(
-    contents: ReleaseContents, looks: dict[str, CodeLook], seats: pd.DataFrame
-) -> ReleaseChart:
-    chosen = [looks[code.code] for code in contents.codes if code.level is not Level.ALLIANCE]
-    title = "Seats if people had voted on each date, and on polling day"
-    content = OverTime(
-        rows=seats,
-        looks=chosen,
-        unit="seats",
-        decimals=0,
-        run_date=contents.run_date,
-        polling_day=contents.contest.last_polling_day,
-        line_at=contents.majority,
-        line_label=f"majority: {contents.majority}",
-        silence=_silence_everywhere(contents),
-    )
-    return ReleaseChart(
-        name="seats_over_time",
-        title=title,
-        reading=f"{CHART_READING}{_silence_reading(contents)}",
-        alt_text=_seats_alt_text(
-            f"{title}. Majority {contents.majority} of {contents.chamber}", seats, chosen, contents
-        ),
-        draw=lambda layout: build_over_time_chart(content, layout=layout),
-    )
-
-
-def _seats_alt_text(
-    opening: str, seats: pd.DataFrame, looks: Iterable[CodeLook], contents: ReleaseContents
-) -> str:
-    found = ((look, last_row(seats, code=look.code, kind=Kind.ON_POLLING_DAY)) for look in looks)
-    parts = [
-        f"{look.name} {whole_text(row['mean'])} ({whole_text(row['q05'])} to {whole_text(row['q95'])})"
-        for look, row in found
-        if row is not None
-    ]
-    return _with_alarms(f"{opening}. Mean and 90 % interval on polling day: {'; '.join(parts)}.", contents)
-
-
-def _with_alarms(text: str, contents: ReleaseContents) -> str:
-    return " ".join([*(f"{alarm.rstrip('.')}." for alarm in contents.alarms), text])

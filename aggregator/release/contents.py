@@ -9,6 +9,7 @@ from datetime import date
 from aggregator.inputs.contest import Contest
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.release.cautions import CHART_CAUTION, PublicationStatus, failed_checks_text
+from aggregator.release.chamber import Chamber
 from aggregator.release.codes import Code, contest_codes
 from aggregator.release.headlines import Headlines
 from aggregator.release.rounding import date_text, whole_text
@@ -52,8 +53,10 @@ class ReleaseContents:
         Settings of the run.
     headlines
         The opening sentences.
-    chamber, majority
-        Seats in the chamber and seats that make a majority; None where nothing is counted in seats.
+    chamber
+        The chamber and its majority line; None where nothing is counted in seats.
+    list_seats
+        Mean number of seats from lists by code, in a chamber that also fills seats locally; else None.
     pace
         How fast opinion moves towards the end; None where it runs evenly.
     """
@@ -64,8 +67,8 @@ class ReleaseContents:
     status: PublicationStatus
     settings: Mapping[str, object]
     headlines: Headlines
-    chamber: int | None
-    majority: int | None
+    chamber: Chamber | None
+    list_seats: Mapping[str, float] | None = None
     pace: Pace | None = None
 
     @property

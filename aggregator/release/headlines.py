@@ -11,6 +11,8 @@ from dataclasses import dataclass
 import pandas as pd
 
 from aggregator.inputs.contest import Contest
+from aggregator.release.chamber import Chamber
+from aggregator.release.combination_words import combination_text, number_word
 from aggregator.release.likelihood_words import NAMED_LEADER_FROM
 from aggregator.release.rounding import chance_text, date_text, share_interval_text, share_text, whole_text
 from aggregator.release.table_rows import largest_code, likeliest, national_parties
@@ -36,9 +38,7 @@ class Headlines:
         return (self.support, self.seats, self.worth)
 
 
-def build_headlines(
-    tables: ReleaseTables, *, contest: Contest, chamber: int | None, majority: int | None
-) -> Headlines:
+def build_headlines(tables: ReleaseTables, *, contest: Contest, chamber: Chamber | None) -> Headlines:
     """Write the three opening sentences.
 
     No leader is named when its chance of leading is below "likely" (66 %).
@@ -49,15 +49,15 @@ def build_headlines(
         The release's rounded tables; every number of a sentence stands in them.
     contest
         Names and polling day.
-    chamber, majority
-        Seats in the chamber and seats that make a majority; None where nothing is counted in seats.
+    chamber
+        The chamber and its majority line; None where nothing is counted in seats.
     """
     return Headlines(
         support=_support_sentence(tables, contest),
         seats=(
             _lead_sentence(tables, contest)
-            if tables.seats is None or chamber is None or majority is None
-            else _seats_sentence(tables, tables.seats, contest, chamber, majority)
+            if tables.seats is None or chamber is None
+            else _seats_sentence(tables, tables.seats, contest, chamber)
         ),
         worth=_worth_sentence(tables, contest),
     )
@@ -98,45 +98,48 @@ def _lead_sentence(tables: ReleaseTables, contest: Contest) -> str:
     return f"{opening} neither {first} nor {second} would be likely to lead."
 
 
-def _seats_sentence(
-    tables: ReleaseTables, seats: pd.DataFrame, contest: Contest, chamber: int, majority: int
-) -> str:
+def _seats_sentence(tables: ReleaseTables, seats: pd.DataFrame, contest: Contest, chamber: Chamber) -> str:
+    """Say who is largest, and whether anyone reaches the majority line, alone or only together."""
     names = contest.party_names
     rows = seats[(seats["kind"] == Kind.ON_POLLING_DAY) & (seats["level"] == Level.PARTY)]
     rows = rows.sort_values("mean", ascending=False, kind="stable")
     largest = likeliest(tables.chances, Outcome.LARGEST, kind=Kind.ON_POLLING_DAY)
+    every = ("regularly " if chamber.grows else "") + whole_text(chamber.regular)
     if largest["probability"] >= NAMED_LEADER_FROM:
         row = rows[rows["code"] == largest["code"]].iloc[0]
         opening = (
             f"On polling day {names[largest['code']]} is {_worded(largest)} to win the most seats: "
-            f"{whole_text(row['mean'])} of {whole_text(chamber)} (90 % interval {_seats(row)})"
+            f"{whole_text(row['mean'])} of {every} (90 % interval {_seats(row)})"
         )
         leader = largest["code"]
     else:
         first, second = rows.iloc[0], rows.iloc[1]
         opening = (
             "On polling day no party is likely to win the most seats: "
-            f"{names[first['code']]} is expected to win {whole_text(first['mean'])} of {whole_text(chamber)} "
+            f"{names[first['code']]} is expected to win {whole_text(first['mean'])} of {every} "
             f"(90 % interval {_seats(first)}), "
             f"{names[second['code']]} {whole_text(second['mean'])} ({_seats(second)})"
         )
         leader = None
-    return f"{opening}. {_majority_sentence(tables.chances, contest, majority, leader=leader)}"
+    return f"{opening}. {_majority_sentence(tables, contest, chamber, leader=leader)}"
 
 
-def _majority_sentence(chances: pd.DataFrame, contest: Contest, majority: int, *, leader: str | None) -> str:
-    """Say how likely a majority is for the party nearest to it, and for an alliance with no member alone.
+def _majority_sentence(
+    tables: ReleaseTables, contest: Contest, chamber: Chamber, *, leader: str | None
+) -> str:
+    """Say how likely a majority is for the party nearest to it, and for those who have it only together.
 
     An alliance that the party belongs to is told as what the party falls back on: "a majority for the
     alliance" would be read as one beside the party's own.
     """
-    alone = likeliest(chances, Outcome.MAJORITY_ALONE, kind=Kind.ON_POLLING_DAY)
+    alone = likeliest(tables.chances, Outcome.MAJORITY_ALONE, kind=Kind.ON_POLLING_DAY)
     party = "it" if alone["code"] == leader else contest.party_names[alone["code"]]
-    opening = f"Alone, {party} is {_worded(alone)} to reach a majority of {whole_text(majority)}"
+    of = f" ({chamber.majority_text})" if chamber.line_moves else f" of {whole_text(chamber.majority)}"
+    opening = f"Alone, {party} is {_worded(alone)} to reach a majority{of}"
     alliances = {a.code: a for a in contest.alliances if a.active_on(contest.last_polling_day)}
     if not alliances:
-        return f"{opening}."
-    together = likeliest(chances, Outcome.MAJORITY_ONLY_AS_ALLIANCE, kind=Kind.ON_POLLING_DAY)
+        return f"{opening}{_fewest_together(tables, contest, alone=alone['probability'])}."
+    together = likeliest(tables.chances, Outcome.MAJORITY_ONLY_AS_ALLIANCE, kind=Kind.ON_POLLING_DAY)
     alliance = alliances[together["code"]]
     if alone["code"] in alliance.members:
         return (
@@ -146,6 +149,23 @@ def _majority_sentence(chances: pd.DataFrame, contest: Contest, majority: int, *
     return (
         f"{opening}; {alliance.name} is {_worded(together)} to reach one "
         "with its members together, none of them alone."
+    )
+
+
+def _fewest_together(tables: ReleaseTables, contest: Contest, *, alone: float) -> str:
+    """Name the fewest parties that reach the line together, where none is likely to alone."""
+    if tables.combinations is None or alone >= NAMED_LEADER_FROM:
+        return ""
+    rows = tables.combinations[tables.combinations["kind"] == Kind.ON_POLLING_DAY]
+    rows = rows[rows["parties"] > 1]
+    if rows.empty:
+        return ""
+    fewest = rows[rows["parties"] == rows["parties"].min()]
+    row = fewest.sort_values("chance", ascending=False, kind="stable").iloc[0]
+    return (
+        f"; of {number_word(row['parties'])} parties together, "
+        f"{combination_text(row['combination'], contest.party_names)} are the likeliest to: "
+        f"{row['likelihood']} ({chance_text(row['chance'])})"
     )
 
 

@@ -9,6 +9,7 @@ import altair as alt
 import numpy as np
 import pandas as pd
 
+from aggregator.release.chamber import Chamber
 from aggregator.release.chart_style import INK, MUTED, CodeLook, Layout, colour_of, shape_of
 from aggregator.release.rounding import whole_text
 from aggregator.release.table_words import Kind, Level
@@ -141,7 +142,7 @@ def _round_ticks(reach: float) -> list[float]:
 
 
 def build_seats_chart(
-    seats: pd.DataFrame, *, looks: Sequence[CodeLook], chamber: int, majority: int, layout: Layout
+    seats: pd.DataFrame, *, looks: Sequence[CodeLook], chamber: Chamber, layout: Layout
 ) -> alt.LayerChart | alt.FacetChart:
     """Seats on polling day: parties first, largest at the top, alliances below, with the majority line.
 
@@ -151,8 +152,8 @@ def build_seats_chart(
         Rows of ``seats.csv``.
     looks
         The codes to draw, and how.
-    chamber, majority
-        Seats in the chamber, and seats that make a majority.
+    chamber
+        The chamber and its majority line.
     """
     rows = seats[(seats["kind"] == Kind.ON_POLLING_DAY) & seats["code"].isin([look.code for look in looks])]
     names = {look.code: look.name for look in looks}
@@ -164,8 +165,8 @@ def build_seats_chart(
     number_room = 100 if layout.long_names else 84
     name_room = 180 if layout.long_names else 112
     width = layout.width - number_room - name_room - 20
-    top = max(float(rows["q95"].max()), majority * 1.05)
-    scale = alt.Scale(domain=[0, min(top * 1.02, chamber)], nice=False)
+    top = max(float(rows["q95"].max()), chamber.line[1] * 1.05)
+    scale = alt.Scale(domain=[0, min(top * 1.02, chamber.size[1])], nice=False)
     axis = alt.Axis(title="seats", grid=True, ticks=False, tickCount=6, domain=False, labelFlush=False)
     below_parties = alt.YValue((ROW + 10) * int((~rows["alliance"]).sum()))
     base = alt.Chart(rows[["name", "code", "mean", "q05", "q25", "q75", "q95", "label"]]).encode(
@@ -179,10 +180,15 @@ def build_seats_chart(
         ),
         color=colour_of(looks),
     )
+    majority = {"majority": [float(chamber.middle_line)], "label": [chamber.line_text]}
     line = alt.Chart(
-        pd.DataFrame({"majority": [float(majority)], "label": [f"majority: {majority} of {chamber}"]})
+        pd.DataFrame(majority | {"low": [float(chamber.line[0])], "high": [float(chamber.line[1])]})
+    )
+    moving = line.mark_rect(color=MUTED, opacity=0.16).encode(
+        x=alt.X("low:Q", scale=scale, axis=axis), x2="high:Q"
     )
     return alt.layer(
+        *([moving] if chamber.line_moves else []),
         alt.Chart(rows[rows["alliance"]][["code"]].head(1))
         .mark_rule(color=MUTED, strokeWidth=0.8, strokeDash=[2, 3])
         .encode(y=below_parties, x=alt.XValue(0), x2=alt.X2Value(width)),

@@ -13,6 +13,7 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from aggregator.release.assumption_words import assumptions_table, shared_lean_sentences
 from aggregator.release.cautions import CAUTIONS
 from aggregator.release.contents import ReleaseContents
+from aggregator.release.counting_words import describe_counting
 from aggregator.release.grounds_words import describe_grounds
 from aggregator.release.predictive_words import predictive_sentences
 from aggregator.release.prior_words import describe_priors
@@ -57,6 +58,7 @@ def build_method_note(contents: ReleaseContents) -> str:
         unused_reasons=reasons,
         unused_count=len(unused),
         features=describe_features(contents),
+        counting=describe_counting(contents),
         shared_lean=shared_lean_sentences(contents),
         assumptions=assumptions_table(contents),
         predictive=predictive_sentences(contents.tables.predictive),

@@ -16,14 +16,21 @@ from aggregator.release.contents import ReleaseContents
 from aggregator.release.lean_page_tables import asked_together_sentences, houses_table, ways_of_asking_table
 from aggregator.release.page_tables import (
     chances_table,
-    closest_seats_table,
     polls_tables,
     regions_table,
-    seats_table,
     support_table,
     worth_table,
 )
 from aggregator.release.page_templates import chart_markup, page_environment
+from aggregator.release.seats_page_tables import (
+    closest_seats_table,
+    combinations_table,
+    deciding_seats_table,
+    districts_table,
+    equal_votes_sentences,
+    seats_table,
+    seats_votes_table,
+)
 
 DESK_ONLY_COLUMNS = frozenset({"note", "why_not", "source"})
 """Findings about these columns may quote the desk's own remarks, and stay in the desk's half."""
@@ -60,7 +67,12 @@ def build_page(
             regions=regions_table(contents),
             seats=seats_table(contents),
             chances=chances_table(contents),
+            combinations=combinations_table(contents),
+            deciding=deciding_seats_table(contents),
             closest=closest_seats_table(contents),
+            districts=districts_table(contents),
+            seats_votes=seats_votes_table(contents),
+            equal_votes=equal_votes_sentences(contents),
             houses=houses_table(contents),
             asking=ways_of_asking_table(contents),
             asked_together=asked_together_sentences(contents),

@@ -20,7 +20,6 @@ from aggregator.release.table_rows import largest_code, last_row
 from aggregator.release.table_words import Kind, Level
 from aggregator.seats.majorities import Outcome
 
-CLOSEST_SEATS = 12
 WORTH_AGES = (0, 7, 14, 30, 60, 90)
 RECENT_POLLS = 10
 STATEMENTS = (Kind.ON_DATE, Kind.ON_POLLING_DAY)
@@ -64,12 +63,12 @@ def support_table(contents: ReleaseContents) -> PageTable:
     return PageTable(
         "Support in the country, percent of the vote: mean, and 90 % interval below it. "
         "An alliance is the sum of its members.",
-        _two_statements(contents),
+        two_statements(contents),
         tuple(body),
     )
 
 
-def _two_statements(contents: ReleaseContents) -> tuple[str, ...]:
+def two_statements(contents: ReleaseContents) -> tuple[str, ...]:
     """Head the columns of a table that sets the two statements side by side."""
     return (
         "",
@@ -96,26 +95,6 @@ def regions_table(contents: ReleaseContents) -> PageTable | None:
         "Support on polling day by region, percent of the vote: mean, and 90 % interval below it. "
         "A dash: does not stand there." + (" Counted: the region's result." if known else ""),
         ("Region", *(code.name for code in codes)),
-        tuple(body),
-    )
-
-
-def seats_table(contents: ReleaseContents) -> PageTable | None:
-    """Set out the seats of every code; None where nothing is counted in seats."""
-    seats = contents.tables.seats
-    if seats is None:
-        return None
-    body = [
-        (
-            code.name,
-            *(_seats_over_interval(last_row(seats, code=code.code, kind=kind)) for kind in STATEMENTS),
-        )
-        for code in contents.codes
-    ]
-    return PageTable(
-        f"Seats of {contents.chamber}; a majority is {contents.majority}. Mean, and 90 % interval below it. "
-        "An alliance is the sum of its members.",
-        _two_statements(contents),
         tuple(body),
     )
 
@@ -152,37 +131,6 @@ def chances_table(contents: ReleaseContents) -> PageTable:
     )
 
 
-def closest_seats_table(contents: ReleaseContents) -> PageTable | None:
-    """Set out the seats whose likeliest winner is least sure; None where nothing is counted in seats."""
-    table = contents.tables.seat_chances
-    if table is None:
-        return None
-    ordered = table.sort_values("chance", ascending=False, kind="stable")
-    place = ordered.groupby("seat", sort=False).cumcount()
-    second = {row["seat"]: row for row in ordered[place == 1].to_dict("records")}
-    closest = ordered[place == 0].sort_values("chance", kind="stable").head(CLOSEST_SEATS)
-    body = []
-    for row in closest.to_dict("records"):
-        runner_up = second.get(row["seat"])
-        body.append(
-            (
-                _text(row["name"]) or row["seat"],
-                contents.region_names.get(row["region"], ""),
-                f"{contents.names[row['code']]} {chance_text(row['chance'])}",
-                f"{contents.names[runner_up['code']]} {chance_text(runner_up['chance'])}"
-                if runner_up
-                else "–",
-            )
-        )
-    return PageTable(
-        f"The {len(body)} seats whose outcome on polling day is least sure, "
-        "with the two likeliest winners and their chances.",
-        ("Seat", "Region", "Likeliest winner", "Next"),
-        tuple(body),
-        words=frozenset({0, 1, 2, 3}),
-    )
-
-
 def worth_table(contents: ReleaseContents) -> PageTable:
     """Set out what a poll of 1,000 is worth at some ages, for the party with most support."""
     code = largest_code(contents.tables.support, kind=Kind.ON_DATE)
@@ -214,7 +162,7 @@ def _days_left(contents: ReleaseContents) -> str:
 
 
 def _worth_over_interval(row: dict[Hashable, Any], name: str) -> str:
-    return f"{whole_text(row[name])}\n{_whole_interval(row[f'{name}_q05'], row[f'{name}_q95'])}"
+    return f"{whole_text(row[name])}\n{whole_interval(row[f'{name}_q05'], row[f'{name}_q95'])}"
 
 
 def polls_tables(contents: ReleaseContents) -> tuple[PageTable, PageTable | None]:
@@ -246,17 +194,17 @@ def polls_tables(contents: ReleaseContents) -> tuple[PageTable, PageTable | None
 
 def _poll_cells(row: pd.Series) -> tuple[str, ...]:
     return (
-        _text(row["poll"]),
-        _text(row["house"]),
-        _text(row["sponsor"]) or "–",
+        plain_text(row["poll"]),
+        plain_text(row["house"]),
+        plain_text(row["sponsor"]) or "–",
         fieldwork_text(row["start"], row["end"]),
         "–" if pd.isna(row["published"]) else fieldwork_text(row["published"], row["published"]),
-        _text(row["regions"]) or "all",
+        plain_text(row["regions"]) or "all",
         "–" if pd.isna(row["sample"]) else whole_text(row["sample"]),
         whole_text(row["respondents"]),
         ", ".join(part for part in (_words(row["mode"]), _words(row["population"])) if part) or "–",
         "–" if pd.isna(row["worth_today"]) else whole_text(row["worth_today"]),
-        _text(row["source"]) or "–",
+        plain_text(row["source"]) or "–",
     )
 
 
@@ -271,10 +219,11 @@ def fieldwork_text(start: pd.Timestamp, end: pd.Timestamp) -> str:
 
 
 def _words(cell: object) -> str:
-    return _text(cell).replace("_", " ")
+    return plain_text(cell).replace("_", " ")
 
 
-def _text(cell: object) -> str:
+def plain_text(cell: object) -> str:
+    """Text of a cell; none for a blank one."""
     return "" if cell is None or (isinstance(cell, float) and cell != cell) else str(cell)
 
 
@@ -286,9 +235,6 @@ def _counted_share(row: pd.Series | None) -> str:
     return "–" if row is None else f"{share_text(row['mean'])}\ncounted"
 
 
-def _seats_over_interval(row: pd.Series | None) -> str:
-    return "–" if row is None else f"{whole_text(row['mean'])}\n{_whole_interval(row['q05'], row['q95'])}"
-
-
-def _whole_interval(low: float, high: float) -> str:
+def whole_interval(low: float, high: float) -> str:
+    """Write an interval of counts, such as ``12 to 19``."""
     return f"{whole_text(low)} to {whole_text(high)}"

@@ -18,11 +18,6 @@ from aggregator.release.table_words import Kind
 from models.dimensions import CHAIN, DATE, DRAW, PARTY, SEAT
 
 
-def seats_in_chamber(seats: xr.Dataset) -> int:
-    """How many seats are counted: the same number in every draw."""
-    return int(seats["seats_polling_day"].isel({CHAIN: 0, DRAW: 0}).sum())
-
-
 def build_seats_table(seats: xr.Dataset, *, contest: Contest, codes: Sequence[Code]) -> pd.DataFrame:
     """Summarise seats on every date and on polling day.
 
@@ -61,25 +56,28 @@ def build_seats_table(seats: xr.Dataset, *, contest: Contest, codes: Sequence[Co
     return pd.concat([over_time, final], ignore_index=True)[list(SEATS.column_names)]
 
 
-def build_seat_chances_table(seats: xr.Dataset) -> pd.DataFrame:
-    """Each seat's chances on polling day, one row per seat and party that stands there.
+def build_seat_chances_table(seats: xr.Dataset) -> pd.DataFrame | None:
+    """Each seat's chances on polling day, one row per seat or district and party that stands there.
 
     Parameters
     ----------
     seats
-        With ``seat_chance``, ``seat_share``, ``last_share`` (seat, party; 0 to 1) and the coordinates
-        ``seat_name`` and ``seat_region``.
+        With ``seat_chance``, ``seat_share``, ``last_share`` (0 to 1) and ``seat_expected`` (members), dims
+        (seat, party), and the coordinates ``seat_name``, ``seat_region`` and ``seat_magnitude``.
 
     Returns
     -------
-    pandas.DataFrame
-        Columns of the schema ``SEAT_CHANCES``.
+    pandas.DataFrame or None
+        Columns of the schema ``SEAT_CHANCES``; None where lists fill all seats, by region or in all.
     """
+    if "seat_chance" not in seats:
+        return None
     samples = seats.sizes[CHAIN] * seats.sizes[DRAW]
     parties = [str(code) for code in seats[PARTY].values]
     share = seats["seat_share"].transpose(SEAT, PARTY).values.astype(np.float64)
     last = seats["last_share"].transpose(SEAT, PARTY).values.astype(np.float64)
     chance = seats["seat_chance"].transpose(SEAT, PARTY).values.astype(np.float64)
+    expected = seats["seat_expected"].transpose(SEAT, PARTY).values.astype(np.float64)
     count = len(parties)
     table = pd.DataFrame(
         {
@@ -90,7 +88,25 @@ def build_seat_chances_table(seats: xr.Dataset) -> pd.DataFrame:
             "last_share": np.where(last > 0, 100.0 * last, np.nan).ravel(),
             "expected_share": (100.0 * share).ravel(),
             "chance": round_chance(chance, samples=samples).ravel(),
+            "members": np.repeat(seats["seat_magnitude"].values.astype(np.float64), count),
+            "expected_members": expected.ravel(),
         }
     )
     stands = (np.nan_to_num(share) > 0).ravel()
     return table.loc[stands, list(SEAT_CHANCES.column_names)].reset_index(drop=True)
+
+
+def mean_list_seats(seats: xr.Dataset, *, codes: Sequence[Code]) -> dict[str, float] | None:
+    """Mean number of each code's seats on polling day that come from lists; None where no rule is mixed.
+
+    Parameters
+    ----------
+    seats
+        With ``list_seats_polling_day`` (chain, draw, party) in a mixed chamber.
+    codes
+        The codes there are; an alliance has the list seats of its members.
+    """
+    if "list_seats_polling_day" not in seats:
+        return None
+    mean = seats["list_seats_polling_day"].mean((CHAIN, DRAW))
+    return {code.code: float(mean.sel({PARTY: list(code.members)}).sum()) for code in codes}

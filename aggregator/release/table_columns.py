@@ -7,7 +7,7 @@ from enum import StrEnum
 from typing import NamedTuple
 
 from aggregator.release.rounding import CHANCE_DECIMALS, SHARE_DECIMALS_TABLE
-from aggregator.release.table_words import Level
+from aggregator.release.table_words import Kind, Level
 
 
 class ColumnType(StrEnum):
@@ -132,3 +132,26 @@ LEVEL = Column(
     "again",
     allowed=tuple(Level),
 )
+DATE = date_column("date", "The day the estimate is for; for `on_polling_day` the polling day of the region")
+KIND = Column(
+    "kind",
+    ColumnType.TEXT,
+    "–",
+    "`on_date`: on that day. `on_polling_day`: when people vote, drift until then included",
+    allowed=tuple(Kind),
+)
+
+
+def quantile_columns(unit: str, *, of: str, bounds: Bounds, decimals: int, whole: bool) -> tuple[Column, ...]:
+    """Describe mean, standard deviation and the published quantiles; those of a count are whole numbers."""
+    quantile = whole_column if whole else number_column
+    options = {} if whole else {"bounds": bounds, "decimals": decimals}
+    words = {"q05": "5 %", "q25": "25 %", "q50": "50 % (the median)", "q75": "75 %", "q95": "95 %"}
+    return (
+        number_column("mean", unit, f"Mean of {of} over the draws", bounds=bounds, decimals=decimals),
+        number_column("sd", unit, "Standard deviation over the draws", bounds=bounds, decimals=decimals),
+        *(
+            quantile(name, unit, f"{of[0].upper()}{of[1:]} is below this with chance {word}", **options)  # type: ignore[arg-type]
+            for name, word in words.items()
+        ),
+    )

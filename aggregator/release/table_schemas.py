@@ -8,28 +8,34 @@ from __future__ import annotations
 
 from aggregator.release.check_schemas import ASSUMPTIONS, PREDICTIVE, PRIOR_SENSITIVITY
 from aggregator.release.lean_schemas import HOUSES, MODE_LEANS
-from aggregator.release.likelihood_words import LIKELIHOOD_WORDS
-from aggregator.release.rounding import CHANCE_DECIMALS, SHARE_DECIMALS_TABLE
+from aggregator.release.rounding import SHARE_DECIMALS_TABLE
 from aggregator.release.screens_schema import SCREENS
+from aggregator.release.seats_schemas import (
+    CHANCES,
+    COMBINATIONS,
+    DECIDING_SEATS,
+    SEAT_CHANCES,
+    SEATS,
+    SEATS_VOTES,
+)
 from aggregator.release.table_columns import (
     ANY_COUNT,
     ANY_NUMBER,
     CODE,
+    DATE,
+    KIND,
     LEVEL,
     PERCENT,
-    PROBABILITY,
-    Bounds,
     Column,
     ColumnType,
     TableSchema,
     date_column,
     number_column,
+    quantile_columns,
     typed_column,
     whole_column,
     yes_no_column,
 )
-from aggregator.release.table_words import Kind
-from aggregator.seats.majorities import Outcome
 
 CAUTION = Column(
     "caution",
@@ -40,123 +46,17 @@ CAUTION = Column(
 """The last column of every table of a release whose checks failed."""
 
 
-_DATE = date_column("date", "The day the estimate is for; for `on_polling_day` the polling day of the region")
-_KIND = Column(
-    "kind",
-    ColumnType.TEXT,
-    "–",
-    "`on_date`: on that day. `on_polling_day`: when people vote, drift until then included",
-    allowed=tuple(Kind),
-)
-
-
-def _quantiles(unit: str, *, of: str, bounds: Bounds, decimals: int, whole: bool) -> tuple[Column, ...]:
-    quantile = whole_column if whole else number_column
-    options = {} if whole else {"bounds": bounds, "decimals": decimals}
-    words = {"q05": "5 %", "q25": "25 %", "q50": "50 % (the median)", "q75": "75 %", "q95": "95 %"}
-    return (
-        number_column("mean", unit, f"Mean of {of} over the draws", bounds=bounds, decimals=decimals),
-        number_column("sd", unit, "Standard deviation over the draws", bounds=bounds, decimals=decimals),
-        *(
-            quantile(name, unit, f"{of[0].upper()}{of[1:]} is below this with chance {word}", **options)  # type: ignore[arg-type]
-            for name, word in words.items()
-        ),
-    )
-
-
 SUPPORT = TableSchema(
     "public/support.csv",
     "date, region, code and kind",
     (
-        _DATE,
+        DATE,
         Column("region", ColumnType.CODE, "–", "Region code", blank="the whole country"),
         CODE,
         LEVEL,
-        _KIND,
-        *_quantiles(
+        KIND,
+        *quantile_columns(
             "percent of the vote", of="support", bounds=PERCENT, decimals=SHARE_DECIMALS_TABLE, whole=False
-        ),
-    ),
-)
-
-SEATS = TableSchema(
-    "public/seats.csv",
-    "date, code and kind",
-    (
-        _DATE,
-        CODE,
-        LEVEL,
-        _KIND,
-        *_quantiles("seats", of="the number of seats", bounds=ANY_COUNT, decimals=2, whole=True),
-    ),
-)
-
-CHANCES = TableSchema(
-    "public/chances.csv",
-    "date, kind, outcome and code",
-    (
-        _DATE,
-        _KIND,
-        Column(
-            "outcome",
-            ColumnType.TEXT,
-            "–",
-            "`most_support`: more votes than any other party. `largest`: more seats than any other party. "
-            "`majority_alone`: reaches the majority line by itself. `majority_only_as_alliance`: the "
-            "alliance reaches it and no member does alone. `no_majority`: neither a party nor an alliance "
-            "reaches it. `OTH` is not a party: it leads nothing and has no majority",
-            allowed=tuple(Outcome),
-        ),
-        Column(
-            "code",
-            ColumnType.CODE,
-            "–",
-            "Party, or alliance for `majority_only_as_alliance`",
-            blank="`no_majority`, which has no code",
-        ),
-        number_column(
-            "probability",
-            "0 to 1",
-            "Chance of the outcome: (k + ½)/(S + 1) for k of S draws, so never 0 or 1. A tie for the lead "
-            "counts in equal parts",
-            decimals=CHANCE_DECIMALS,
-            bounds=PROBABILITY,
-        ),
-        number_column(
-            "mc_error",
-            "0 to 1",
-            "Monte Carlo standard error of the probability: what another seed may change",
-            decimals=CHANCE_DECIMALS,
-            bounds=PROBABILITY,
-        ),
-        Column(
-            "likelihood",
-            ColumnType.TEXT,
-            "–",
-            "The narrowest band of the IPCC likelihood scale that holds the probability",
-            allowed=LIKELIHOOD_WORDS,
-        ),
-    ),
-)
-
-SEAT_CHANCES = TableSchema(
-    "public/seat_chances.csv",
-    "seat and code",
-    (
-        Column("seat", ColumnType.CODE, "–", "Seat code, as in `result_last.csv`", from_register=True),
-        typed_column("name", "Name of the seat", blank="not given"),
-        Column("region", ColumnType.CODE, "–", "Region of the seat"),
-        CODE,
-        number_column(
-            "last_share", "percent of the vote", "Share at the last election", blank="did not stand there"
-        ),
-        number_column("expected_share", "percent of the vote", "Mean share on polling day"),
-        number_column(
-            "chance",
-            "0 to 1",
-            "Chance of winning the seat on polling day, never 0 or 1",
-            decimals=CHANCE_DECIMALS,
-            bounds=PROBABILITY,
         ),
     ),
 )
@@ -299,7 +199,10 @@ ALL_SCHEMAS = (
     SUPPORT,
     SEATS,
     CHANCES,
+    COMBINATIONS,
     SEAT_CHANCES,
+    DECIDING_SEATS,
+    SEATS_VOTES,
     HOUSES,
     MODE_LEANS,
     SHELF_LIFE,

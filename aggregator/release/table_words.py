@@ -26,3 +26,11 @@ class LeanKind(StrEnum):
     MODE = "mode"
     POPULATION = "population"
     ASKED_TOGETHER = "asked_together"
+
+
+class SeatsVotes(StrEnum):
+    """What is read off how seats follow votes."""
+
+    CURVE = "curve"
+    RESPONSIVENESS = "responsiveness"
+    LEAD_AT_EQUAL_VOTES = "lead_at_equal_votes"

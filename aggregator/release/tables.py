@@ -12,16 +12,21 @@ from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.release.assumptions_table import build_assumptions_table
 from aggregator.release.chances_table import build_chances_table
 from aggregator.release.codes import contest_codes
+from aggregator.release.combinations_table import build_combinations_table
+from aggregator.release.deciding_seats_table import build_deciding_seats_table
 from aggregator.release.houses_table import build_houses_table
 from aggregator.release.mode_leans_table import build_mode_leans_table
 from aggregator.release.model_checks import NO_CHECKS, ModelChecks
 from aggregator.release.poll_tables import build_polls_used_table, build_polls_weighed_table
 from aggregator.release.seats_tables import build_seat_chances_table, build_seats_table
+from aggregator.release.seats_votes_table import build_seats_votes_table
 from aggregator.release.support_table import build_support_table
 from aggregator.release.table_columns import TableSchema
 from aggregator.release.table_schemas import (
     ASSUMPTIONS,
     CHANCES,
+    COMBINATIONS,
+    DECIDING_SEATS,
     HOUSES,
     MODE_LEANS,
     POLLS_USED,
@@ -31,6 +36,7 @@ from aggregator.release.table_schemas import (
     SCREENS,
     SEAT_CHANCES,
     SEATS,
+    SEATS_VOTES,
     SHELF_LIFE,
     SUPPORT,
 )
@@ -42,8 +48,13 @@ class ReleaseTables:
 
     Attributes
     ----------
-    seats, seat_chances
+    seats, combinations
         None where nothing is counted in seats.
+    seat_chances, deciding_seats
+        None there too, and where lists fill all seats; the latter also where no winner of a seat adds one to
+        its party.
+    seats_votes
+        None where no shifted counts were made.
     predictive, prior_sensitivity
         None where they were not worked out.
     """
@@ -58,7 +69,10 @@ class ReleaseTables:
     polls_weighed: pd.DataFrame
     screens: pd.DataFrame
     seats: pd.DataFrame | None = None
+    combinations: pd.DataFrame | None = None
     seat_chances: pd.DataFrame | None = None
+    deciding_seats: pd.DataFrame | None = None
+    seats_votes: pd.DataFrame | None = None
     predictive: pd.DataFrame | None = None
     prior_sensitivity: pd.DataFrame | None = None
 
@@ -68,7 +82,10 @@ class ReleaseTables:
             (SUPPORT, self.support),
             (SEATS, self.seats),
             (CHANCES, self.chances),
+            (COMBINATIONS, self.combinations),
             (SEAT_CHANCES, self.seat_chances),
+            (DECIDING_SEATS, self.deciding_seats),
+            (SEATS_VOTES, self.seats_votes),
             (HOUSES, self.houses),
             (MODE_LEANS, self.mode_leans),
             (SHELF_LIFE, self.shelf_life),
@@ -90,6 +107,7 @@ def build_tables(
     shelf_life: pd.DataFrame,
     polls_worth: pd.DataFrame,
     screens: pd.DataFrame,
+    shifted: xr.Dataset | None = None,
     checks: ModelChecks = NO_CHECKS,
 ) -> ReleaseTables:
     """Summarise a run as the tables of its release.
@@ -109,6 +127,8 @@ def build_tables(
         where it was worked out.
     screens
         Questions that polls raise, as the schema ``SCREENS`` has them.
+    shifted
+        Polling day counted again with shifted votes; None where that was not done.
     checks
         Tests of the fit beside its convergence.
     """
@@ -131,7 +151,14 @@ def build_tables(
         ),
         screens=screens,
         seats=None if seats is None else build_seats_table(seats, contest=contest, codes=codes),
+        combinations=None if seats is None else build_combinations_table(seats, contest=contest),
         seat_chances=None if seats is None else build_seat_chances_table(seats),
+        deciding_seats=(
+            None if seats is None else build_deciding_seats_table(seats, contest=contest, codes=codes)
+        ),
+        seats_votes=(
+            None if seats is None or shifted is None else build_seats_votes_table(shifted, codes=codes)
+        ),
         predictive=checks.predictive,
         prior_sensitivity=checks.prior_sensitivity,
     )

@@ -13,8 +13,10 @@ import xarray as xr
 from aggregator.inputs.contest import CountingRule
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.release.cautions import publication_status
+from aggregator.release.chamber import describe_chamber
 from aggregator.release.chart_files import write_charts
 from aggregator.release.charts import build_charts, chart_frame
+from aggregator.release.codes import contest_codes
 from aggregator.release.contents import ReleaseContents
 from aggregator.release.draws_file import write_draws
 from aggregator.release.folder import RELEASES, shelf_of, write_folder
@@ -33,10 +35,9 @@ from aggregator.release.page import build_page
 from aggregator.release.predictive_words import predictive_questions
 from aggregator.release.replay_link import replay_link
 from aggregator.release.run_features import summarise_pace
-from aggregator.release.seats_tables import seats_in_chamber
+from aggregator.release.seats_tables import mean_list_seats
 from aggregator.release.table_files import round_table, write_table
 from aggregator.release.tables import ReleaseTables, build_tables
-from aggregator.seats.majorities import majority_line
 from aggregator.verdict import Verdict
 
 PUBLIC = "public"
@@ -80,6 +81,7 @@ def write_release(
     screens: pd.DataFrame,
     verdict: Verdict,
     settings: Mapping[str, object],
+    shifted: xr.Dataset | None = None,
     checks: ModelChecks = NO_CHECKS,
     out: Path | None = None,
 ) -> ReleaseWritten:
@@ -105,6 +107,8 @@ def write_release(
         lies under ``releases/failed/``.
     settings
         Settings of the run for the note and the manifest, ``seed`` among them.
+    shifted
+        Polling day counted again with shifted votes, for seats against votes; None where that was not done.
     checks
         Tests of the fit beside its convergence; they inform, and fail nothing.
     out
@@ -133,6 +137,7 @@ def write_release(
         screens=screens,
         verdict=verdict,
         settings=settings,
+        shifted=shifted,
         checks=checks,
     )
     reader_half = EMBARGOED if contents.status.unpublished else PUBLIC
@@ -185,6 +190,7 @@ def build_contents(
     screens: pd.DataFrame,
     verdict: Verdict,
     settings: Mapping[str, object],
+    shifted: xr.Dataset | None = None,
     checks: ModelChecks = NO_CHECKS,
 ) -> ReleaseContents:
     """Work out everything a release says, without writing anything; parameters as for ``write_release``."""
@@ -198,20 +204,20 @@ def build_contents(
             shelf_life=shelf_life,
             polls_worth=polls_worth,
             screens=screens,
+            shifted=shifted,
             checks=checks,
         )
     )
-    chamber = None if counted is None else seats_in_chamber(counted)
-    majority = None if chamber is None else majority_line(contest, chamber=chamber)
+    chamber = None if counted is None else describe_chamber(counted, contest=contest)
     return ReleaseContents(
         inputs=inputs,
         tables=tables,
         verdict=verdict,
         status=publication_status(contest, run_date=inputs.run_date, unpublished=inputs.unpublished),
         settings=settings,
-        headlines=build_headlines(tables, contest=contest, chamber=chamber, majority=majority),
+        headlines=build_headlines(tables, contest=contest, chamber=chamber),
         chamber=chamber,
-        majority=majority,
+        list_seats=None if counted is None else mean_list_seats(counted, codes=contest_codes(contest)),
         pace=summarise_pace(draws, prior_sd=_pace_prior(settings)),
     )
 

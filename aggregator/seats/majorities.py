@@ -32,10 +32,14 @@ from aggregator.inputs.contest import OTHERS, Alliance, Contest
 from models.dimensions import CHAIN, DRAW, PARTY
 
 FloatArray = npt.NDArray[np.float64]
+IntArray = npt.NDArray[np.int64]
 
 NO_CODE = ""
 FEWEST_DRAWS = 4
 """Draws of a chain below which its autocorrelation cannot be measured."""
+
+REAL_CHANCE = 0.01
+"""What is less likely than this is exceptionally unlikely on the IPCC's scale, and is not looked into."""
 
 
 class Outcome(StrEnum):
@@ -52,9 +56,24 @@ type OutcomeInDraws = tuple[Outcome, str, FloatArray]
 """An outcome, its code, and whether it happens in each draw: shape (chain, draw), values 0 to 1."""
 
 
-def majority_line(contest: Contest, *, chamber: int) -> int:
-    """Seats that make a majority: the contest's own number, or the smallest whole number above half."""
-    return contest.counting.majority or chamber // 2 + 1
+def majority_line(contest: Contest, *, chamber: npt.ArrayLike) -> IntArray:
+    """Seats that make a majority: the contest's own number, or the smallest whole number above half.
+
+    Parameters
+    ----------
+    contest
+        May set a number of its own, which overhang seats do not move.
+    chamber
+        Seats in the chamber, any shape: one number by draw where overhang seats enlarge it.
+
+    Returns
+    -------
+    numpy.ndarray
+        Shape of ``chamber``.
+    """
+    size = np.asarray(chamber, dtype=np.int64)
+    own = contest.counting.majority
+    return size // 2 + 1 if own is None else np.full_like(size, own)
 
 
 def leads_in_draws(held: xr.DataArray, *, outcome: Outcome) -> list[OutcomeInDraws]:
@@ -72,14 +91,14 @@ def leads_in_draws(held: xr.DataArray, *, outcome: Outcome) -> list[OutcomeInDra
     list of (outcome, code, happens)
         One per party, in the order of ``held``; ``happens`` has dims (chain, draw).
     """
-    parties, values = _parties_of(held)
+    parties, values = parties_and_holdings(held)
     most = values == values.max(axis=-1, keepdims=True)
     parts = most / most.sum(axis=-1, keepdims=True)
     return [(outcome, code, parts[..., place]) for place, code in enumerate(parties)]
 
 
 def majorities_in_draws(
-    seats: xr.DataArray, *, alliances: Iterable[Alliance], majority: int
+    seats: xr.DataArray, *, alliances: Iterable[Alliance], majority: npt.ArrayLike
 ) -> list[OutcomeInDraws]:
     """Whether a majority is held alone, only as an alliance, or not at all, draw by draw.
 
@@ -90,7 +109,7 @@ def majorities_in_draws(
     alliances
         Alliances of the day.
     majority
-        Seats that make a majority.
+        Seats that make a majority: one number, or dims (chain, draw) where the chamber's size differs.
 
     Returns
     -------
@@ -98,14 +117,15 @@ def majorities_in_draws(
         ``happens`` has dims (chain, draw): 1 where it happens, 0 where not. The code of ``no_majority`` is
         empty.
     """
-    parties, won = _parties_of(seats)
+    parties, won = parties_and_holdings(seats)
     place = {code: index for index, code in enumerate(parties)}
-    alone = won >= majority
+    line = np.asarray(majority)
+    alone = won >= line[..., None]
     somebody = alone.any(axis=-1)
     found = [(Outcome.MAJORITY_ALONE, code, alone[..., index]) for code, index in place.items()]
     for alliance in alliances:
         members = [place[member] for member in alliance.members]
-        together = won[..., members].sum(axis=-1) >= majority
+        together = won[..., members].sum(axis=-1) >= line
         only_together = together & ~alone[..., members].any(axis=-1)
         found.append((Outcome.MAJORITY_ONLY_AS_ALLIANCE, alliance.code, only_together))
         somebody = somebody | together
@@ -113,7 +133,33 @@ def majorities_in_draws(
     return [(outcome, code, happens.astype(np.float64)) for outcome, code, happens in found]
 
 
-def _parties_of(held: xr.DataArray) -> tuple[list[str], npt.NDArray[Any]]:
+def codes_near_majority(
+    seats: xr.DataArray, *, alliances: Iterable[Alliance], majority: npt.ArrayLike
+) -> dict[str, tuple[str, ...]]:
+    """Find the parties and alliances with a real chance of a majority, and their members.
+
+    Parameters
+    ----------
+    seats, alliances, majority
+        As for :func:`majorities_in_draws`.
+
+    Returns
+    -------
+    dict
+        Members by code, parties first: those that hold the majority in ``REAL_CHANCE`` of the draws or more,
+        an alliance whether or not a member does so alone.
+    """
+    parties, won = parties_and_holdings(seats)
+    line = np.asarray(majority)
+    members = {code: (code,) for code in parties} | {each.code: each.members for each in alliances}
+    return {
+        code: of
+        for code, of in members.items()
+        if (won[..., [parties.index(m) for m in of]].sum(axis=-1) >= line).mean() >= REAL_CHANCE
+    }
+
+
+def parties_and_holdings(held: xr.DataArray) -> tuple[list[str], npt.NDArray[Any]]:
     """Codes of the parties, others left out, and what they hold: shape (chain, draw, party)."""
     codes = [str(code) for code in held[PARTY].values]
     parties = [code for code in codes if code != OTHERS]

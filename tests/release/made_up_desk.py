@@ -17,6 +17,7 @@ from aggregator.problems import Problem, Severity
 from aggregator.release.check_schemas import PRIOR_SENSITIVITY
 from aggregator.release.model_checks import ModelChecks
 from aggregator.screens.questions import Question, Screen, questions_table
+from aggregator.seats.seats_votes import plan_shifts
 from aggregator.verdict import Verdict
 from tests.made_up_draws import RUN_DATE, made_up_contest, made_up_draws, made_up_last_result
 
@@ -118,19 +119,27 @@ def made_up_seats(draws: xr.Dataset, *, seats_per_region: int = 8, seed: int = 2
     parties = draws["party"].values
     local = rng.normal(0, 0.4, (len(codes), len(parties)))
 
-    def winners(support: np.ndarray) -> np.ndarray:
+    def shares_of(support: np.ndarray) -> np.ndarray:
         shares = support[..., where, :] * np.exp(local)
+        return shares / shares.sum(axis=-1, keepdims=True)
+
+    def winners(shares: np.ndarray) -> np.ndarray:
         return shares.argmax(axis=-1)[..., None] == np.arange(len(parties))
 
-    over_time = winners(draws["support"].transpose("chain", "draw", "date", "region", "party").values)
-    final = winners(draws["support_polling_day"].transpose("chain", "draw", "region", "party").values)
+    dated = draws["support"].transpose("chain", "draw", "date", "region", "party").values
+    over_time = winners(shares_of(dated))
+    votes = shares_of(draws["support_polling_day"].transpose("chain", "draw", "region", "party").values)
+    final = winners(votes)
     share = draws["support_polling_day"].mean(("chain", "draw")).values[where] * np.exp(local)
     share /= share.sum(axis=-1, keepdims=True)
     return xr.Dataset(
         {
             "seats": (("chain", "draw", "date", "party"), over_time.sum(axis=-2).astype(np.int16)),
             "seats_polling_day": (("chain", "draw", "party"), final.sum(axis=-2).astype(np.int16)),
+            "won": (("chain", "draw", "seat", "party"), final.astype(np.int8)),
+            "seat_votes": (("chain", "draw", "seat", "party"), votes.astype(np.float32)),
             "seat_chance": (("seat", "party"), final.mean(axis=(0, 1)).astype(np.float32)),
+            "seat_expected": (("seat", "party"), final.mean(axis=(0, 1))),
             "seat_share": (("seat", "party"), share.astype(np.float32)),
             "last_share": (("seat", "party"), share.astype(np.float32)),
         },
@@ -142,7 +151,41 @@ def made_up_seats(draws: xr.Dataset, *, seats_per_region: int = 8, seed: int = 2
             "seat": codes,
             "seat_name": ("seat", names),
             "seat_region": ("seat", [regions[place] for place in where]),
+            "seat_magnitude": ("seat", np.ones(len(codes), dtype=np.int64)),
         },
+        attrs={"chamber": len(codes)},
+    )
+
+
+def made_up_shifted(draws: xr.Dataset, *, seats: int = 24) -> xr.Dataset:
+    """Polling day under shifted votes, seats by the cube of the votes; no code of the project counts them."""
+    contest = made_up_contest()
+    votes = draws["national_support_polling_day"]
+    plan = plan_shifts(
+        votes,
+        codes={"FER": ("FER",), "LAN": ("LAN",), "GLOW": contest.alliances[0].members},
+        pairs=[("FER", "LAN"), ("GLOW", "FER")],
+    )
+    flat = votes.transpose("chain", "draw", "party").values.reshape(-1, 1, votes.sizes["party"])
+    share = flat * np.exp(plan.sel(party=votes["party"]).values)
+    share /= share.sum(axis=-1, keepdims=True)
+    cubed = share**3 / (share**3).sum(axis=-1, keepdims=True)
+    dims = ("draw", "shift", "party")
+    return xr.Dataset(
+        {"seats": (dims, np.round(seats * cubed)), "votes": (dims, share)},
+        coords={"party": votes["party"]} | {name: plan[name] for name in ("code", "against", "log_factor")},
+    )
+
+
+def with_overhang(seats: xr.Dataset, *, code: str = "HED", most: int = 3, seed: int = 5) -> xr.Dataset:
+    """The same seats in a mixed chamber that grows: up to some seats more for one party, from lists."""
+    rng = np.random.default_rng(seed)
+    extra = rng.integers(0, most + 1, (seats.sizes["chain"], seats.sizes["draw"]))
+    more = xr.DataArray(extra, dims=("chain", "draw")) * (seats["party"] == code)
+    return seats.assign(
+        seats=(seats["seats"] + more).astype(np.int16),
+        seats_polling_day=(seats["seats_polling_day"] + more).astype(np.int16),
+        list_seats_polling_day=more.astype(np.int16),
     )
 
 
@@ -275,6 +318,7 @@ def made_up_run(
         "inputs": inputs,
         "draws": draws,
         "seats": seats,
+        "shifted": made_up_shifted(draws),
         "checks": made_up_checks(draws, seats),
         "shelf_life": made_up_shelf_life(inputs.contest),
         "polls_worth": made_up_polls_worth(inputs),

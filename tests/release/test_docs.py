@@ -18,6 +18,9 @@ CHARTS = (
     "alliances_over_time",
     "seats_on_polling_day",
     "seats_over_time",
+    "combinations",
+    "deciding_seats",
+    "seats_against_votes",
     "house_leans",
     "poll_worth",
 )

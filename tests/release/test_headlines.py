@@ -7,6 +7,7 @@ from pathlib import Path
 import pandas as pd
 import pytest
 
+from aggregator.release.chamber import Chamber
 from aggregator.release.headlines import build_headlines
 from aggregator.release.rounding import chance_text, share_interval_text, share_text, whole_text
 from aggregator.release.table_files import round_table
@@ -23,6 +24,8 @@ from tests.release.made_up_desk import (
     made_up_seats,
     made_up_shelf_life,
 )
+
+CHAMBER = Chamber(24, 13, size=(24, 24), line=(13, 13), middle_line=13, grows=False, line_moves=False)
 
 
 @pytest.fixture(scope="module")
@@ -56,7 +59,7 @@ def with_chance(tables: ReleaseTables, outcome: Outcome, probability: float, wor
 
 
 def headlines(tables, contest):
-    return build_headlines(tables, contest=contest, chamber=24, majority=13)
+    return build_headlines(tables, contest=contest, chamber=CHAMBER)
 
 
 def test_the_numbers_of_the_support_sentence_are_those_of_the_table(tables, inputs):
@@ -127,7 +130,7 @@ def test_the_statements_are_never_mixed(tables, inputs):
     phrases = ("people asked today", "if people voted on", "on polling day")
     cases = [headlines(tables, inputs.contest)]
     without = replace(tables, seats=None, seat_chances=None)
-    cases.append(build_headlines(without, contest=contest_without_seats(), chamber=None, majority=None))
+    cases.append(build_headlines(without, contest=contest_without_seats(), chamber=None))
     for told in cases:
         for sentence in told.sentences:
             assert sum(phrase in sentence.lower() for phrase in phrases) == 1, sentence
@@ -138,7 +141,7 @@ def test_without_seats_the_second_sentence_is_about_the_lead_on_the_day_of_the_r
     without = replace(
         with_chance(tables, Outcome.MOST_SUPPORT, probability, word), seats=None, seat_chances=None
     )
-    told = build_headlines(without, contest=contest_without_seats(), chamber=None, majority=None).seats
+    told = build_headlines(without, contest=contest_without_seats(), chamber=None).seats
     assert told.startswith("If people voted on 6 March 2033,")
     assert "seats" not in told
     assert ("would be very likely (95 %) to lead" in told) is (probability > 0.66)

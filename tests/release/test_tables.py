@@ -24,6 +24,7 @@ from tests.release.made_up_desk import (
     made_up_screens,
     made_up_seats,
     made_up_shelf_life,
+    made_up_shifted,
 )
 
 WHOLE = [Level.PARTY, Level.OTHERS]
@@ -46,6 +47,7 @@ def tables(run):
         shelf_life=made_up_shelf_life(inputs.contest),
         polls_worth=made_up_polls_worth(inputs),
         screens=made_up_screens(inputs),
+        shifted=made_up_shifted(draws),
         checks=made_up_checks(draws, seats),
     )
 

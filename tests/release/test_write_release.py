@@ -34,6 +34,9 @@ CHARTS = (
     "poll_worth",
     "seats_on_polling_day",
     "seats_over_time",
+    "combinations",
+    "deciding_seats",
+    "seats_against_votes",
 )
 HOSTILE = "<script>alert('x')</script>"
 

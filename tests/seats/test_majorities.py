@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import arviz as az
 import numpy as np
+import numpy.typing as npt
 import pytest
 import xarray as xr
 from scipy.stats import beta
@@ -32,7 +33,7 @@ def seats_of(*draws: tuple[int, int, int]) -> xr.DataArray:
 
 
 def chances(
-    seats: xr.DataArray, *, alliances: tuple[Alliance, ...] = (), majority: int
+    seats: xr.DataArray, *, alliances: tuple[Alliance, ...] = (), majority: npt.ArrayLike
 ) -> dict[tuple[str, str], float]:
     """Chance of every outcome by its name and code."""
     outcomes = leads_in_draws(seats, outcome=Outcome.LARGEST)
@@ -84,6 +85,22 @@ def test_majority_is_the_smallest_whole_number_above_half(chamber: int, line: in
 def test_contest_may_set_its_own_majority() -> None:
     contest: Contest = made_up_contest().model_copy(update={"counting": Counting(majority=120)})
     assert majority_line(contest, chamber=180) == 120
+
+
+def test_a_chamber_that_grows_has_the_line_of_each_draw() -> None:
+    # Regular chamber 10, in the second draw two overhang seats: 6 of 10 is a majority, 6 of 12 is not.
+    seats = seats_of((6, 3, 1), (6, 4, 2), (4, 4, 2))
+    line = majority_line(made_up_contest(), chamber=seats.sum("party"))
+    assert line.tolist() == [[6, 7, 6]]
+    found = chances(seats, alliances=(GLOW,), majority=line)
+    assert found["majority_alone", "FER"] == pytest.approx(1 / 3)
+    assert found["majority_only_as_alliance", "GLOW"] == pytest.approx(1 / 3)
+    assert found["no_majority", ""] == pytest.approx(1 / 3)
+
+
+def test_overhang_does_not_move_the_contests_own_majority() -> None:
+    contest: Contest = made_up_contest().model_copy(update={"counting": Counting(majority=6)})
+    assert majority_line(contest, chamber=np.array([[10, 12]])).tolist() == [[6, 6]]
 
 
 def test_monte_carlo_error_of_independent_draws_is_the_binomial_one() -> None:

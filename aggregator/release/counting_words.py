@@ -1,0 +1,88 @@
+"""How votes become seats, in the words of the method note."""
+
+from __future__ import annotations
+
+from aggregator.inputs.contest import CountingRule
+from aggregator.inputs.counting_terms import Across, CountingTerms, Divisors, Overhang, Quota
+from aggregator.release.combination_words import listed
+from aggregator.release.contents import ReleaseContents
+
+_BY_ROW = (
+    "In each draw, every seat or district starts from its last result and moves with its region's support, "
+    "strongholds not all alike, plus local noise of its own; those of a region are then re-centred so that "
+    "together they show the region's support."
+)
+_METHODS = {
+    Divisors.DHONDT: "D'Hondt's divisors",
+    Divisors.SAINTE_LAGUE: "Sainte-Laguë's divisors",
+    Divisors.MODIFIED_SAINTE_LAGUE: "the modified divisors of Sainte-Laguë",
+    Quota.HARE: "largest remainders after the Hare quota",
+    Quota.DROOP: "largest remainders after the Droop quota",
+}
+_ACROSS = {
+    Across.DISTRICT: "district by district",
+    Across.REGION: "region by region",
+    Across.COUNTRY: "over the whole country",
+}
+_OVERHANG = {
+    Overhang.KEPT: "a party with more local seats than its part keeps them, and the chamber grows by them",
+    Overhang.LEVELLED: "where a party has more local seats than its part the chamber grows until all is in "
+    "proportion",
+    Overhang.WITHIN: "a party with more local seats than its part keeps them, and the others share the rest",
+}
+
+
+def describe_counting(contents: ReleaseContents) -> list[str]:
+    """Say how this contest counts, rule by rule."""
+    groups = contents.contest.counting_groups
+    sentences = [_BY_ROW] if any(terms.elects_by_row for terms, _ in groups) else []
+    for terms, regions in groups:
+        where = ""
+        if len(groups) > 1:
+            where = f"In {listed([contents.region_names.get(code, code) for code in regions])}: "
+        sentences += [f"{where}{_rule(terms)}", *_threshold(terms)]
+    return sentences
+
+
+def _rule(terms: CountingTerms) -> str:
+    match terms.rule:
+        case CountingRule.PLURALITY:
+            return "The party with most votes wins the seat."
+        case CountingRule.TWO_ROUND:
+            finalists = (
+                "the first two"
+                if terms.run_off_threshold is None
+                else f"all with {terms.run_off_threshold:g} % or more"
+            )
+            return (
+                f"Who has more than {terms.outright:g} % of the votes wins the seat; else {finalists} run "
+                "again, and the voters of the rest move on at rates that the desk states, drawn with their "
+                "spread."
+            )
+        case CountingRule.MIXED_PARALLEL:
+            return (
+                "The party with most votes wins the local seat; beside them, seats from lists are shared out "
+                f"{_lists(terms)}."
+            )
+        case CountingRule.MIXED_COMPENSATORY:
+            return (
+                "The party with most votes wins the local seat; seats from lists then bring all to "
+                f"proportion, {_lists(terms)}: {_OVERHANG[terms.overhang]}."
+            )
+        case _:
+            return f"Seats are shared out among lists {_lists(terms)}."
+
+
+def _lists(terms: CountingTerms) -> str:
+    method = terms.divisors or terms.quota
+    by = f" by {_METHODS[method]}" if method is not None else ""
+    return f"{_ACROSS[terms.across]}{by}" if terms.across is not None else by.strip()
+
+
+def _threshold(terms: CountingTerms) -> list[str]:
+    if terms.threshold is None:
+        return []
+    across = f" {_ACROSS[terms.threshold_across]}" if terms.threshold_across is not None else ""
+    joint = "" if terms.alliance_threshold is None else f" ({terms.alliance_threshold:g} % for a joint list)"
+    free = f" {listed(list(terms.exempt))} need not." if terms.exempt else ""
+    return [f"A list must have {terms.threshold:g} % of the votes{joint}, counted{across}.{free}"]
