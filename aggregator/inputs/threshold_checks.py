@@ -38,12 +38,10 @@ def _shares(
     codes = list(contest.party_codes)
     votes = last_result[codes].fillna(0.0)
     here = last_result["region"].isin(regions)
-    if terms.across is Across.COUNTRY:
+    if terms.threshold_across is Across.COUNTRY:
         # Lists across the country are those of the regions that count alike, and so is their threshold.
         whole = "the country" if here.all() else ", ".join(regions)
         votes = votes[here].sum().to_frame(whole).T
-    elif terms.threshold_across is Across.COUNTRY:
-        votes = votes.sum().to_frame("the country").T
     elif terms.threshold_across is Across.REGION:
         votes = votes[here].groupby(last_result.loc[here, "region"], sort=False).sum()
     else:

@@ -10,9 +10,11 @@ import numpy as np
 import pandas as pd
 
 from aggregator.errors import InputError
-from aggregator.inputs.contest import Contest, CountingRule
+from aggregator.inputs.contest import Contest
+from aggregator.inputs.counting_terms import LIST_RULES, CountingTerms
 from aggregator.problems import Problem
 from aggregator.release.codes import Code, contest_codes
+from aggregator.seats.count_result import count_result, votes_say_seats
 
 COUNTRY = ""
 """How tables call the whole country."""
@@ -95,30 +97,73 @@ def seats_from_leads(votes: pd.DataFrame) -> pd.DataFrame:
     return leads.div(leads.sum(axis=1), axis=0)
 
 
+@dataclass(frozen=True)
+class OutcomeSeats:
+    """Seats of an outcome.
+
+    Attributes
+    ----------
+    total
+        Seats of the whole chamber, index party.
+    won
+        Who won a seat of each row, 0 or 1, index seat, columns parties; None where rows elect nobody.
+    """
+
+    total: pd.Series
+    won: pd.DataFrame | None
+
+
 def has_seats(outcome: pd.DataFrame, *, contest: Contest) -> bool:
-    """Whether an outcome says who won which seat, by plurality."""
-    return contest.counting.rule is CountingRule.PLURALITY and bool(outcome["seat"].astype(bool).all())
+    """Tell whether the votes of an outcome say who won which seats: not where a second round decides."""
+    if not votes_say_seats(contest):
+        return False
+    by_row = [r for terms, regions in contest.counting_groups if terms.elects_by_row for r in regions]
+    rows = outcome[outcome["region"].isin(by_row)] if len(contest.region_codes) > 1 else outcome
+    return bool(rows["seat"].astype(bool).all())
 
 
-def seats_of_outcome(outcome: pd.DataFrame, *, contest: Contest) -> pd.DataFrame:
-    """Who won each seat, 0 or 1, index seat, columns parties.
+def seats_of_outcome(outcome: pd.DataFrame, *, contest: Contest) -> OutcomeSeats:
+    """Count the seats of an outcome by the contest's rules.
 
     Raises
     ------
     InputError
-        If two parties have the most votes in a seat: votes alone do not say who won it.
+        If a tie leaves a seat open: votes alone do not say who won it.
     """
     votes = votes_in_seats(outcome, contest=contest)
-    won = seats_from_leads(votes)
-    tied = won.index[won.max(axis=1) < 1.0]
+    single = [r for terms, regions in contest.counting_groups if not _only_lists(terms) for r in regions]
+    leads = seats_from_leads(votes[votes.index.get_level_values("region").isin(single)])
+    tied = leads.index[leads.max(axis=1) < 1.0]
     if len(tied):
-        raise InputError([_tie(str(seat), won.loc[(region, seat)]) for region, seat in tied])
-    return won.droplevel("region")
+        raise InputError([_tie(str(seat), leads.loc[(region, seat)]) for region, seat in tied])
+    placed = outcome.assign(region=votes.index.get_level_values("region"))
+    counted = count_result(placed, contest=contest)
+    if int(counted["ties"]):
+        raise InputError([_tied_lists()])
+    parties = list(contest.party_codes)
+    total = counted["seats"].to_series()[parties]
+    if "won" not in counted:
+        return OutcomeSeats(total, None)
+    known = set(counted["seat"].to_numpy().tolist())
+    order = [seat for seat in outcome["seat"].astype(str) if seat in known]
+    won = counted["won"].sel(seat=order, party=parties).transpose("seat", "party").to_numpy() > 0
+    return OutcomeSeats(total, pd.DataFrame(won.astype(float), index=order, columns=parties))
+
+
+def _only_lists(terms: CountingTerms) -> bool:
+    return terms.rule in LIST_RULES
 
 
 def _tie(seat: str, shares: pd.Series) -> Problem:
     tied = " and ".join(str(code) for code in shares.index[shares > 0])
     return Problem(
         OUTCOME_FILE, None, None, f"the same votes for {tied} in seat {seat}", "one winner",
+        "Add one vote to whom the lot, or the court, gave the seat.", _RULE,
+    )  # fmt: skip
+
+
+def _tied_lists() -> Problem:
+    return Problem(
+        OUTCOME_FILE, None, None, "two lists with the same claim to a last seat", "one winner",
         "Add one vote to whom the lot, or the court, gave the seat.", _RULE,
     )  # fmt: skip

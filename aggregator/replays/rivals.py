@@ -6,6 +6,7 @@ import numpy as np
 import pandas as pd
 
 from aggregator.inputs.contest import Contest
+from aggregator.inputs.counting_terms import CountingRule
 from aggregator.replays.methods import Method
 from aggregator.replays.result_shares import COUNTRY, result_shares, seats_from_leads, votes_in_seats
 from aggregator.replays.whole_polls import national_polls, region_polls
@@ -81,8 +82,12 @@ class Rivals:
         return said
 
     def seats(self, day: pd.Timestamp) -> dict[Method, pd.DataFrame]:
-        """Part of each seat each rival gives each party on a day: index seat, columns parties."""
-        if self._votes is None or self._last is None:
+        """Part of each seat each rival gives each party on a day: index seat, columns parties.
+
+        Rivals count leaders, so they are silent where seats are not counted by plurality.
+        """
+        rules = {terms.rule for terms, _ in self._contest.counting_groups}
+        if self._votes is None or self._last is None or rules != {CountingRule.PLURALITY}:
             return {}
         said = {Method.LAST_RESULT: seats_from_leads(self._votes).droplevel("region")}
         change = self._changes(_published_by(self._national, day), day)

@@ -179,8 +179,8 @@ def _truth(outcome: pd.DataFrame, *, contest: Contest, codes: ScoredCodes) -> _T
     support = result_shares(outcome, contest=contest) @ codes.sums.T
     if not has_seats(outcome, contest=contest):
         return _Truth(support, None, None)
-    won = seats_of_outcome(outcome, contest=contest)
-    return _Truth(support, codes.sums @ won.sum(), won)
+    seats = seats_of_outcome(outcome, contest=contest)
+    return _Truth(support, codes.sums @ seats.total, seats.won)
 
 
 def _rivals_by_day(

@@ -80,7 +80,6 @@ def _prepare(votes: pd.DataFrame, contest: Contest) -> PreparedSeats:
             rows=None if rows is None or mine is None else rows.of_regions(mine),
             region_votes=share[None, None, of_group],
             turnout=turnout[:, of_group],
-            country=(cast.sum(axis=0) / cast.sum())[None, None],
             list_lot=np.linspace(0, 1, len(parties))[None],
         )
         codes = [regions[r] for r in of_group]

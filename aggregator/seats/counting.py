@@ -210,16 +210,12 @@ def count_shifted(
     """
     factor = np.exp(np.asarray(shifts, dtype=np.float64)).astype(np.float32)
     groups = [_shift_group(group, factor, weight=prepared.weight, every=every) for group in prepared.groups]
-    country = np.sum(
-        [np.einsum("dr,dtrp->dtp", g.votes.turnout, g.votes.region_votes.astype(float)) for g in groups],
-        axis=0,
-    )
+    shifted = replace(prepared, groups=tuple(groups))
+    days = [contest.last_polling_day] * factor.shape[0]
+    counted = count_chamber(shifted, contest=contest, days=days)
+    by_shift = [sum(g.votes.votes_together(place) for g in groups) for place in range(factor.shape[0])]
+    country = np.stack(by_shift, axis=1)
     country /= country.sum(axis=-1, keepdims=True)
-    shifted = replace(
-        prepared,
-        groups=tuple(replace(g, votes=replace(g.votes, country=country)) for g in groups),
-    )
-    counted = count_chamber(shifted, contest=contest, days=[contest.last_polling_day] * factor.shape[0])
     dims = (DRAW, SHIFT, PARTY)
     return xr.Dataset(
         {"seats": (dims, counted.seats), "votes": (dims, country)}, coords={PARTY: list(prepared.parties)}
@@ -279,7 +275,7 @@ def _count_group(
         parts.append((places, rule(votes, replace(group.terms, joint_lists=joint))))
     if len(parts) == 1:
         return parts[0][1]
-    seats = np.empty((*group.votes.country.shape[:2], len(parties)), dtype=np.int16)
+    seats = np.empty((*group.votes.region_votes.shape[:2], len(parties)), dtype=np.int16)
     for places, counted in parts:
         seats[:, places] = counted.seats
     with_polling_day = next(counted for places, counted in parts if len(days) - 1 in places)

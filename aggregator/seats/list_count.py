@@ -28,7 +28,7 @@ def count_by_lists(votes: GroupVotes, terms: GroupTerms) -> SeatsCounted:
     terms
         With members by district, or seats by region or in all.
     """
-    n_draws, n_dates, n_parties = votes.country.shape
+    n_draws, n_dates, _, n_parties = votes.region_votes.shape
     by_district = terms.across is Across.DISTRICT
     places = terms.magnitude if by_district else terms.list_seats
     seats = np.zeros((n_draws, n_dates, n_parties), dtype=np.int16)
@@ -105,10 +105,9 @@ def _cast_votes(votes: GroupVotes, *, across: Across, date: int) -> FloatArray:
         # As they stand, not as shares: whole votes of a count stay whole, and ties between them exact.
         factor = rows.multiplier[:, date, rows.region_of_seat].astype(np.float64)
         return factor * rows.strength.transpose(0, 2, 1)
-    regional = votes.region_votes[:, date].astype(np.float64)
     if across is Across.REGION:
-        return regional
-    return np.einsum("dr,drp->dp", votes.turnout, regional)[:, None]
+        return votes.region_votes[:, date].astype(np.float64)
+    return votes.votes_together(date)[:, None]
 
 
 def _shares_for_threshold(
@@ -118,7 +117,9 @@ def _shares_for_threshold(
     if rule.threshold_across is rule.across:
         return cast / cast.sum(axis=-1, keepdims=True)
     if rule.threshold_across is Across.COUNTRY:
-        return np.repeat(votes.country[:, date, None], cast.shape[1], axis=1)
+        together = votes.votes_together(date)
+        together /= together.sum(axis=-1, keepdims=True)
+        return np.repeat(together[:, None], cast.shape[1], axis=1)
     if rule.threshold_across is Across.REGION and rule.across is Across.DISTRICT:
         regional = votes.region_votes[:, date, votes.in_rows.region_of_seat]
         return regional.astype(np.float64)

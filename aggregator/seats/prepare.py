@@ -135,7 +135,6 @@ def prepare_seats(
             priors=local_priors or LocalPriors(),
         )
     turnout = _turnout(draws, last_result, regions)
-    country = np.einsum("dr,dtrp->dtp", turnout.astype(np.float32), support).astype(np.float64)
     list_lot = rng.random((support.shape[0], len(parties)))
     groups = []
     for terms, names in contest.counting_groups:
@@ -145,7 +144,6 @@ def prepare_seats(
             rows=None if mine is None or rows is None else rows.of_regions(mine),
             region_votes=support[:, :, of_group],
             turnout=turnout[:, of_group],
-            country=country,
             list_lot=list_lot,
         )
         seats = seats_of(rows, mine)

@@ -88,8 +88,6 @@ class GroupVotes:
         Share of each region's vote, dims (draw, date, region, party).
     turnout
         Each region's part of the whole country's votes, dims (draw, region).
-    country
-        Share of the whole country's vote, other groups included, dims (draw, date, party).
     list_lot
         dims (draw, party), uniform on 0–1: the order in which tied lists are served.
     """
@@ -97,7 +95,6 @@ class GroupVotes:
     rows: SeatVotes | None
     region_votes: Float32Array
     turnout: FloatArray
-    country: FloatArray
     list_lot: FloatArray
 
     @property
@@ -112,9 +109,11 @@ class GroupVotes:
         rows = None
         if self.rows is not None:
             rows = replace(self.rows, multiplier=np.ascontiguousarray(self.rows.multiplier[:, dates]))
-        return replace(
-            self, rows=rows, region_votes=self.region_votes[:, dates], country=self.country[:, dates]
-        )
+        return replace(self, rows=rows, region_votes=self.region_votes[:, dates])
+
+    def votes_together(self, date: int) -> FloatArray:
+        """Votes of all regions of the group on one date, parts of the country's: dims (draw, party)."""
+        return np.einsum("dr,drp->dp", self.turnout, self.region_votes[:, date].astype(np.float64))
 
 
 @dataclass(frozen=True)

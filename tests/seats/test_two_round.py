@@ -33,9 +33,7 @@ def winner_of(
         lot=np.random.default_rng(1).random((draws, 1), dtype=np.float32),
     )
     nothing = np.zeros((draws, 1, 1, 4), dtype=np.float32)
-    votes = GroupVotes(
-        rows, nothing, np.ones((draws, 1)), nothing[:, :, 0].astype(float), np.zeros((draws, 4))
-    )
+    votes = GroupVotes(rows, nothing, np.ones((draws, 1)), np.zeros((draws, 4)))
     terms = CountingTerms(rule=CountingRule.TWO_ROUND, run_off_threshold=threshold, outright=outright)
     group = GroupTerms(terms, PARTIES, np.array([1]), np.array([], dtype=np.int64), transfers=part)
     counted = count_by_two_rounds(votes, group)
