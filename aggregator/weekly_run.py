@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import asdict, dataclass, replace
 from datetime import date
 from functools import partial
@@ -30,6 +30,7 @@ from aggregator.screens.screen_polls import screen_polls
 from aggregator.seats.counting import count_prepared
 from aggregator.seats.prepare import PreparedSeats, prepare_seats
 from aggregator.seats.shifted_chamber import count_votes_to_seats
+from aggregator.seats.swing_forms import SwingForm
 from aggregator.settings import (
     LEAN_STREAM,
     PREDICTIVE_STREAM,
@@ -41,6 +42,8 @@ from aggregator.settings import (
 from aggregator.shelf_life.worth import headline_code, polls_worth, summarise_shelf_life
 from models.dimensions import DATE
 from models.priors import shared_lean_points
+
+SWING = "how a region's move reaches its seats"
 
 
 @dataclass(frozen=True)
@@ -151,7 +154,9 @@ def refresh(
     )
 
 
-def _prepare_seats(inputs: DeskInputs, fit: Fit, draws: xr.Dataset) -> PreparedSeats | None:
+def _prepare_seats(
+    inputs: DeskInputs, fit: Fit, draws: xr.Dataset, *, form: SwingForm = SwingForm.LOG_RATIO
+) -> PreparedSeats | None:
     """Prepare the chamber for counting from draws; None where nothing is counted."""
     if inputs.contest.counting.rule is CountingRule.NONE or inputs.last_result is None:
         return None
@@ -163,6 +168,7 @@ def _prepare_seats(inputs: DeskInputs, fit: Fit, draws: xr.Dataset) -> PreparedS
         transfers=inputs.transfers,
         contest=inputs.contest,
         rng=_stream(fit, SEATS_STREAM),
+        form=form,
     )
 
 
@@ -177,9 +183,12 @@ def _test_model(inputs: DeskInputs, fit: Fit, seats: xr.Dataset | None) -> Model
     stream = partial(_stream, fit)
     with threadpool_limits(1):
         return ModelChecks(
-            alternatives=tuple(
-                _with_seats(alternative, inputs, fit, seats)
-                for alternative in lean_alternatives(inputs, fit, rng=stream(LEAN_STREAM))
+            alternatives=(
+                *(
+                    _with_seats(alternative, inputs, fit, seats)
+                    for alternative in lean_alternatives(inputs, fit, rng=stream(LEAN_STREAM))
+                ),
+                *_swing_alternatives(inputs, fit, seats),
             ),
             predictive=summarise_predictive(
                 fit.parameters,
@@ -211,11 +220,29 @@ def _with_seats(
     """Count the seats of another assumption; the run's own are those that the release shows."""
     if alternative.draws is None or alternative.in_use:
         return replace(alternative, seats=seats if alternative.in_use else None)
-    # Only polling day is asked for: a series without dates.
-    undated = alternative.draws["support_polling_day"].expand_dims({DATE: pd.DatetimeIndex([])})
-    draws = alternative.draws.assign(support=undated)
-    prepared = _prepare_seats(inputs, fit, draws)
-    return replace(alternative, seats=None if prepared is None else _count_prepared(inputs, prepared, draws))
+    return replace(alternative, seats=_count_polling_day(inputs, fit, alternative.draws))
+
+
+def _swing_alternatives(inputs: DeskInputs, fit: Fit, seats: xr.Dataset | None) -> Iterator[Alternative]:
+    """Count the same draws with other ways for a region's move to reach its seats."""
+    if seats is None or "won" not in seats:
+        return
+    names = ["national_support_polling_day", "support_polling_day", "turnout_weight"]
+    draws = fit.draws[names]
+    for form in SwingForm:
+        in_use = form is SwingForm.LOG_RATIO
+        counted = seats if in_use else _count_polling_day(inputs, fit, draws, form=form)
+        yield Alternative(SWING, form.value, in_use, draws, counted, 0.0)
+
+
+def _count_polling_day(
+    inputs: DeskInputs, fit: Fit, draws: xr.Dataset, *, form: SwingForm = SwingForm.LOG_RATIO
+) -> xr.Dataset | None:
+    """Count polling day alone, as a series without dates."""
+    undated = draws["support_polling_day"].expand_dims({DATE: pd.DatetimeIndex([])})
+    dated = draws.assign(support=undated)
+    prepared = _prepare_seats(inputs, fit, dated, form=form)
+    return None if prepared is None else _count_prepared(inputs, prepared, dated)
 
 
 def _weigh_polls(inputs: DeskInputs, fit: Fit) -> pd.DataFrame:

@@ -46,12 +46,17 @@ def assumptions_table(contents: ReleaseContents) -> PageTable | None:
     if seats:
         header += [f"{names[0]}: {what}" for what in ("seats", "most seats", "majority")]
     return PageTable(
-        "Polling day under other assumptions about the error that all polls share. Support in percent of the "
-        "vote, mean and 90 % interval below it; chances of the party with most support. Nothing in the polls "
-        "says which line is right.",
+        f"Polling day under other assumptions about the error that all polls share{_and_swing(table)}. "
+        "Support in percent of the vote, mean and 90 % interval below it; chances of the party with most "
+        "support. Nothing in the polls says which line is right.",
         tuple(header),
         tuple(body),
     )
+
+
+def _and_swing(table: pd.DataFrame) -> str:
+    swing = table["assumption"].str.contains("seats").any()
+    return " and about how a region's move reaches its seats" if swing else ""
 
 
 def shared_lean_sentences(contents: ReleaseContents) -> list[str]:
