@@ -23,7 +23,11 @@ PERCENT = 100.0
 
 
 def build_deciding_seats_table(
-    seats: xr.Dataset, *, contest: Contest, codes: Sequence[Code]
+    seats: xr.Dataset,
+    *,
+    contest: Contest,
+    codes: Sequence[Code],
+    counted_result: pd.DataFrame | None = None,
 ) -> pd.DataFrame | None:
     """Summarise each seat that elects one member, for each code with a real chance of a majority.
 
@@ -35,6 +39,8 @@ def build_deciding_seats_table(
         Gives the majority line and the rule of each region.
     codes
         The codes there are, in the order of the rows.
+    counted_result
+        Votes of the seats that have been counted: nothing is open there, and so they decide nothing.
 
     Returns
     -------
@@ -45,6 +51,8 @@ def build_deciding_seats_table(
     if "won" not in seats or "seat_votes" not in seats:
         return None
     among = single_member_seats(seats) & ~_made_up_for(seats, contest)
+    if counted_result is not None:
+        among &= ~seats[SEAT].isin(counted_result["seat"].astype(str).tolist()).to_numpy()
     if not among.any():
         return None
     won = seats["seats_polling_day"]

@@ -123,9 +123,9 @@ def _combinations_chart(
     return ReleaseChart(
         name="combinations",
         title=title,
-        reading="In each row, parties that can reach the majority line together and need every one of them "
-        "for it, likeliest first. Dot and line: mean and 90 % interval of their seats; number: chance of "
-        "reaching the line. "
+        reading="In each row, parties that can reach the majority line together and may need every one of "
+        "them for it. Dot and line: mean and 90 % interval of their seats; number: chance of reaching the "
+        "line. Shown are those that most often need every party, and alliances. "
         f"Arithmetic only: nothing is said of who would work with whom.{_line_reading(chamber)}",
         alt_text=with_alarms(
             f"{title}. {chamber.sentence} Chance, mean of seats, 90 % interval: {'; '.join(listed)}.",
@@ -144,7 +144,7 @@ def _deciding_seats_chart(
     listed = [
         f"{look.name}: "
         + ", ".join(
-            f"{seat_name(row)} {chance_text(row['decides'])} (wins it: {chance_text(row['chance'])})"
+            f"{seat_name(row)} {share_text(100 * row['decides'])} (wins it: {chance_text(row['chance'])})"
             for row in rows.head(3).to_dict("records")
         )
         for look, rows in panels

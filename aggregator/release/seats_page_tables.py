@@ -27,6 +27,7 @@ CLOSEST_SEATS = 12
 COMBINATIONS_SHOWN = 12
 CODES_SHOWN = 3
 SEATS_SHOWN = 6
+PERCENT = 100.0
 
 
 def seats_table(contents: ReleaseContents) -> PageTable | None:
@@ -63,19 +64,16 @@ def combinations_table(contents: ReleaseContents) -> PageTable | None:
             combination_text(row["combination"], contents.names)
             + (f"\n{contents.names[row['alliance']]}" if row["alliance"] else ""),
             f"{whole_text(row['mean'])}\n{whole_interval(row['q05'], row['q95'])}",
-            chance_text(row["chance"]),
-            chance_text(row["chance_minimal"]),
-            row["likelihood"],
+            f"{chance_text(row['chance'])}\n{row['likelihood']}",
         )
         for row in rows.to_dict("records")
     ]
     return PageTable(
-        f"Who reaches the majority line on polling day, and needs every party of the row for it. "
-        f"{chamber.sentence} Rows by the chance that every party is needed; all are in combinations.csv. "
-        "Arithmetic only: nothing is said of who would work with whom.",
-        ("Parties", "Seats", "Chance of a majority", "… and every party needed", "Chance in words"),
+        f"Who reaches the majority line on polling day. {chamber.sentence} Alliances, and the combinations "
+        "that most often need every one of their parties; all are in combinations.csv. Arithmetic only: "
+        "nothing is said of who would work with whom.",
+        ("Parties", "Seats", "Chance"),
         tuple(body),
-        words=frozenset({0, 4}),
     )
 
 
@@ -84,28 +82,30 @@ def deciding_seats_table(contents: ReleaseContents) -> PageTable | None:
     table, chamber = contents.tables.deciding_seats, contents.chamber
     if table is None or table.empty or chamber is None:
         return None
-    body = []
-    for code in codes_nearest_the_line(contents.tables, chamber=chamber, most=CODES_SHOWN):
-        for row in deciding_seats_of(table, code=code, most=SEATS_SHOWN).to_dict("records"):
-            body.append(
-                (
-                    seat_name(row),
-                    contents.region_names.get(row["region"], ""),
-                    contents.names[code],
-                    chance_text(row["decides"]),
-                    chance_text(row["chance"]),
-                    "–" if pd.isna(row["carries"]) else share_text(row["carries"]),
-                    row["too_close"],
-                )
-            )
+    codes = codes_nearest_the_line(contents.tables, chamber=chamber, most=CODES_SHOWN)
+    several = len(codes) > 1
+    body = [
+        (
+            seat_name(row),
+            contents.region_names.get(row["region"], ""),
+            *([contents.names[code]] if several else []),
+            share_text(PERCENT * row["decides"]),
+            chance_text(row["chance"]),
+            "–" if pd.isna(row["carries"]) else share_text(row["carries"]),
+            row["too_close"],
+        )
+        for code in codes
+        for row in deciding_seats_of(table, code=code, most=SEATS_SHOWN).to_dict("records")
+    ]
+    whom = "the parties and alliances nearest to the line" if several else contents.names[codes[0]]
+    columns = ("Seat", "Region", *(["For a majority of"] if several else []))
     return PageTable(
-        "The seats that most often decide whether there is a majority, for the parties and alliances nearest "
-        "to the line. Decides: chance that, in the order of the lead, this seat is the one at the line. "
-        "Carries: part of the variance of all their seats that comes with this one. Too close: nobody is "
-        "likely to win it.",
-        ("Seat", "Region", "For a majority of", "Decides", "Wins it", "Carries", "Too close"),
+        f"The seats that most often decide whether there is a majority for {whom}. Decides: chance that, in "
+        "the order of the lead, this seat is the one at the line. Carries: part of the variance of all their "
+        "seats that comes with this one. Too close: nobody is likely to win it.",
+        (*columns, "Decides", "Wins it", "Carries", "Too close"),
         tuple(body),
-        words=frozenset({0, 1, 2, 6}),
+        words=frozenset({*range(len(columns)), len(columns) + 3}),
     )
 
 
@@ -209,11 +209,17 @@ def equal_votes_sentences(contents: ReleaseContents) -> list[str]:
 def _equal_votes(row: dict[Hashable, Any], contents: ReleaseContents) -> str:
     code, rival = contents.names[row["code"]], contents.names[row["against"]]
     ends = row["q05"], row["q95"]
-    if row["mean"] < 0:
+    if round(row["mean"]) < 0:
         code, rival, ends = rival, code, (-row["q95"], -row["q05"])
+    more = round(abs(row["mean"]))
+    said = (
+        f"{code} would have {more:,} seat{'' if more == 1 else 's'} more"
+        if more
+        else "so would be their seats"
+    )
     return (
-        f"If {code} and {rival} had equal votes ({share_text(row['votes'])} each), {code} would have "
-        f"{whole_text(abs(row['mean']))} seats more (90 % interval {_signed(ends[0])} to {_signed(ends[1])})."
+        f"If {code} and {rival} had equal votes ({share_text(row['votes'])} each), {said} "
+        f"(90 % interval of the difference {_signed(ends[0])} to {_signed(ends[1])})."
     )
 
 

@@ -15,9 +15,11 @@ from aggregator.release.tables import ReleaseTables
 
 
 def likeliest_combinations(table: pd.DataFrame, *, most: int) -> pd.DataFrame:
-    """Pick the combinations of polling day that most often need every party, likeliest first."""
+    """Pick alliances, and combinations that most often need every party, of polling day; surest first."""
     rows = table[table["kind"] == Kind.ON_POLLING_DAY]
-    return rows.sort_values("chance_minimal", ascending=False, kind="stable").head(most)
+    rows = rows.assign(allied=rows["alliance"] != "")
+    chosen = rows.sort_values(["allied", "chance_minimal"], ascending=False, kind="stable").head(most)
+    return chosen.drop(columns="allied").sort_values("chance", ascending=False, kind="stable")
 
 
 def codes_nearest_the_line(

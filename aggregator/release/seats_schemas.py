@@ -148,8 +148,8 @@ COMBINATIONS = TableSchema(
 
 DECIDING_SEATS = TableSchema(
     "public/deciding_seats.csv",
-    "seat that elects one member and code with a chance of a majority of 1 % or more; not where list seats "
-    "make up for seats won, so that one more of these is one less of those",
+    "seat that elects one member and is not counted yet, and code with a chance of a majority of 1 % or "
+    "more; not where list seats make up for seats won, so that one more of these is one less of those",
     (
         *_SEAT,
         CODE,

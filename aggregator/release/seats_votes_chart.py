@@ -101,7 +101,7 @@ def _panel(
         base.mark_area(opacity=0.2).encode(y=y("q05"), y2="q95:Q"),
         base.mark_line(strokeWidth=2).encode(y=y("mean")),
         *_majority_layers(chamber, y, labelled=first, layout=layout),
-        *([_unit_layer(layout)] if first else []),
+        _unit_layer(layout),
         here.mark_point(size=80, filled=True, opacity=1, stroke="white", strokeWidth=1).encode(
             x=x, y=y("seats"), color=colour_of(looks), shape=shape_of(looks)
         ),

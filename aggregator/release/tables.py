@@ -154,7 +154,11 @@ def build_tables(
         combinations=None if seats is None else build_combinations_table(seats, contest=contest),
         seat_chances=None if seats is None else build_seat_chances_table(seats),
         deciding_seats=(
-            None if seats is None else build_deciding_seats_table(seats, contest=contest, codes=codes)
+            None
+            if seats is None
+            else build_deciding_seats_table(
+                seats, contest=contest, codes=codes, counted_result=inputs.counted_result
+            )
         ),
         seats_votes=(
             None if seats is None or shifted is None else build_seats_votes_table(shifted, codes=codes)
