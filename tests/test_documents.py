@@ -16,7 +16,7 @@ from aggregator.cli import app
 from aggregator.estimate.sampler_checks import Limits
 from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.seats.baseline import BaselinePriors
-from aggregator.seats.local_swing import LocalPriors
+from aggregator.seats.local_noise import LocalPriors
 from docs.make_pages import commands_page, guide_with_map
 from models.priors import Priors
 

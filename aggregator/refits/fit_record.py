@@ -12,7 +12,7 @@ import xarray as xr
 
 from aggregator.estimate.fit import Fit
 from aggregator.estimate.predictive_checks import summarise_predictive
-from aggregator.inputs.contest import CountingRule
+from aggregator.inputs.contest import Contest, CountingRule
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.refits.program_version import program_version
 from aggregator.seats.counting import count_seats
@@ -22,7 +22,7 @@ from models.dimensions import CHAIN, DATE, DRAW, PARTY, REGION
 
 # Enough for scores: the Monte Carlo error of a 95 % interval's end is then below a tenth of its width.
 MOST_DRAWS = 1000
-AGE = "age"
+AGE, CODE = "age", "code"
 AGES = tuple(range(91))
 POLL_OF = 1000
 
@@ -39,9 +39,9 @@ class FitRecord:
         ``national_support`` (draw, party) on the run date, ``national_support_polling_day`` (draw, party),
         ``support_polling_day`` (draw, region, party): shares 0–1, at most `MOST_DRAWS` draws. Where seats
         are counted, of polling day: ``seats_polling_day`` (draw, party), and ``seat_chance`` (seat, party)
-        over all draws, with the coordinate ``seat_region``. ``expected_error`` (age, party) in points: the
+        over all draws, with the coordinate ``seat_region``. ``expected_error`` (age, code) in points: the
         shelf-life formula's error of a poll of 1,000 taken ``age`` days before the run date and held
-        against polling day.
+        against polling day; the codes are parties and the alliances of polling day.
     facts
         ``as_of`` and ``polling_day`` (ISO dates), ``seed``, ``settings`` (those asked for), ``draws`` and
         ``target_accept`` (those in use in the end), ``passed``, ``verdict`` (its text), ``divergences``,
@@ -64,7 +64,7 @@ def build_data(inputs: DeskInputs, fit: Fit) -> xr.Dataset:
             "national_support": _in_one_row(thinned["national_support"].isel({DATE: -1}, drop=True)),
             "national_support_polling_day": _in_one_row(thinned["national_support_polling_day"]),
             "support_polling_day": _in_one_row(thinned["support_polling_day"]),
-            "expected_error": _expected_error(thinned),
+            "expected_error": _expected_error(thinned, inputs.contest),
         }
     )
     seats = _count_seats(inputs, fit)
@@ -72,7 +72,7 @@ def build_data(inputs: DeskInputs, fit: Fit) -> xr.Dataset:
         won = seats["seats_polling_day"].isel({DRAW: slice(None, None, _stride(fit.draws))})
         kept = seats[["seat_chance"]].drop_vars("seat_name", errors="ignore")
         data = data.merge(kept).assign(seats_polling_day=_in_one_row(won))
-    for name in (PARTY, REGION):
+    for name in (PARTY, REGION, CODE):
         data[name] = data[name].astype(str)
     data.attrs = {}
     return data
@@ -132,13 +132,12 @@ def _in_one_row(array: xr.DataArray) -> xr.DataArray:
     )
 
 
-def _expected_error(draws: xr.Dataset) -> xr.DataArray:
-    table = summarise_shelf_life(draws, sample=POLL_OF, ages=AGES)
+def _expected_error(draws: xr.Dataset, contest: Contest) -> xr.DataArray:
+    alliances = [a for a in contest.alliances if a.active_on(contest.last_polling_day)]
+    table = summarise_shelf_life(draws, sample=POLL_OF, ages=AGES, alliances=alliances)
     errors = table.pivot(index="age_days", columns="code", values="expected_error")
-    parties = [str(p) for p in draws[PARTY].to_numpy()]
-    return xr.DataArray(
-        errors[parties].to_numpy(), dims=(AGE, PARTY), coords={AGE: np.array(AGES), PARTY: parties}
-    )
+    codes = [*(str(p) for p in draws[PARTY].to_numpy()), *(a.code for a in alliances)]
+    return xr.DataArray(errors[codes].to_numpy(), dims=(AGE, CODE), coords={AGE: np.array(AGES), CODE: codes})
 
 
 def _count_seats(inputs: DeskInputs, fit: Fit) -> xr.Dataset | None:

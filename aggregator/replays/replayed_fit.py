@@ -13,7 +13,7 @@ class ReplayedFit(Protocol):
     """The record of one fit; whoever runs fits hands these over.
 
     ``data`` holds ``national_support_polling_day`` (draw, party), ``support_polling_day`` (draw, region,
-    party), both shares 0–1, ``expected_error`` (age, party) in points; where seats are counted also
+    party), both shares 0–1, ``expected_error`` (age, code) in points; where seats are counted also
     ``seats_polling_day`` (draw, party) and ``seat_chance`` (seat, party). ``facts`` holds ``as_of`` and what
     is known of the fit.
     """

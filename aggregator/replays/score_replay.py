@@ -315,9 +315,9 @@ def _expected_errors(fits: Iterable[ReplayedFit], *, contest: Contest) -> pd.Dat
     vote = pd.Timestamp(contest.last_polling_day)
     tables = []
     for fit in fits:
-        errors = fit.data["expected_error"].transpose("age", PARTY)
-        parties = [str(party) for party in errors[PARTY].values]
-        formula = pd.DataFrame(errors.to_numpy(), pd.Index(errors["age"].values, name="age"), parties)
+        errors = fit.data["expected_error"].transpose("age", "code")
+        codes = [str(code) for code in errors["code"].values]
+        formula = pd.DataFrame(errors.to_numpy(), pd.Index(errors["age"].values, name="age"), codes)
         left = (vote - as_of(fit)).days
         long = formula.reset_index().melt("age", var_name="code", value_name="expected_error")
         tables.append(

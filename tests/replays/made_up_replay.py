@@ -94,10 +94,11 @@ def made_up_replay(
                 "support_polling_day": (("draw", "region", "party"), regional),
                 "seats_polling_day": (("draw", "party"), seats.astype(np.int16)),
                 "seat_chance": (("seat", "party"), chance),
-                "expected_error": (("age", "party"), error),
+                "expected_error": (("age", "code"), error),
             },
             coords={
                 "party": parties,
+                "code": parties,
                 "region": list(contest.region_codes),
                 "seat": last["seat"].tolist(),
                 "seat_region": ("seat", last["region"].tolist()),

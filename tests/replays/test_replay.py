@@ -181,10 +181,11 @@ class Refits:
                 "support_polling_day": (("draw", "region", "party"), support),
                 "seats_polling_day": (("draw", "party"), won.astype(np.int16)),
                 "seat_chance": (("seat", "party"), np.tile([0.4, 0.4, 0.2, 0.0], (len(last), 1))),
-                "expected_error": (("age", "party"), np.full((91, len(parties)), 3.0)),
+                "expected_error": (("age", "code"), np.full((91, len(parties)), 3.0)),
             },
             coords={
                 "party": parties,
+                "code": parties,
                 "region": regions,
                 "seat": last["seat"].tolist(),
                 "seat_region": ("seat", last["region"].tolist()),
