@@ -22,7 +22,6 @@ _METHODS = {
 _ACROSS = {
     Across.DISTRICT: "district by district",
     Across.REGION: "region by region",
-    Across.COUNTRY: "over the whole country",
 }
 _OVERHANG = {
     Overhang.KEPT: "a party with more local seats than its part keeps them, and the chamber grows by them",
@@ -40,11 +39,12 @@ def describe_counting(contents: ReleaseContents) -> list[str]:
         where = ""
         if len(groups) > 1:
             where = f"In {listed([contents.region_names.get(code, code) for code in regions])}: "
-        sentences += [f"{where}{_rule(terms)}", *_threshold(terms)]
+        everywhere = "over the whole country" if len(groups) == 1 else "over all of these"
+        sentences += [f"{where}{_rule(terms, everywhere)}", *_threshold(terms, everywhere)]
     return sentences
 
 
-def _rule(terms: CountingTerms) -> str:
+def _rule(terms: CountingTerms, everywhere: str) -> str:
     match terms.rule:
         case CountingRule.PLURALITY:
             return "The party with most votes wins the seat."
@@ -62,27 +62,32 @@ def _rule(terms: CountingTerms) -> str:
         case CountingRule.MIXED_PARALLEL:
             return (
                 "The party with most votes wins the local seat; beside them, seats from lists are shared out "
-                f"{_lists(terms)}."
+                f"{_lists(terms, everywhere)}."
             )
         case CountingRule.MIXED_COMPENSATORY:
             return (
                 "The party with most votes wins the local seat; seats from lists then bring all to "
-                f"proportion, {_lists(terms)}: {_OVERHANG[terms.overhang]}."
+                f"proportion, {_lists(terms, everywhere)}: {_OVERHANG[terms.overhang]}."
             )
         case _:
-            return f"Seats are shared out among lists {_lists(terms)}."
+            return f"Seats are shared out among lists {_lists(terms, everywhere)}."
 
 
-def _lists(terms: CountingTerms) -> str:
+def _lists(terms: CountingTerms, everywhere: str) -> str:
     method = terms.divisors or terms.quota
     by = f" by {_METHODS[method]}" if method is not None else ""
-    return f"{_ACROSS[terms.across]}{by}" if terms.across is not None else by.strip()
+    return f"{_where(terms.across, everywhere)}{by}"
 
 
-def _threshold(terms: CountingTerms) -> list[str]:
+def _where(across: Across | None, everywhere: str) -> str:
+    """Where votes are added up; ``everywhere`` names the regions that count alike."""
+    return _ACROSS.get(across, everywhere) if across is not None else everywhere
+
+
+def _threshold(terms: CountingTerms, everywhere: str) -> list[str]:
     if terms.threshold is None:
         return []
-    across = f" {_ACROSS[terms.threshold_across]}" if terms.threshold_across is not None else ""
     joint = "" if terms.alliance_threshold is None else f" ({terms.alliance_threshold:g} % for a joint list)"
     free = f" {listed(list(terms.exempt))} need not." if terms.exempt else ""
-    return [f"A list must have {terms.threshold:g} % of the votes{joint}, counted{across}.{free}"]
+    counted = _where(terms.threshold_across, everywhere)
+    return [f"A list must have {terms.threshold:g} % of the votes{joint}, counted {counted}.{free}"]

@@ -185,7 +185,11 @@ def _seats_votes_chart(
         needed = share_for_majority(table, code=code, line=chamber.middle_line)
         listed.append(
             f"{looks[code].name} at {share_text(slope['votes'])} gains {slope['mean']:.1f} seats a point"
-            + (f" and has a majority from about {share_text(needed)}" if needed is not None else "")
+            + (
+                f" and has a majority from about {share_text(needed)}"
+                if needed is not None and not chamber.line_moves
+                else ""
+            )
         )
     return ReleaseChart(
         name="seats_against_votes",

@@ -180,20 +180,25 @@ def seats_votes_table(contents: ReleaseContents) -> PageTable | None:
     body = []
     for code in dict.fromkeys(table["code"]):
         slope = slope_row(table, code=code)
-        needed = share_for_majority(table, code=code, line=chamber.middle_line)
-        body.append(
-            (
-                contents.names[code],
-                share_text(slope["votes"]),
-                f"{slope['mean']:.1f}\n{slope['q05']:.1f} to {slope['q95']:.1f}",
-                "–" if needed is None else share_text(needed),
-            )
+        row = (
+            contents.names[code],
+            share_text(slope["votes"]),
+            f"{slope['mean']:.1f}\n{slope['q05']:.1f} to {slope['q95']:.1f}",
         )
-    return PageTable(
+        needed = share_for_majority(table, code=code, line=chamber.middle_line)
+        # A line that moves would move on with the votes that are shifted.
+        body.append(row if chamber.line_moves else (*row, "–" if needed is None else share_text(needed)))
+    opening = (
         "Seats against votes on polling day. Seats a point: what one percent of the vote more brings, 90 % "
-        "interval below. Needed: the share of the vote at which the mean of the seats comes to the majority "
-        "line; a dash: more than ten points away.",
-        ("", "Votes", "Seats a point", "Needed for a majority"),
+        "interval below."
+    )
+    header = ("", "Votes", "Seats a point")
+    if chamber.line_moves:
+        return PageTable(opening, header, tuple(body))
+    return PageTable(
+        f"{opening} Needed: the share of the vote at which the mean of the seats comes to the majority line; "
+        "a dash: more than ten points away.",
+        (*header, "Needed for a majority"),
         tuple(body),
     )
 
@@ -215,7 +220,7 @@ def _equal_votes(row: dict[Hashable, Any], contents: ReleaseContents) -> str:
     said = (
         f"{code} would have {more:,} seat{'' if more == 1 else 's'} more"
         if more
-        else "so would be their seats"
+        else "their seats would be about equal"
     )
     return (
         f"If {code} and {rival} had equal votes ({share_text(row['votes'])} each), {said} "

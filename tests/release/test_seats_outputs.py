@@ -143,6 +143,7 @@ def test_page_note_and_headline_of_a_chamber_that_grows_state_the_regular_number
     table = seats_table(contents)
     assert table.header[-1] == "Of these from lists, on polling day"
     assert table.caption.startswith("Seats. The chamber has 24 regular seats; with overhang seats it has")
+    assert seats_votes_table(contents).header == ("", "Votes", "Seats a point")  # no line to be needed for
     lists = {row[0]: row[-1] for row in table.rows}
     mean = float(seats["list_seats_polling_day"].sel(party="HED").mean())
     assert (lists["Ferry Party"], lists["Glow Pact"]) == ("0", f"{mean:.0f}")
@@ -348,3 +349,14 @@ def test_a_contest_that_counts_by_several_rules_says_where_each_holds(contents):
     told = describe_counting(replace(contents, inputs=replace(contents.inputs, contest=contest)))
     assert any(line.startswith("In The Skerries and Upper Downs: The party with most votes") for line in told)
     assert any(line.startswith("In Port and Quays: Who has more than 50 %") for line in told)
+
+
+def test_votes_across_the_country_are_those_of_the_regions_that_count_alike(contents):
+    where = CountingWhere(rule=CountingRule.PLURALITY, regions=("PORT",))
+    counting = Counting(
+        rule=CountingRule.HIGHEST_AVERAGES, across=Across.COUNTRY, threshold=4, where=(where,)
+    )
+    contest = contents.contest.model_copy(update={"counting": counting})
+    told = describe_counting(replace(contents, inputs=replace(contents.inputs, contest=contest)))
+    assert "A list must have 4 % of the votes, counted over all of these." in told
+    assert "over the whole country" not in " ".join(told)
