@@ -68,6 +68,7 @@ def count_seats(
     counted_result: pd.DataFrame | None = None,
     before_last: pd.DataFrame | None = None,
     transfers: pd.DataFrame | None = None,
+    candidates: pd.DataFrame | None = None,
     form: SwingForm = SwingForm.LOG_RATIO,
     baseline_priors: BaselinePriors | None = None,
     local_priors: LocalPriors | None = None,
@@ -94,6 +95,9 @@ def count_seats(
         Votes at the election before the last, by seat: teaches how far seats stray from their region.
     transfers
         Rates at which voters move on in a run-off: ``from``, ``to``, ``rate``, ``sd``, percent.
+    candidates
+        Candidates that stand, one row each: ``seat``, ``code`` and ``holder``, whether it is the sitting
+        member; None where every party stands wherever its region lets it.
     form
         How a region's move reaches its seats.
     baseline_priors, local_priors
@@ -127,6 +131,7 @@ def count_seats(
         counted_result=counted_result,
         before_last=before_last,
         transfers=transfers,
+        candidates=candidates,
         form=form,
         baseline_priors=baseline_priors,
         local_priors=local_priors,

@@ -48,6 +48,8 @@ class LocalPriors:
         Part of the noise variance that the seats of a cluster share, where nothing was learned of it.
     cluster_weight
         Number of pairs of seats that this part is worth when it is learned.
+    incumbency, incumbency_sd
+        Mean and standard deviation, over draws, of the pull of a sitting member who stands again.
     """
 
     slope_sd: float = 0.12
@@ -57,6 +59,8 @@ class LocalPriors:
     between_elections_log_sd: float = 0.2
     cluster_part: float = 0.3
     cluster_weight: float = 50.0
+    incumbency: float = 0.05
+    incumbency_sd: float = 0.05
 
 
 @dataclass(frozen=True)
@@ -122,7 +126,7 @@ def learn_local_noise(
             )
             seats[place] = len(found)
     told, told_sd = _undo_closure(seen, seen_sd, learned=seats > 0, baseline=baseline)
-    weight = told_sd**-2 / (told_sd**-2 + priors.noise_sd_log_sd**-2)
+    weight = priors.noise_sd_log_sd**2 / (told_sd**2 + priors.noise_sd_log_sd**2)
     sd = np.hypot(np.sqrt(weight) * told_sd, priors.between_elections_log_sd)
     return LocalNoise(
         log_sd=np.where(seats > 0, weight * told + (1 - weight) * log_sd, log_sd),

@@ -28,6 +28,7 @@ from aggregator.seats.local_noise import LocalPriors, learn_local_noise
 from aggregator.seats.local_swing import draw_local_strength, region_starts
 from aggregator.seats.recentring import solve_multipliers
 from aggregator.seats.rules import Float32Array, FloatArray, GroupTerms, GroupVotes, IntArray, SeatVotes
+from aggregator.seats.standing import find_standing, pull_of_members
 from aggregator.seats.swing_forms import SwingForm, add_points, priors_of_form
 from aggregator.seats.transfers import draw_transfers
 from models.dimensions import CHAIN, DATE, DRAW, PARTY, REGION, SEAT
@@ -99,6 +100,7 @@ def prepare_seats(
     counted_result: pd.DataFrame | None = None,
     before_last: pd.DataFrame | None = None,
     transfers: pd.DataFrame | None = None,
+    candidates: pd.DataFrame | None = None,
     form: SwingForm = SwingForm.LOG_RATIO,
     baseline_priors: BaselinePriors | None = None,
     local_priors: LocalPriors | None = None,
@@ -131,6 +133,7 @@ def prepare_seats(
             rng=rng,
             counted_result=counted_result,
             before_last=before_last,
+            candidates=candidates,
             form=form,
             priors=local_priors or LocalPriors(),
         )
@@ -165,6 +168,7 @@ def _draw_rows(
     rng: np.random.Generator,
     counted_result: pd.DataFrame | None,
     before_last: pd.DataFrame | None,
+    candidates: pd.DataFrame | None,
     form: SwingForm,
     priors: LocalPriors,
 ) -> tuple[SeatVotes, Float32Array, FloatArray, float]:
@@ -179,6 +183,13 @@ def _draw_rows(
     )
     if form is SwingForm.ADDITIVE:
         local = add_points(local, baseline=baseline, support=support[:, -1])
+    pull = pull_of_members(
+        candidates, baseline=baseline, before_last=before_last, draws=n_draws, priors=priors, rng=rng
+    )
+    if pull is not None:
+        local = replace(local, strength=(local.strength * np.exp(pull)).astype(np.float32))
+    standing = find_standing(candidates, baseline=baseline)
+    local = standing.before(local)
     done = find_counted_seats(counted_result, baseline=baseline)
     local, weight = put_counts_in(local, weight=baseline["weight"].to_numpy(), counted=done)
     wanted = _with_region_deviation(support, local.region_deviation)
@@ -194,7 +205,7 @@ def _draw_rows(
         region_start=start,
         lot=rng.random((n_draws, baseline.sizes[SEAT]), dtype=np.float32),
     )
-    return rows, wanted, weight, recentred.largest_gap
+    return standing.after(rows), wanted, weight, recentred.largest_gap
 
 
 def _support(draws: xr.Dataset, *, parties: tuple[str, ...], regions: tuple[str, ...]) -> Float32Array:
