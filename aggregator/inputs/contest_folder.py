@@ -10,6 +10,8 @@ from pathlib import Path
 import pandas as pd
 
 from aggregator.errors import InputError
+from aggregator.inputs.candidate_rows import standing_on
+from aggregator.inputs.candidates_file import CandidateList, read_candidates_file
 from aggregator.inputs.contest import Contest
 from aggregator.inputs.contest_checks import check_contest
 from aggregator.inputs.contest_file import CONTEST_FILE, read_contest
@@ -46,10 +48,7 @@ from aggregator.inputs.voting_phases import check_phases
 from aggregator.problems import Problem, Severity
 
 # Files of a contest that a run does not read yet; a desk that keeps them is told so.
-UNREAD_FILES = (
-    "candidates.csv",
-    "local_judgements.csv",
-)
+UNREAD_FILES = ("local_judgements.csv",)
 
 
 @dataclass(frozen=True)
@@ -64,6 +63,7 @@ class _Files:
     past_errors: pd.DataFrame | None
     before_last: pd.DataFrame | None
     transfers: pd.DataFrame | None
+    candidates: CandidateList | None
 
 
 def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date) -> DeskInputs:
@@ -154,6 +154,7 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
         past_errors=past_errors_as_of(files.past_errors, day=run_day.day),
         before_last=files.before_last,
         transfers=files.transfers,
+        candidates=None if files.candidates is None else standing_on(files.candidates.rows, day=run_day.day),
     )
 
 
@@ -174,11 +175,18 @@ def _read_files(folder: Path, read: dict[str, bytes]) -> tuple[_Files, list[Prob
     )
     problems += more
     transfers, more = read_transfers_file(folder, contest=contest, sound=sound, read=read)
+    problems += more
+    candidates, more = read_candidates_file(
+        folder, contest=contest, sound=sound, last_result=last_result, read=read
+    )
     problems += more + _check_unread(folder, contest)
     return (
-        _Files(contest, sound, register, last_result, counted_result, past_errors, before_last, transfers),
+        _Files(
+            contest, sound, register, last_result, counted_result, past_errors, before_last, transfers,
+            candidates,
+        ),
         problems,
-    )
+    )  # fmt: skip
 
 
 def _can_settle(contest: Contest, last_result: pd.DataFrame | None, problems: Iterable[Problem]) -> bool:

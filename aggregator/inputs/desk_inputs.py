@@ -57,6 +57,11 @@ class DeskInputs:
     transfers
         Where voters go in a run-off, one row per ordered pair of party codes: ``from``, ``to``, ``rate`` and
         ``sd``, percent of the voters of ``from``. None where nobody counts in two rounds.
+    candidates
+        Who stands at the coming election as of ``run_date``, one row per candidate in the order of the file:
+        ``seat``, ``code``, ``name`` (blank where not given), ``holder`` (whether it is the sitting member). A
+        seat that is not named has a full slate; in one that is, nobody else stands but others. None where
+        nobody is listed.
     warnings
         What was doubtful; travels into the release.
     unpublished
@@ -81,3 +86,4 @@ class DeskInputs:
     past_errors: pd.DataFrame | None = None
     before_last: pd.DataFrame | None = None
     transfers: pd.DataFrame | None = None
+    candidates: pd.DataFrame | None = None

@@ -31,6 +31,13 @@ class Use(StrEnum):
     NO = "no"
 
 
+class Candidacy(StrEnum):
+    """Whether a candidate stands."""
+
+    STANDING = "standing"
+    WITHDRAWN = "withdrawn"
+
+
 # Around the party and alliance codes, which stand between ``method`` and ``undecided``.
 REGISTER_COLUMNS = (
     "poll", "house", "sponsor", "start", "end", "published", "question", "region", "sample", "effective",
@@ -48,3 +55,6 @@ RECORD_COLUMNS = (*RECORD_NEEDED, "source", "note")
 
 TRANSFER_NEEDED = ("from", "to", "rate", "sd")
 TRANSFER_COLUMNS = (*TRANSFER_NEEDED, "source", "note")
+
+CANDIDATE_NEEDED = ("seat", "code")
+CANDIDATE_COLUMNS = (*CANDIDATE_NEEDED, "name", "holder", "status", "status_date", "source", "note")

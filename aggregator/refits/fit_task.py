@@ -69,8 +69,9 @@ def build_task(
 def bare_inputs(inputs: DeskInputs) -> DeskInputs:
     """Keep of the desk's inputs what a fit reads.
 
-    Left out are rows that do not enter, who paid, sources, notes, row numbers, warnings, file names, the
-    title and rules of publication: what is not sent cannot leak, and none of it makes another fit.
+    Left out are rows that do not enter, who paid, sources, notes, row numbers, names of candidates, warnings,
+    file names, the title and rules of publication: what is not sent cannot leak, and none of it makes another
+    fit.
     """
     polls = inputs.polls.assign(row=range(len(inputs.polls)), **dict.fromkeys(_DESK_COLUMNS, ""))
     return replace(
@@ -83,6 +84,7 @@ def bare_inputs(inputs: DeskInputs) -> DeskInputs:
         unpublished=(),
         files=(),
         fingerprints=(),
+        candidates=inputs.candidates.assign(name="") if inputs.candidates is not None else None,
     )
 
 
@@ -97,6 +99,7 @@ def _as_text(bare: DeskInputs, settings: RunSettings, *, test_figures: bool) -> 
             "past_errors": bare.past_errors,
             "before_last": bare.before_last,
             "transfers": bare.transfers,
+            "candidates": bare.candidates,
         }.items()
     }
     whole = {
