@@ -166,6 +166,7 @@ def _prepare_seats(
         counted_result=inputs.counted_result,
         before_last=inputs.before_last,
         transfers=inputs.transfers,
+        candidates=inputs.candidates,
         contest=inputs.contest,
         rng=_stream(fit, SEATS_STREAM),
         form=form,

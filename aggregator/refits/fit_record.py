@@ -153,6 +153,7 @@ def _count_seats(inputs: DeskInputs, fit: Fit) -> xr.Dataset | None:
         counted_result=inputs.counted_result,
         before_last=inputs.before_last,
         transfers=inputs.transfers,
+        candidates=inputs.candidates,
         contest=inputs.contest,
         rng=np.random.default_rng([fit.settings.seed, SEATS_STREAM]),
     )
