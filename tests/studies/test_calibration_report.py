@@ -15,6 +15,7 @@ from aggregator.errors import MachineError, UsageError
 from aggregator.release.schema_docs import describe_schema
 from aggregator.release.table_columns import TableSchema
 from aggregator.settings import RunSettings
+from aggregator.studies.calibration_charts import build_charts
 from aggregator.studies.calibration_page import headlines
 from aggregator.studies.calibration_report import (
     CalibrationPlan,
@@ -158,3 +159,12 @@ def test_a_folder_of_something_else_is_left_alone(tmp_path: Path) -> None:
     (tmp_path / "notes.txt").write_text("ours", encoding="utf-8")
     with pytest.raises(UsageError, match="not a calibration"):
         check_place(tmp_path)
+
+
+def test_there_is_reading_help_for_every_chart(right: CalibrationReport) -> None:
+    page = (DOCS / "reading_the_charts.md").read_text(encoding="utf-8")
+    own = page[page.index("charts of a calibration") :]
+    charts = build_charts(right)
+    assert charts
+    for chart in charts:
+        assert f"## `{chart.name}`" in own
