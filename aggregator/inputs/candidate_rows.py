@@ -25,14 +25,12 @@ _BLANK = {
 
 @dataclass(frozen=True)
 class CandidateRow:
-    """One row of the list whose cells could all be read.
+    """One row of the list; cells that could not be read are as if blank.
 
     Attributes
     ----------
-    since
-        The first day on which the candidate is known to stand; ``date.min`` where all along.
-    until
-        The day of the withdrawal, on which the candidate stands no more; ``date.max`` without one.
+    status_date
+        The day from which the candidate is withdrawn, or stands; None where blank: stands all along.
     """
 
     row: int
@@ -40,13 +38,20 @@ class CandidateRow:
     code: str
     name: str
     holder: bool
-    since: date
-    until: date
+    withdrawn: bool
+    status_date: date | None
 
     @property
-    def withdrawn(self) -> bool:
-        """Whether the candidate stands no more in the end."""
-        return self.until < date.max
+    def since(self) -> date:
+        """The first day on which the candidate is known to stand."""
+        return date.min if self.withdrawn or self.status_date is None else self.status_date
+
+    @property
+    def until(self) -> date:
+        """The day of the withdrawal, on which the candidate stands no more; far off without one."""
+        if not self.withdrawn:
+            return date.max
+        return date.min if self.status_date is None else self.status_date
 
     def stands_on(self, day: date) -> bool:
         """Tell whether the candidate stands at the end of a day, as far as was known then."""
@@ -62,7 +67,7 @@ def read_candidate_rows(table: SheetTable) -> tuple[tuple[CandidateRow, ...], li
 
     Returns
     -------
-    The rows whose cells could be read, in the order of the file, and what was found.
+    The rows in the order of the file, none where a column is missing that cannot be, and what was found.
     """
     problems = check_columns(
         table,
@@ -86,14 +91,11 @@ def read_candidate_rows(table: SheetTable) -> tuple[tuple[CandidateRow, ...], li
     for sheet_row in table.rows:
         row, more = _read_row(sheet_row, day=days.get((sheet_row.number, "status_date")), file=table.file)
         problems += more
-        if row is not None:
-            rows.append(row)
+        rows.append(row)
     return tuple(rows), problems
 
 
-def _read_row(
-    sheet_row: SheetRow, *, day: date | None, file: str
-) -> tuple[CandidateRow | None, list[Problem]]:
+def _read_row(sheet_row: SheetRow, *, day: date | None, file: str) -> tuple[CandidateRow, list[Problem]]:
     number, cells = sheet_row.number, sheet_row.cells
     holder, problems = _read_word(sheet_row, "holder", Use, file)
     status, more = _read_word(sheet_row, "status", Candidacy, file)
@@ -101,8 +103,7 @@ def _read_row(
     for column, (expected, remedy) in _BLANK.items():
         if column not in cells:
             problems.append(Problem(file, number, column, "a blank cell", expected, remedy, Rule.CELL_NEEDED))
-    withdrawn = status == Candidacy.WITHDRAWN
-    if withdrawn and "status_date" not in cells:
+    if status == Candidacy.WITHDRAWN and "status_date" not in cells:
         problems.append(
             Problem(
                 file, number, "status_date", "a blank cell beside status = withdrawn",
@@ -110,17 +111,16 @@ def _read_row(
                 "Enter it: a run as of an earlier day still counts the candidate.", Rule.CANDIDATE_DAY,
             )
         )  # fmt: skip
-    if problems or ("status_date" in cells and day is None):
-        return None, problems
+    seat, code, name = (as_text(cells.get(column, "")) for column in ("seat", "code", "name"))
     return (
         CandidateRow(
             row=number,
-            seat=as_text(cells["seat"]),
-            code=as_text(cells["code"]),
-            name=as_text(cells.get("name", "")),
+            seat=seat,
+            code=code,
+            name=name,
             holder=holder == Use.YES,
-            since=day if day is not None and not withdrawn else date.min,
-            until=day if day is not None and withdrawn else date.max,
+            withdrawn=status == Candidacy.WITHDRAWN,
+            status_date=day,
         ),
         problems,
     )

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import pandas as pd
 
+from aggregator.inputs.candidate_checks import check_candidates
 from aggregator.inputs.candidate_rows import CandidateRow, read_candidate_rows
 from aggregator.inputs.contest import Contest
 from aggregator.inputs.contest_file import CONTEST_FILE
@@ -34,6 +35,7 @@ def read_candidates_file(
     contest: Contest | None,
     sound: bool,
     last_result: pd.DataFrame | None,
+    polled: frozenset[str],
     read: dict[str, bytes],
 ) -> tuple[CandidateList | None, list[Problem]]:
     """Read ``candidates.csv`` or ``.xlsx``, where the desk has one.
@@ -46,6 +48,8 @@ def read_candidates_file(
         Whether every key of the contest could be read, so that its rules are known.
     last_result
         The last result, whose seats the candidates stand in; None where it could not be read.
+    polled
+        Parties for which some poll has a figure above 0.
     read
         Bytes by name of the files read so far; takes up this one.
 
@@ -66,10 +70,24 @@ def read_candidates_file(
             )
         ]  # fmt: skip
     table, problems = read_table(data, file=file, sheet=_STEM, columns=CANDIDATE_COLUMNS)
+    problems = [_without_names(problem) for problem in problems]
     if table is None or contest is None:
         return None, problems
     rows, more = read_candidate_rows(table)
-    return CandidateList(file, rows), problems + more
+    problems += more
+    problems += check_candidates(rows, contest=contest, last_result=last_result, polled=polled, file=file)
+    return CandidateList(file, rows), problems
+
+
+def _without_names(problem: Problem) -> Problem:
+    """Word a finding so that it shows no word of the file: findings are published, names are not."""
+    if problem.rule != Rule.FILE_ENCODING:
+        return problem
+    return replace(
+        problem,
+        found="text that is not UTF-8; read as Windows-1252",
+        remedy="Check that its letters with accents are right, and save the file as CSV UTF-8.",
+    )
 
 
 def _elects_in_rows(contest: Contest) -> bool:

@@ -10,6 +10,7 @@ from pathlib import Path
 import pandas as pd
 
 from aggregator.errors import InputError
+from aggregator.inputs.candidate_checks import check_standing
 from aggregator.inputs.candidate_rows import standing_on
 from aggregator.inputs.candidates_file import CandidateList, read_candidates_file
 from aggregator.inputs.contest import Contest
@@ -133,6 +134,16 @@ def read_contest_folder(folder: Path, *, as_of: date | None = None, today: date)
     problems += check_labels(entering, contest=contest, file=register.file)
     problems += check_phases(entering, contest=contest, file=register.file)
     problems += check_asked_there_too(entering, asked_in=asked_in, file=register.file)
+    if files.candidates is not None:
+        problems += check_standing(
+            files.candidates.rows,
+            contest=contest,
+            last_result=last_result,
+            polled=_polled(register),
+            day=run_day.day,
+            live=run_day.live,
+            file=files.candidates.file,
+        )
     if run_day.live:
         problems += check_counted_later(contest, day=run_day.day)
     out = {row.row for row, _ in unused}
@@ -177,7 +188,12 @@ def _read_files(folder: Path, read: dict[str, bytes]) -> tuple[_Files, list[Prob
     transfers, more = read_transfers_file(folder, contest=contest, sound=sound, read=read)
     problems += more
     candidates, more = read_candidates_file(
-        folder, contest=contest, sound=sound, last_result=last_result, read=read
+        folder,
+        contest=contest,
+        sound=sound,
+        last_result=last_result,
+        polled=_polled(register),
+        read=read,
     )
     problems += more + _check_unread(folder, contest)
     return (
@@ -187,6 +203,12 @@ def _read_files(folder: Path, read: dict[str, bytes]) -> tuple[_Files, list[Prob
         ),
         problems,
     )  # fmt: skip
+
+
+def _polled(register: Register | None) -> frozenset[str]:
+    """List the codes for which some row has a figure above 0."""
+    rows = register.rows if register is not None else ()
+    return frozenset(code for row in rows for code, share in row.shares.items() if share > 0)
 
 
 def _can_settle(contest: Contest, last_result: pd.DataFrame | None, problems: Iterable[Problem]) -> bool:

@@ -19,11 +19,16 @@ _OF_FIGURES = {
     Rule.NO_REMAINDER,
 }  # fmt: skip
 
+# What candidates may do hangs on whether seats elect members, and how many.
+_OF_COUNTING = {
+    Rule.SEVERAL_MEMBERS, Rule.CANDIDATE_SEAT, Rule.CANDIDATE_TWICE, Rule.CANDIDATE_HOLDERS,
+}  # fmt: skip
+
 _OF_CODES = _OF_FIGURES | {
     Rule.COLUMN_UNKNOWN, Rule.ROW_REGION, Rule.COUNTED_TWICE, Rule.ALLIANCE_PERIOD, Rule.NOT_STANDING,
     Rule.INHERITS, Rule.REGION_WITHOUT_RESULT, Rule.VOTES_NOT_STANDING, Rule.PARTY_WITHOUT_VOTES,
     Rule.COUNT_REGIONS, Rule.COUNT_PLACES, Rule.PAST_CODE, Rule.EARLIER_PLACES, Rule.TRANSFER_PAIR,
-    Rule.TRANSFER_MISSING,
+    Rule.TRANSFER_MISSING, Rule.CANDIDATE_PARTY, Rule.PARTY_WITHOUT_CANDIDATE,
 }  # fmt: skip
 
 
@@ -69,4 +74,4 @@ def _is_about_counting(problem: Problem) -> bool:
 
 def _hangs_on_counting(problem: Problem) -> bool:
     blank_seat = problem.rule is Rule.CELL_NEEDED and problem.column == "seat"
-    return problem.rule is Rule.SEVERAL_MEMBERS or blank_seat
+    return problem.rule in _OF_COUNTING or blank_seat

@@ -44,6 +44,15 @@ election,code,polled,result,source,note
 2023-05-21,HU,40,37.1,,
 """
 
+CANDIDATES = """\
+seat,code,name,holder,status,status_date,source,note
+N1,HU,Ada Brae,yes,,,,
+N1,UP,Tam Orrin,,withdrawn,2031-04-02,,
+N1,OTH,,,,,,
+M1,OL,,,,2031-03-02,,
+M1,HU,,no,standing,,,
+"""
+
 SLOW_SETUP = [HealthCheck.function_scoped_fixture]
 
 
@@ -86,6 +95,13 @@ def test_any_cells_in_the_record(changes, tmp_path):
     findings(write_folder(tmp_path / "c", **{"past_errors.csv": text}))
 
 
+@settings(max_examples=40, deadline=None, suppress_health_check=SLOW_SETUP)
+@given(changes=CHANGES)
+def test_any_cells_among_candidates(changes, tmp_path):
+    text = with_cells(CANDIDATES, changes).encode("utf-8", "replace")
+    findings(write_folder(tmp_path / "c", **{"candidates.csv": text}))
+
+
 @settings(max_examples=80, deadline=None, suppress_health_check=SLOW_SETUP)
 @given(line=st.integers(0, 60), value=ODD_VALUES)
 def test_any_value_in_the_contest(line, value, tmp_path):
@@ -111,8 +127,11 @@ def test_any_torn_file(start, length, tmp_path):
 
 @pytest.mark.parametrize(
     "name",
-    ["contest.toml", "polls.csv", "polls.xlsx", "result_last.csv", "result_counted.csv", "past_errors.csv"],
-)
+    [
+        "contest.toml", "polls.csv", "polls.xlsx", "result_last.csv", "result_counted.csv", "past_errors.csv",
+        "candidates.csv",
+    ],
+)  # fmt: skip
 @settings(max_examples=15, deadline=None, suppress_health_check=SLOW_SETUP)
 @given(data=st.binary(max_size=200))
 @example(data=b"\xa0")

@@ -15,7 +15,7 @@ from tests.inputs.desk_folder import FILES, TODAY, findings, spoilt, write_folde
 HERE = Path(__file__).parent
 CASES = [
     case
-    for file in ("reading_rules.toml", "counting_rules.toml")
+    for file in ("reading_rules.toml", "counting_rules.toml", "candidate_rules.toml")
     for case in tomllib.loads((HERE / file).read_text(encoding="utf-8"))["case"]
 ]
 RULES_PAGE = (HERE.parents[1] / "docs" / "reading_rules.md").read_text(encoding="utf-8")
