@@ -36,6 +36,8 @@ from aggregator.inputs.counting_terms import (
     TieBreak,
 )
 from aggregator.inputs.register_columns import (
+    CANDIDATE_COLUMNS,
+    CANDIDATE_NEEDED,
     RECORD_COLUMNS,
     RECORD_NEEDED,
     REGISTER_COLUMNS,
@@ -43,6 +45,7 @@ from aggregator.inputs.register_columns import (
     RESULT_COLUMNS,
     TRANSFER_COLUMNS,
     TRANSFER_NEEDED,
+    Candidacy,
     Question,
     Status,
     Use,
@@ -143,6 +146,26 @@ def test_the_example_of_transfers_covers_every_pair(tmp_path):
     }  # fmt: skip
 
 
+def test_every_column_of_candidates_is_in_its_table():
+    documented = schema_under("### candidates.csv")
+    assert list(documented) == list(CANDIDATE_COLUMNS)
+    assert {c for c, needed in documented.items() if needed == "yes"} == set(CANDIDATE_NEEDED)
+
+
+def test_the_example_of_candidates_is_read_as_it_says(tmp_path):
+    """One candidate has taken the place of another, and the others of that seat are named by no row."""
+    text = re.search(r"^```csv\n(seat,code,name.*?)^```$", INPUT_HALF, re.MULTILINE | re.DOTALL)
+    folder = write_folder(tmp_path / "c", candidates_csv=text[1])
+    before, now = read(folder, as_of=date(2031, 4, 1)), read(folder)
+    assert set(now.candidates["seat"]) == {"N1", "M1"}
+    assert [
+        list(table.loc[(table["seat"] == "M1") & (table["code"] == "HU"), "name"])
+        for table in (before.candidates, now.candidates)
+    ] == [["Ilse Morrow"], ["Nell Hythe"]]
+    assert list(now.candidates.loc[now.candidates["holder"], "name"]) == ["Ada Brae"]
+    assert now.warnings == ()
+
+
 def counting_examples() -> dict[str, str]:
     """The example under each heading of the section on counting rules."""
     section = INPUT_HALF.split("\n### Counting rules\n", 1)[1].split("\n### ", 1)[0]
@@ -178,7 +201,7 @@ def test_the_page_says_which_keys_each_rule_takes():
 
 
 @pytest.mark.parametrize(
-    "words", [Question, Status, Use, CountingRule, Divisors, Quota, Across, Overhang, TieBreak]
+    "words", [Question, Status, Use, Candidacy, CountingRule, Divisors, Quota, Across, Overhang, TieBreak]
 )
 def test_every_word_a_cell_may_hold_is_named(words):
     for word in words:
