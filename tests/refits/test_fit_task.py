@@ -79,6 +79,9 @@ LATER = {
         )
     },
     "the outcome": {"result_outcome_csv": RESULT},
+    "a candidate who is known later": {
+        "candidates_csv": "seat,code,status_date\nN1,HU,2031-04-01\nN1,UP,2031-04-01\n"
+    },
 }  # fmt: skip
 
 
@@ -132,6 +135,39 @@ def test_a_worker_is_sent_no_poll_that_the_fit_does_not_use_and_nothing_of_the_d
     for word in ("K-2", "55.5", "secretsource", "secretnote", "Lake Courier", str(tmp_path), "Zurich"):
         assert word.encode() not in sent, word
     assert b"K-1" in sent
+
+
+CANDIDATES = (
+    "seat,code,name,holder,status,status_date,source,note\nN1,HU,Ada Brae,yes,,,,\nN1,UP,Tam Orrin,,,,,\n"
+)
+
+
+def test_who_stands_where_makes_another_fit(tmp_path):
+    texts = {
+        "all": CANDIDATES,
+        "one fewer": CANDIDATES.replace("N1,UP,Tam Orrin,,,,,\n", "N1,OTH,,,,,,\n"),
+        "nobody sits": CANDIDATES.replace("yes", "no"),
+        "withdrawn": CANDIDATES.replace("Tam Orrin,,,", "Tam Orrin,,withdrawn,2031-03-19"),
+    }
+    keys = [task(tmp_path, candidates_csv=text).key for text in texts.values()]
+    assert len({*keys, task(tmp_path / "without").key}) == len(texts) + 1
+
+
+def test_a_withdrawal_makes_another_fit_from_its_day_on(tmp_path):
+    text = CANDIDATES.replace("Tam Orrin,,,", "Tam Orrin,,withdrawn,2031-04-01")
+    for day, changes in ((date(2031, 3, 31), False), (date(2031, 4, 1), True)):
+        before = task(tmp_path / f"{day}", as_of=day, candidates_csv=CANDIDATES)
+        after = task(tmp_path / f"{day}w", as_of=day, candidates_csv=text)
+        assert (after.key != before.key) is changes
+
+
+def test_a_worker_is_sent_nobodys_name(tmp_path):
+    named = task(tmp_path, candidates_csv=CANDIDATES.replace(",,,,\n", ",,,secretsource,secretnote\n"))
+    sent = pickle.dumps(named)
+    for word in ("Ada", "Brae", "Orrin", "secretsource", "secretnote"):
+        assert word.encode() not in sent, word
+    assert named.inputs.candidates.to_numpy().tolist() == [["N1", "HU", "", True], ["N1", "UP", "", False]]
+    assert named.key == task(tmp_path, candidates_csv=CANDIDATES.replace("Ada Brae", "Eda Brae")).key
 
 
 def test_another_program_makes_another_fit(tmp_path, monkeypatch):
