@@ -35,16 +35,16 @@ def fastest[Result](work: Callable[[], Result], *, runs: int = 3) -> tuple[float
     return min(seconds), result
 
 
-def chamber() -> dict[str, Any]:
+def chamber(*, draws: int = DRAWS, seats: int = SEATS, dates: int = DATES) -> dict[str, Any]:
     """Strength and support of the size of a large national chamber; support drifts from week to week."""
     rng = np.random.default_rng(1)
-    region_start = np.round(np.linspace(0, SEATS, REGIONS + 1)).astype(np.int64)
+    region_start = np.round(np.linspace(0, seats, REGIONS + 1)).astype(np.int64)
     size = np.diff(region_start)
     level = np.log(rng.dirichlet(np.full(PARTIES, 3.0), REGIONS))
-    base = np.repeat(level, size, axis=0).T + rng.normal(0, 0.4, (PARTIES, SEATS))
-    strength = rng.standard_normal((DRAWS, PARTIES, SEATS), dtype=np.float32)
+    base = np.repeat(level, size, axis=0).T + rng.normal(0, 0.4, (PARTIES, seats))
+    strength = rng.standard_normal((draws, PARTIES, seats), dtype=np.float32)
     strength = np.exp(np.float32(0.15) * strength + base.astype(np.float32))
-    steps = rng.standard_normal((DRAWS, DATES, REGIONS, PARTIES), dtype=np.float32)
+    steps = rng.standard_normal((draws, dates, REGIONS, PARTIES), dtype=np.float32)
     steps[:, 0] += 1
     log_support = level.astype(np.float32) + np.float32(0.03) * steps.cumsum(axis=1)
     support = np.exp(log_support)
@@ -105,3 +105,25 @@ def test_speed_of_counting() -> None:
     print(table.to_string(float_format=lambda x: f"{x:.4g}"))
     print(f"most memory of the process: {getrusage(RUSAGE_SELF).ru_maxrss / 2**20:.2f} GiB")
     print(f"largest gap between a region's mean and its support: {solved.largest_gap:.2g}")
+
+
+@pytest.mark.benchmark
+def test_time_grows_in_proportion_to_draws_seats_and_dates() -> None:
+    """Half of one of the three against half of the time."""
+
+    def seconds(**size: int) -> float:
+        inputs = chamber(**size)
+        n_draws, _, n_seats = inputs["strength"].shape
+        lot = np.random.default_rng(2).random((n_draws, n_seats), dtype=np.float32)
+
+        def work() -> None:
+            solved = solve_multipliers(**inputs)
+            count_firsts(SeatVotes(inputs["strength"], solved.multiplier, inputs["region_start"], lot))
+
+        return fastest(work)[0]
+
+    seconds(draws=4)
+    whole = seconds()
+    print()
+    for name, size in (("draws", DRAWS), ("seats", SEATS), ("dates", DATES)):
+        print(f"half the {name}: {seconds(**{name: size // 2}) / whole:.2f} of the time")
