@@ -180,6 +180,13 @@ def test_everything_wrong_is_in_one_report(tmp_path):
     ]  # fmt: skip
 
 
+def test_every_one_of_many_unknown_seats_is_named(tmp_path):
+    found = findings(folder_with(tmp_path, LIST + "".join(f"N1{i},HU,,,,,\n" for i in range(40))))
+    assert [(p.row, p.found) for p in found] == [(9 + i, f'"N1{i}"') for i in range(40)]
+    assert found[0].remedy == 'Did you mean "N1"?'
+    assert found[-1].remedy == "Write the label that it has there."
+
+
 def test_codes_in_doubt_are_not_held_against_candidates(tmp_path):
     contest = CONTEST.replace('code = "OL"', 'code = "O L"').replace('"HU", "OL"', '"HU", "O L"')
     found = findings(folder_with(tmp_path, LIST, contest_toml=contest))
