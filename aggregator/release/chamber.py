@@ -31,6 +31,8 @@ class Chamber:
         The median of the line.
     grows, line_moves
         Whether any draw has another number of seats, or another line.
+    ties
+        Counts in which two had the same claim to a seat, over all draws and dates.
     """
 
     regular: int
@@ -40,6 +42,7 @@ class Chamber:
     middle_line: int
     grows: bool
     line_moves: bool
+    ties: int = 0
 
     @property
     def line_text(self) -> str:
@@ -86,7 +89,7 @@ def describe_chamber(seats: xr.Dataset, *, contest: Contest) -> Chamber:
     ----------
     seats
         Draws of seats: ``seats_polling_day`` (chain, draw, party), and the attribute ``chamber``, the regular
-        number of seats.
+        number of seats; ``ties_broken`` (chain, draw) where ties were counted.
     contest
         May set a majority of its own.
     """
@@ -101,6 +104,7 @@ def describe_chamber(seats: xr.Dataset, *, contest: Contest) -> Chamber:
         middle_line=int(np.quantile(line, 0.5, method="inverted_cdf")),
         grows=bool((size != regular).any()),
         line_moves=bool(np.ptp(line) > 0),
+        ties=int(seats["ties_broken"].sum()) if "ties_broken" in seats else 0,
     )
 
 

@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from aggregator.inputs.contest import CountingRule
-from aggregator.inputs.counting_terms import Across, CountingTerms, Divisors, Overhang, Quota
+from aggregator.inputs.counting_terms import Across, CountingTerms, Divisors, Overhang, Quota, TieBreak
 from aggregator.release.combination_words import listed
 from aggregator.release.contents import ReleaseContents
 
@@ -41,7 +43,17 @@ def describe_counting(contents: ReleaseContents) -> list[str]:
             where = f"In {listed([contents.region_names.get(code, code) for code in regions])}: "
         everywhere = "over the whole country" if len(groups) == 1 else "over all of these"
         sentences += [f"{where}{_rule(terms, everywhere)}", *_threshold(terms, everywhere)]
+    if contents.chamber is not None:
+        sentences.append(_ties([terms for terms, _ in groups], times=contents.chamber.ties))
     return sentences
+
+
+def _ties(terms: Sequence[CountingTerms], *, times: int) -> str:
+    """Say how ties are broken, and how often it was needed."""
+    more_votes = any(each.has_lists and each.ties is TieBreak.MOST_VOTES for each in terms)
+    how = "in favour of more votes where the contest says so, else by lot" if more_votes else "by lot"
+    needed = "no draw of this release needed it" if times == 0 else f"this release needed it {times:,} times"
+    return f"An exact tie is broken {how}; {needed}."
 
 
 def _rule(terms: CountingTerms, everywhere: str) -> str:

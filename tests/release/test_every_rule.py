@@ -92,3 +92,10 @@ def test_a_release_of_any_rule_has_the_tables_and_sections_that_make_sense(name,
     assert ('id="deciding"' in page) is (decides and len(tables.deciding_seats) > 0)
     assert ('id="closest"' in page) is rows
     assert ("from lists" in page) is ("mixed" in counting["rule"])
+    assert "An exact tie is broken by lot; no draw of this release needed it." in page
+
+
+def test_ties_that_a_lot_had_to_break_are_counted_in_the_note(tmp_path):
+    contents = release_of(tmp_path, *RULES["plurality"][:2])
+    tied = replace(contents, chamber=replace(contents.chamber, ties=1234))
+    assert "this release needed it 1,234 times" in build_method_note(tied)
