@@ -104,7 +104,7 @@ def _seats_sentence(tables: ReleaseTables, seats: pd.DataFrame, contest: Contest
     rows = seats[(seats["kind"] == Kind.ON_POLLING_DAY) & (seats["level"] == Level.PARTY)]
     rows = rows.sort_values("mean", ascending=False, kind="stable")
     largest = likeliest(tables.chances, Outcome.LARGEST, kind=Kind.ON_POLLING_DAY)
-    every = ("regularly " if chamber.grows else "") + whole_text(chamber.regular)
+    every = ("the regular " if chamber.grows else "") + whole_text(chamber.regular)
     if largest["probability"] >= NAMED_LEADER_FROM:
         row = rows[rows["code"] == largest["code"]].iloc[0]
         opening = (

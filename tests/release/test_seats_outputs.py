@@ -138,7 +138,7 @@ def test_page_note_and_headline_of_a_chamber_that_grows_state_the_regular_number
     seats = with_overhang(run["seats"])
     contents = contents_of(run, seats=seats)
     told = contents.headlines.seats
-    assert "of regularly 24" in told
+    assert "of the regular 24" in told
     assert "a majority (13 of the regular 24, and more with overhang seats)" in told
     table = seats_table(contents)
     assert table.header[-1] == "Of these from lists, on polling day"
