@@ -140,6 +140,7 @@ def fit_compiled(
     limits: Limits | None = None,
     second_attempts: bool = True,
     weigh_polls: bool = True,
+    whole_series: bool = True,
     processes: int | None = None,
     progress: Progress = lambda _stage, _part: None,
 ) -> Fit:
@@ -160,6 +161,9 @@ def fit_compiled(
         Whether to do so; a study that only needs rough draws does not.
     weigh_polls
         Whether to find Pareto-k of each poll.
+    whole_series
+        Whether to work out every week from the first fieldwork on; a refit needs the day of the run and
+        polling day, and those are the same either way.
     processes
         Processes to share the work; 1 does all of it in this process, None takes one per usable core. The
         fit is the same.
@@ -175,7 +179,13 @@ def fit_compiled(
     # One thread for linear algebra: as in `compile_contest`.
     with threadpool_limits(1):
         attempt = partial(
-            _sample, contest, limits=limits, weigh_polls=weigh_polls, processes=processes, progress=progress
+            _sample,
+            contest,
+            limits=limits,
+            weigh_polls=weigh_polls,
+            whole_series=whole_series,
+            processes=processes,
+            progress=progress,
         )
         fit = attempt(settings=settings)
         if second_attempts and fit.convergence.divergences > limits.divergences:
@@ -192,6 +202,7 @@ def _sample(
     settings: RunSettings,
     limits: Limits,
     weigh_polls: bool,
+    whole_series: bool,
     processes: int | None,
     progress: Progress,
 ) -> Fit:
@@ -211,12 +222,15 @@ def _sample(
         processes=processes,
     )
     progress("summarising the draws", 0.0)
+    calendar = release_calendar(inputs)
+    if not whole_series:
+        calendar = replace(calendar, dates=calendar.dates[-1:])
     draws = summarise_support(
         parameters,
         arrays=arrays,
         eras=compiled.eras,
         chains=settings.chains,
-        calendar=release_calendar(inputs),
+        calendar=calendar,
         shared_lean=contest.model.shared_lean,
         priors=election.priors,
         rng=np.random.default_rng(streams[OUTPUT_STREAM]),

@@ -69,7 +69,14 @@ def make_fit(task: FitTask, *, version: str) -> FitRecord:
         contest = compile_contest(task.inputs, like=before)
         compile_cache.election = contest.election
         reused = before is not None and contest.election.density.compiled is before.density.compiled
-        fit = fit_compiled(contest, settings=task.settings, weigh_polls=False, processes=1, progress=clock)
+        fit = fit_compiled(
+            contest,
+            settings=task.settings,
+            weigh_polls=False,
+            whole_series=False,
+            processes=1,
+            progress=clock,
+        )
         clock("gathering")
         data = build_data(task.inputs, fit)
         tested = {"stands_out": list_standing_out(task.inputs, fit)} if task.test_figures else {}
