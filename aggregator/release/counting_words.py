@@ -37,6 +37,10 @@ def describe_counting(contents: ReleaseContents) -> list[str]:
     """Say how this contest counts, rule by rule."""
     groups = contents.contest.counting_groups
     sentences = [_BY_ROW] if any(terms.elects_by_row for terms, _ in groups) else []
+    if sentences and contents.inputs.candidates is not None:
+        sentences += _candidates(members=bool(contents.inputs.candidates["holder"].any()))
+    if sentences and contents.inputs.before_last is not None:
+        sentences.append("How far seats stray was learned from the last two results.")
     for terms, regions in groups:
         where = ""
         if len(groups) > 1:
@@ -46,6 +50,20 @@ def describe_counting(contents: ReleaseContents) -> list[str]:
     if contents.chamber is not None:
         sentences.append(_ties([terms for terms, _ in groups], times=contents.chamber.ties))
     return sentences
+
+
+def _candidates(*, members: bool) -> list[str]:
+    """Say what the desk's list of candidates does to the count."""
+    told = [
+        "A party without a candidate in a seat gets no votes there; where it stands in the same seats of a "
+        "region as last time, its support there is taken to be in those."
+    ]
+    if members:
+        told.append(
+            "Sitting members who stand again are given a pull, an assumption, where it is new since the last "
+            "election; it is taken away where they retire."
+        )
+    return told
 
 
 def _ties(terms: Sequence[CountingTerms], *, times: int) -> str:

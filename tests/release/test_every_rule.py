@@ -99,3 +99,14 @@ def test_ties_that_a_lot_had_to_break_are_counted_in_the_note(tmp_path):
     contents = release_of(tmp_path, *RULES["plurality"][:2])
     tied = replace(contents, chamber=replace(contents.chamber, ties=1234))
     assert "this release needed it 1,234 times" in build_method_note(tied)
+
+
+def test_the_note_says_what_candidates_and_the_result_before_the_last_do(tmp_path):
+    contents = release_of(tmp_path, *RULES["plurality"][:2])
+    assert "without a candidate" not in build_method_note(contents)
+    listed = pd.DataFrame({"seat": ["DO01"], "code": ["FER"], "name": [""], "holder": [True]})
+    told = build_method_note(
+        replace(contents, inputs=replace(contents.inputs, candidates=listed, before_last=listed))
+    )
+    for words in ("without a candidate", "Sitting members", "learned from the last two results"):
+        assert words in told
