@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Hashable
+from collections.abc import Hashable, Mapping, Sequence
 from typing import Any
 
 import pandas as pd
 
-from aggregator.release.combination_words import combination_text
+from aggregator.release.combination_words import combination_text, listed
 from aggregator.release.contents import ReleaseContents
 from aggregator.release.likelihood_words import NAMED_LEADER_FROM
 from aggregator.release.page_tables import STATEMENTS, PageTable, two_statements, whole_interval
@@ -102,11 +102,28 @@ def deciding_seats_table(contents: ReleaseContents) -> PageTable | None:
     return PageTable(
         f"The seats that most often decide whether there is a majority for {whom}. Decides: chance that, in "
         "the order of the lead, this seat is the one at the line. Carries: part of the variance of all their "
-        "seats that comes with this one. Too close: nobody is likely to win it.",
+        "seats that comes with this one. Too close: nobody is likely to win it."
+        + _close_together(table, codes, contents.names),
         (*columns, "Decides", "Wins it", "Carries", "Too close"),
         tuple(body),
         words=frozenset({*range(len(columns)), len(columns) + 3}),
     )
+
+
+def _close_together(table: pd.DataFrame, codes: Sequence[str], names: Mapping[str, str]) -> str:
+    """Say what the seats that are too close to call carry together; empty where there are none."""
+    close = table[(table["too_close"] == "yes") & table["carries"].notna()]
+    told = [
+        f"{_seats_text(int((close['code'] == code).sum()))} too close to call carry "
+        f"{share_text(close.loc[close['code'] == code, 'carries'].sum())} of the variance of {names[code]}"
+        for code in codes
+        if (close["code"] == code).any()
+    ]
+    return f" Together {listed(told)}." if told else ""
+
+
+def _seats_text(number: int) -> str:
+    return "the one seat" if number == 1 else f"the {whole_text(number)} seats"
 
 
 def closest_seats_table(contents: ReleaseContents) -> PageTable | None:

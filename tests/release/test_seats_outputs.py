@@ -360,3 +360,14 @@ def test_votes_across_the_country_are_those_of_the_regions_that_count_alike(cont
     told = describe_counting(replace(contents, inputs=replace(contents.inputs, contest=contest)))
     assert "A list must have 4 % of the votes, counted over all of these." in told
     assert "over the whole country" not in " ".join(told)
+
+
+def test_the_page_says_what_the_seats_too_close_to_call_carry(contents):
+    table = contents.tables.deciding_seats
+    code = deciding_seats_table(contents).caption.split(" of the variance of ")[-1].rstrip(".")
+    short = {name: short for short, name in contents.names.items()}[code]
+    close = table[(table["code"] == short) & (table["too_close"] == "yes")]
+    assert 0 < close["carries"].sum() <= 100.1
+    assert f"the {len(close)} seats too close to call carry" in deciding_seats_table(contents).caption
+    none = replace(contents, tables=replace(contents.tables, deciding_seats=table.assign(too_close="no")))
+    assert "Together" not in deciding_seats_table(none).caption
