@@ -142,7 +142,7 @@ def _draw_results(
     if scenery.since_before_last is None:
         return votes, None, None
     (next_rng,) = rng.spawn(1)
-    local_sd = draw_local_sd(len(scenery.codes), rng=next_rng)
+    local_sd = draw_local_sd(len(scenery.codes), log_sd=scenery.local_sd_log_sd, rng=next_rng)
     last = draw_next_votes(votes, scenery=scenery, local_sd=local_sd, rng=next_rng)
     return last, as_it_stood(votes, scenery=scenery), local_sd
 

@@ -7,16 +7,15 @@ from collections.abc import Sequence
 import numpy as np
 
 LOCAL_SD = 0.15
-LOCAL_SD_NOISE = 0.25
 LOCAL_TAIL = 4
 """Degrees of freedom of the local noise."""
 CLUSTER_PART = 0.3
 """Part of the noise variance that the seats of a cluster share."""
 
 
-def draw_local_sd(parties: int, *, rng: np.random.Generator) -> np.ndarray:
-    """Sd of each party's local noise, log points, dims (party,)."""
-    return LOCAL_SD * np.exp(LOCAL_SD_NOISE * rng.normal(size=parties))
+def draw_local_sd(parties: int, *, log_sd: float, rng: np.random.Generator) -> np.ndarray:
+    """Sd of each party's local noise, log points, dims (party,); ``log_sd`` says how far parties differ."""
+    return LOCAL_SD * np.exp(log_sd * rng.normal(size=parties))
 
 
 def draw_local_noise(

@@ -62,7 +62,9 @@ def draw_polling_day(country: Country, *, rng: np.random.Generator) -> PollingDa
     turnout_weights = country.weights * np.exp(turnout_noise + _above_country(country) @ tilt)
     turnout_weights /= turnout_weights.sum()
     slope = SLOPE_SD * rng.normal(size=len(codes))
-    local_sd = draw_local_sd(len(codes), rng=rng) if country.local_sd is None else country.local_sd
+    local_sd = country.local_sd
+    if local_sd is None:
+        local_sd = draw_local_sd(len(codes), log_sd=scenery.local_sd_log_sd, rng=rng)
     last_total = country.last_votes.drop(columns=["seat", "name", "region"]).to_numpy().sum()
     frames = []
     for r, region in enumerate(scenery.regions):

@@ -236,6 +236,8 @@ class Scenery:
         Whether the undecided may in the end break otherwise than the decided.
     turnout_tilt
         Whether regions where a party is strong turn out more or less than others.
+    local_sd_log_sd
+        How far the parties' local noise differs from its usual size, sd of its log.
     past_elections
         Days of the elections in the record of past polling errors.
     counting
@@ -264,6 +266,7 @@ class Scenery:
     formation_leans: bool = False
     undecided_stray: bool = False
     turnout_tilt: bool = False
+    local_sd_log_sd: float = 0.25
     past_elections: tuple[date, ...] = ()
     counting: MixedCounting | None = None
     since_before_last: SinceBeforeLast | None = None

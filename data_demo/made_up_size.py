@@ -126,6 +126,8 @@ UNTIDY_ELECTION = ElectionSize(
 
 
 YEARS_BETWEEN = 4
+LOCAL_SD_LOG_SD = 0.5
+"""Some of these countries have far quieter seats than others, some far noisier."""
 TRACKED_DAYS = 24
 LAST_FREE_DAYS = 35
 """Days that a tracking house still needs for its other polls."""
@@ -185,6 +187,7 @@ def draw_scenery(size: ElectionSize, *, rng: np.random.Generator) -> Scenery:
         formation_leans=size.formation_leans,
         undecided_stray=size.undecided_stray,
         turnout_tilt=size.turnout_tilt,
+        local_sd_log_sd=LOCAL_SD_LOG_SD,
         past_elections=tuple(
             scenery.last_election - timedelta(weeks=YEARS_BETWEEN * 52 * k)
             for k in range(size.past_elections)
