@@ -46,6 +46,7 @@ def seats() -> xr.Dataset:
             "title": "House of Commons 1992, English seats",
             "polling_day": POLLING_DAY,
             "party": [{"code": code, "name": code} for code in CODES],
+            "region": [{"code": REGION, "name": "England"}],
             "others": False,
         }
     )
