@@ -19,7 +19,6 @@ from aggregator.estimate.lean_alternatives import lean_alternatives
 from aggregator.estimate.lean_sizes import late_undecided
 from aggregator.estimate.predictive_checks import summarise_predictive
 from aggregator.estimate.prior_sensitivity import summarise_prior_sensitivity
-from aggregator.inputs.contest import CountingRule
 from aggregator.inputs.contest_folder import read_contest_folder
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.problems import Problem
@@ -27,8 +26,7 @@ from aggregator.release.folder import check_place_is_free
 from aggregator.release.model_checks import ModelChecks
 from aggregator.release.write_release import write_release
 from aggregator.screens.screen_polls import screen_polls
-from aggregator.seats.counting import count_prepared
-from aggregator.seats.prepare import PreparedSeats, prepare_seats
+from aggregator.seats.desk_count import count_chamber_of, count_polling_day, prepare_chamber
 from aggregator.seats.shifted_chamber import count_votes_to_seats
 from aggregator.seats.swing_forms import SwingForm
 from aggregator.settings import (
@@ -40,7 +38,6 @@ from aggregator.settings import (
     RunSettings,
 )
 from aggregator.shelf_life.worth import headline_code, polls_worth, summarise_shelf_life
-from models.dimensions import DATE
 from models.priors import shared_lean_points
 
 SWING = "how a region's move reaches its seats"
@@ -115,8 +112,8 @@ def refresh(
         check_place_is_free(out)
     fit = fit_contest(inputs, settings=settings or RunSettings(), progress=progress)
     progress("counting seats", 0.0)
-    prepared = _prepare_seats(inputs, fit, fit.draws)
-    seats = None if prepared is None else _count_prepared(inputs, prepared, fit.draws)
+    prepared = prepare_chamber(inputs, draws=fit.draws, rng=_stream(fit, SEATS_STREAM))
+    seats = None if prepared is None else count_chamber_of(inputs, prepared, draws=fit.draws)
     shifted = (
         None
         if prepared is None or seats is None
@@ -152,31 +149,6 @@ def refresh(
         warnings=inputs.warnings,
         notices=written.notices,
     )
-
-
-def _prepare_seats(
-    inputs: DeskInputs, fit: Fit, draws: xr.Dataset, *, form: SwingForm = SwingForm.LOG_RATIO
-) -> PreparedSeats | None:
-    """Prepare the chamber for counting from draws; None where nothing is counted."""
-    if inputs.contest.counting.rule is CountingRule.NONE or inputs.last_result is None:
-        return None
-    return prepare_seats(
-        draws,
-        last_result=inputs.last_result,
-        counted_result=inputs.counted_result,
-        before_last=inputs.before_last,
-        transfers=inputs.transfers,
-        candidates=inputs.candidates,
-        contest=inputs.contest,
-        rng=_stream(fit, SEATS_STREAM),
-        form=form,
-    )
-
-
-def _count_prepared(inputs: DeskInputs, prepared: PreparedSeats, draws: xr.Dataset) -> xr.Dataset:
-    """Count a prepared chamber, its seats in the order of the last result."""
-    order = [] if inputs.last_result is None else inputs.last_result["seat"].astype(str).tolist()
-    return count_prepared(prepared, draws=draws, contest=inputs.contest, order=order)
 
 
 def _test_model(inputs: DeskInputs, fit: Fit, seats: xr.Dataset | None) -> ModelChecks:
@@ -221,7 +193,8 @@ def _with_seats(
     """Count the seats of another assumption; the run's own are those that the release shows."""
     if alternative.draws is None or alternative.in_use:
         return replace(alternative, seats=seats if alternative.in_use else None)
-    return replace(alternative, seats=_count_polling_day(inputs, fit, alternative.draws))
+    counted = count_polling_day(inputs, draws=alternative.draws, rng=_stream(fit, SEATS_STREAM))
+    return replace(alternative, seats=counted)
 
 
 def _swing_alternatives(inputs: DeskInputs, fit: Fit, seats: xr.Dataset | None) -> Iterator[Alternative]:
@@ -232,18 +205,12 @@ def _swing_alternatives(inputs: DeskInputs, fit: Fit, seats: xr.Dataset | None) 
     draws = fit.draws[names]
     for form in SwingForm:
         in_use = form is SwingForm.LOG_RATIO
-        counted = seats if in_use else _count_polling_day(inputs, fit, draws, form=form)
+        counted = (
+            seats
+            if in_use
+            else count_polling_day(inputs, draws=draws, rng=_stream(fit, SEATS_STREAM), form=form)
+        )
         yield Alternative(SWING, form.value, in_use, draws, counted, 0.0)
-
-
-def _count_polling_day(
-    inputs: DeskInputs, fit: Fit, draws: xr.Dataset, *, form: SwingForm = SwingForm.LOG_RATIO
-) -> xr.Dataset | None:
-    """Count polling day alone, as a series without dates."""
-    undated = draws["support_polling_day"].expand_dims({DATE: pd.DatetimeIndex([])})
-    dated = draws.assign(support=undated)
-    prepared = _prepare_seats(inputs, fit, dated, form=form)
-    return None if prepared is None else _count_prepared(inputs, prepared, dated)
 
 
 def _weigh_polls(inputs: DeskInputs, fit: Fit) -> pd.DataFrame:

@@ -7,15 +7,14 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-import pandas as pd
 import xarray as xr
 
 from aggregator.estimate.fit import Fit
 from aggregator.estimate.predictive_checks import summarise_predictive
-from aggregator.inputs.contest import Contest, CountingRule
+from aggregator.inputs.contest import Contest
 from aggregator.inputs.desk_inputs import DeskInputs
 from aggregator.refits.program_version import program_version
-from aggregator.seats.counting import count_seats
+from aggregator.seats.desk_count import count_polling_day
 from aggregator.settings import PREDICTIVE_STREAM, SEATS_STREAM
 from aggregator.shelf_life.worth import summarise_shelf_life
 from models.dimensions import CHAIN, DATE, DRAW, PARTY, REGION
@@ -67,7 +66,11 @@ def build_data(inputs: DeskInputs, fit: Fit) -> xr.Dataset:
             "expected_error": _expected_error(thinned, inputs.contest),
         }
     )
-    seats = _count_seats(inputs, fit)
+    seats = count_polling_day(
+        inputs,
+        draws=fit.draws[["support_polling_day", "turnout_weight"]],
+        rng=np.random.default_rng([fit.settings.seed, SEATS_STREAM]),
+    )
     if seats is not None:
         won = seats["seats_polling_day"].isel({DRAW: slice(None, None, _stride(fit.draws))})
         kept = seats[["seat_chance"]].drop_vars("seat_name", errors="ignore")
@@ -138,22 +141,3 @@ def _expected_error(draws: xr.Dataset, contest: Contest) -> xr.DataArray:
     errors = table.pivot(index="age_days", columns="code", values="expected_error")
     codes = [*(str(p) for p in draws[PARTY].to_numpy()), *(a.code for a in alliances)]
     return xr.DataArray(errors[codes].to_numpy(), dims=(AGE, CODE), coords={AGE: np.array(AGES), CODE: codes})
-
-
-def _count_seats(inputs: DeskInputs, fit: Fit) -> xr.Dataset | None:
-    """Count the seats of polling day, with the random numbers of a release; None where nothing is counted."""
-    if inputs.contest.counting.rule is CountingRule.NONE or inputs.last_result is None:
-        return None
-    on_polling_day = fit.draws[["support_polling_day"]]
-    # Only polling day is asked for: a series without dates.
-    undated = on_polling_day["support_polling_day"].expand_dims({DATE: pd.DatetimeIndex([])})
-    return count_seats(
-        on_polling_day.assign(support=undated),
-        last_result=inputs.last_result,
-        counted_result=inputs.counted_result,
-        before_last=inputs.before_last,
-        transfers=inputs.transfers,
-        candidates=inputs.candidates,
-        contest=inputs.contest,
-        rng=np.random.default_rng([fit.settings.seed, SEATS_STREAM]),
-    )
