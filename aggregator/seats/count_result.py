@@ -11,8 +11,8 @@ from aggregator.inputs.counting_terms import CountingRule
 from aggregator.seats.baseline import build_baseline
 from aggregator.seats.counting import count_chamber, won_in_rows
 from aggregator.seats.local_swing import region_starts
-from aggregator.seats.prepare import PreparedGroup, PreparedSeats, seats_of, settle_terms
-from aggregator.seats.rules import GroupVotes, SeatVotes
+from aggregator.seats.prepare import PreparedSeats, group_votes, regions_with_rows
+from aggregator.seats.rules import SeatVotes
 from models.dimensions import PARTY, SEAT
 
 
@@ -65,28 +65,21 @@ def _prepare(votes: pd.DataFrame, contest: Contest) -> PreparedSeats:
     by_region = np.stack([cast[(votes["region"] == r).to_numpy()].sum(axis=0) for r in regions])
     turnout = (by_region.sum(axis=1) / by_region.sum())[None]
     share = (by_region / by_region.sum(axis=1, keepdims=True)).astype(np.float32)
-    in_rows = sorted(r for terms, group in contest.counting_groups if terms.elects_by_row for r in group)
-    places = np.array([regions.index(r) for r in in_rows], dtype=np.int64)
     baseline = rows = None
-    if in_rows:
+    if in_rows := regions_with_rows(contest):
         baseline = build_baseline(votes[votes["region"].isin(in_rows)], contest=contest)
         rows = _rows(votes, baseline, parties)
-    groups = []
-    for terms, names in contest.counting_groups:
-        of_group = np.array(sorted(regions.index(r) for r in names), dtype=np.int64)
-        mine = np.searchsorted(places, of_group) if rows is not None and terms.elects_by_row else None
-        seats = seats_of(rows, mine)
-        group = GroupVotes(
-            rows=None if rows is None or mine is None else rows.of_regions(mine),
-            region_votes=share[None, None, of_group],
-            turnout=turnout[:, of_group],
-            list_lot=np.linspace(0, 1, len(parties))[None],
-        )
-        codes = [regions[r] for r in of_group]
-        settled = settle_terms(terms, contest, parties, codes, baseline, seats, votes)
-        groups.append(PreparedGroup(group, settled, of_group, seats))
+    groups = group_votes(
+        contest,
+        rows=rows,
+        baseline=baseline,
+        support=share[None, None],
+        turnout=turnout,
+        list_lot=np.linspace(0, 1, len(parties))[None],
+        last_result=votes,
+    )
     weight = np.empty(0) if baseline is None else baseline["weight"].to_numpy()
-    return PreparedSeats(tuple(groups), baseline, weight, parties, regions, 0.0)
+    return PreparedSeats(groups, baseline, weight, parties, regions, 0.0)
 
 
 def _rows(votes: pd.DataFrame, baseline: xr.Dataset, parties: tuple[str, ...]) -> SeatVotes:

@@ -42,15 +42,12 @@ class PreparedGroup:
     ----------
     votes, terms
         What its rule is given.
-    regions
-        Positions of its regions among the chamber's.
     seats
         Positions of its seats in the baseline; empty where it fills none by rows.
     """
 
     votes: GroupVotes
     terms: GroupTerms
-    regions: IntArray
     seats: IntArray
 
 
@@ -117,7 +114,7 @@ def prepare_seats(
     support = _support(draws, parties=parties, regions=regions)
     if form is SwingForm.ADDITIVE and support.shape[1] > 1:
         raise ValueError("Uniform swing is counted on polling day only.")
-    in_rows = sorted(r for terms, group in contest.counting_groups if terms.elects_by_row for r in group)
+    in_rows = regions_with_rows(contest)
     places = np.array([regions.index(r) for r in in_rows], dtype=np.int64)
     rows = baseline = None
     weight, gap = np.empty(0), 0.0
@@ -139,6 +136,49 @@ def prepare_seats(
         )
     turnout = _turnout(draws, last_result, regions)
     list_lot = rng.random((support.shape[0], len(parties)))
+    groups = group_votes(
+        contest,
+        rows=rows,
+        baseline=baseline,
+        support=support,
+        turnout=turnout,
+        list_lot=list_lot,
+        last_result=last_result,
+    )
+    if transfers is not None:
+        groups = tuple(_with_transfers(group, parties, transfers, rng=rng) for group in groups)
+    return PreparedSeats(groups, baseline, weight, parties, regions, gap)
+
+
+def group_votes(
+    contest: Contest,
+    *,
+    rows: SeatVotes | None,
+    baseline: xr.Dataset | None,
+    support: Float32Array,
+    turnout: FloatArray,
+    list_lot: FloatArray,
+    last_result: pd.DataFrame,
+) -> tuple[PreparedGroup, ...]:
+    """Deal the votes of a chamber out to the groups of regions that count alike.
+
+    Parameters
+    ----------
+    contest
+        Its groups.
+    rows, baseline
+        Votes of the seats and districts, regions sorted; None where no group fills any.
+    support
+        Share of each region's vote, dims (draw, date, region, party), regions and parties sorted.
+    turnout
+        Each region's part of the votes, dims (draw, region).
+    list_lot
+        dims (draw, party); see `aggregator.seats.rules.GroupVotes`.
+    last_result
+        Says how many members are elected where.
+    """
+    parties, regions = tuple(sorted(contest.party_codes)), tuple(sorted(contest.region_codes))
+    places = np.array([regions.index(r) for r in regions_with_rows(contest)], dtype=np.int64)
     groups = []
     for terms, names in contest.counting_groups:
         of_group = np.array(sorted(regions.index(r) for r in names), dtype=np.int64)
@@ -149,15 +189,27 @@ def prepare_seats(
             turnout=turnout[:, of_group],
             list_lot=list_lot,
         )
-        seats = seats_of(rows, mine)
-        settled = settle_terms(
-            terms, contest, parties, [regions[r] for r in of_group], baseline, seats, last_result
-        )
-        if terms.rule is CountingRule.TWO_ROUND and transfers is not None:
-            drawn = draw_transfers(transfers, parties=parties, draws=support.shape[0], rng=rng)
-            settled = replace(settled, transfers=drawn)
-        groups.append(PreparedGroup(votes, settled, of_group, seats))
-    return PreparedSeats(tuple(groups), baseline, weight, parties, regions, gap)
+        seats = _seats_of(rows, mine)
+        codes = [regions[r] for r in of_group]
+        settled = _settle_terms(terms, contest, parties, codes, baseline, seats, last_result)
+        groups.append(PreparedGroup(votes, settled, seats))
+    return tuple(groups)
+
+
+def regions_with_rows(contest: Contest) -> list[str]:
+    """Regions whose rows elect somebody, sorted."""
+    return sorted(r for terms, group in contest.counting_groups if terms.elects_by_row for r in group)
+
+
+def _with_transfers(
+    group: PreparedGroup, parties: tuple[str, ...], transfers: pd.DataFrame, *, rng: np.random.Generator
+) -> PreparedGroup:
+    """Draw the rates at which voters move on, where the group votes in two rounds."""
+    if group.terms.terms.rule is not CountingRule.TWO_ROUND:
+        return group
+    draws = group.votes.turnout.shape[0]
+    drawn = draw_transfers(transfers, parties=parties, draws=draws, rng=rng)
+    return replace(group, terms=replace(group.terms, transfers=drawn))
 
 
 def _draw_rows(
@@ -258,7 +310,7 @@ def _turnout(draws: xr.Dataset, last_result: pd.DataFrame, regions: tuple[str, .
     return np.tile(total / total.sum(), (samples, 1))
 
 
-def seats_of(rows: SeatVotes | None, regions: IntArray | None) -> IntArray:
+def _seats_of(rows: SeatVotes | None, regions: IntArray | None) -> IntArray:
     """Positions of the seats of some regions among all rows."""
     if rows is None or regions is None:
         return np.empty(0, dtype=np.int64)
@@ -266,7 +318,7 @@ def seats_of(rows: SeatVotes | None, regions: IntArray | None) -> IntArray:
     return np.concatenate([np.arange(start[r], start[r + 1]) for r in regions])
 
 
-def settle_terms(
+def _settle_terms(
     terms: CountingTerms,
     contest: Contest,
     parties: tuple[str, ...],

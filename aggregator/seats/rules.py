@@ -54,11 +54,7 @@ class SeatVotes:
     @property
     def polling_day_shares(self) -> Float32Array:
         """Share of the vote on the last date: dims (draw, party, seat)."""
-        return self.shares_on(-1)
-
-    def shares_on(self, date: int) -> Float32Array:
-        """Share of the vote on one date: dims (draw, party, seat)."""
-        share = self.multiplier[:, date, self.region_of_seat].transpose(0, 2, 1) * self.strength
+        share = self.multiplier[:, -1, self.region_of_seat].transpose(0, 2, 1) * self.strength
         share /= share.sum(axis=1, keepdims=True)
         return share
 
