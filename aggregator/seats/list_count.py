@@ -13,7 +13,7 @@ from aggregator.inputs.counting_terms import Across, CountingTerms
 from aggregator.seats.apportion.joint_lists import apportion_lists
 from aggregator.seats.apportion.list_method import ListMethod, highest_averages, largest_remainder
 from aggregator.seats.apportion.thresholds import passes_threshold
-from aggregator.seats.rules import FloatArray, GroupTerms, GroupVotes, SeatArray, SeatsCounted
+from aggregator.seats.rules import FloatArray, GroupTerms, GroupVotes, IntArray, SeatArray, SeatsCounted
 
 PERCENT = 100.0
 
@@ -35,20 +35,44 @@ def count_by_lists(votes: GroupVotes, terms: GroupTerms) -> SeatsCounted:
     ties = np.zeros(n_draws, dtype=np.int64)
     won = np.zeros((n_draws, len(places), n_parties), dtype=np.int16)
     for date in range(n_dates):
-        counted = apportion_lists(
-            votes_of_lists(votes, terms, date=date).reshape(-1, n_parties),
-            seats=np.tile(places, n_draws),
-            method=method_of(terms),
-            lists=terms.joint_lists,
-            lot=np.repeat(votes.list_lot, len(places), axis=0),
-            ties=terms.terms.ties.value,
-        )
-        won = counted.seats.reshape(won.shape)
+        won, tied = share_out(votes, terms, places=places, date=date)
         seats[:, date] = won.sum(axis=1)
-        ties += counted.tied.reshape(n_draws, -1).sum(axis=1)
+        ties += tied
     return SeatsCounted(
         seats=seats, won=_compact(won, terms) if by_district else None, from_lists=None, ties=ties
     )
+
+
+def share_out(
+    votes: GroupVotes, terms: GroupTerms, *, places: IntArray, date: int
+) -> tuple[SeatArray, IntArray]:
+    """Share the seats of every place out among its lists, on one date.
+
+    Parameters
+    ----------
+    votes, terms
+        As for `count_by_lists`.
+    places
+        Seats of each place, dims (place).
+    date
+        Position of the date.
+
+    Returns
+    -------
+    seats, ties
+        dims (draw, place, party); counts that were tied, dims (draw).
+    """
+    n_draws, n_parties = votes.list_lot.shape
+    counted = apportion_lists(
+        votes_of_lists(votes, terms, date=date).reshape(-1, n_parties),
+        seats=np.tile(places, n_draws),
+        method=method_of(terms),
+        lists=terms.joint_lists,
+        lot=np.repeat(votes.list_lot, len(places), axis=0),
+        ties=terms.terms.ties.value,
+    )
+    shape = (n_draws, len(places), n_parties)
+    return counted.seats.reshape(shape), counted.tied.reshape(n_draws, -1).sum(axis=1)
 
 
 def _compact(won: SeatArray, terms: GroupTerms) -> npt.NDArray[np.signedinteger]:

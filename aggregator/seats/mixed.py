@@ -10,8 +10,8 @@ from __future__ import annotations
 import numpy as np
 
 from aggregator.inputs.counting_terms import Across
-from aggregator.seats.apportion.joint_lists import apportion_lists, compensate_lists
-from aggregator.seats.list_count import method_of, votes_of_lists
+from aggregator.seats.apportion.joint_lists import compensate_lists
+from aggregator.seats.list_count import method_of, share_out, votes_of_lists
 from aggregator.seats.plurality import count_firsts
 from aggregator.seats.rules import GroupTerms, GroupVotes, IntArray, SeatArray, SeatsCounted
 
@@ -27,20 +27,12 @@ def count_mixed_parallel(votes: GroupVotes, terms: GroupTerms) -> SeatsCounted:
         With the seats filled from lists, by region or in all.
     """
     local = count_firsts(votes.in_rows)
-    n_draws, n_dates, n_parties = local.seats.shape
     from_lists = np.zeros_like(local.seats)
     ties = local.ties.copy()
-    for date in range(n_dates):
-        counted = apportion_lists(
-            votes_of_lists(votes, terms, date=date).reshape(-1, n_parties),
-            seats=np.tile(terms.list_seats, n_draws),
-            method=method_of(terms),
-            lists=terms.joint_lists,
-            lot=np.repeat(votes.list_lot, len(terms.list_seats), axis=0),
-            ties=terms.terms.ties.value,
-        )
-        from_lists[:, date] = counted.seats.reshape(n_draws, -1, n_parties).sum(axis=1)
-        ties += counted.tied.reshape(n_draws, -1).sum(axis=1)
+    for date in range(local.seats.shape[1]):
+        won, tied = share_out(votes, terms, places=terms.list_seats, date=date)
+        from_lists[:, date] = won.sum(axis=1)
+        ties += tied
     return SeatsCounted(
         seats=local.seats + from_lists, won=local.won, from_lists=from_lists[:, -1], ties=ties
     )
