@@ -7,17 +7,15 @@ from collections.abc import Iterator
 import pandas as pd
 
 from aggregator.inputs.contest import Contest
-from aggregator.inputs.last_result import inherit
+from aggregator.inputs.last_result import hand_on, list_donors
 from aggregator.inputs.reading_rules import Rule
 from aggregator.inputs.register_columns import RESULT_COLUMNS
 from aggregator.inputs.result_rows import (
-    build_result,
     check_code_columns,
     check_kind,
     check_places,
     check_totals,
     read_votes,
-    region_of,
 )
 from aggregator.inputs.row_members import check_members
 from aggregator.inputs.sheet_table import SheetTable, as_text, check_columns
@@ -39,7 +37,7 @@ def read_before_last_result(
     Columns as of the last result; NaN where a party did not stand. None where something is wrong. And what
     was found.
     """
-    donors = list(dict.fromkeys(d for p in contest.parties for d in p.inherits))
+    donors = list_donors(contest)
     codes = [c for c in table.columns if c in contest.party_codes or c in donors]
     problems = check_columns(
         table,
@@ -62,11 +60,7 @@ def read_before_last_result(
         problems += _check_seats(table, last_result)
     if any(p.severity is Severity.ERROR for p in problems):
         return None, problems
-    today = [
-        inherit(votes, region_of(row, contest=contest), contest)
-        for row, votes in zip(table.rows, rows, strict=True)
-    ]
-    return build_result(table, today, contest=contest), problems
+    return hand_on(table, rows, contest=contest), problems
 
 
 def _check_seats(table: SheetTable, last_result: pd.DataFrame) -> Iterator[Problem]:

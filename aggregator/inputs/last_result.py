@@ -34,7 +34,7 @@ def read_last_result(table: SheetTable, *, contest: Contest) -> tuple[pd.DataFra
     Columns ``seat``, ``name``, ``region``, ``seats``, ``cluster``, then one per party code: votes, NaN where
     the cell is blank (the party did not stand there). None where something is wrong. And what was found.
     """
-    donors = list(dict.fromkeys(d for p in contest.parties for d in p.inherits))
+    donors = list_donors(contest)
     codes = [c for c in table.columns if c in contest.party_codes or c in donors]
     problems = check_columns(
         table,
@@ -58,11 +58,7 @@ def read_last_result(table: SheetTable, *, contest: Contest) -> tuple[pd.DataFra
     problems += _check_standing(table, rows, contest)
     if any(p.severity is Severity.ERROR for p in problems):
         return None, problems
-    today = [
-        inherit(votes, region_of(row, contest=contest), contest)
-        for row, votes in zip(table.rows, rows, strict=True)
-    ]
-    return build_result(table, today, contest=contest), problems
+    return hand_on(table, rows, contest=contest), problems
 
 
 def _check_party_columns(table: SheetTable, donors: Sequence[str], contest: Contest) -> Iterator[Problem]:
@@ -118,6 +114,20 @@ def _check_standing(table: SheetTable, rows: Sequence[Votes], contest: Contest) 
                 "They count for last time only; correct regions in contest.toml if the party stands there.",
                 Rule.VOTES_NOT_STANDING, Severity.WARNING,
             )  # fmt: skip
+
+
+def list_donors(contest: Contest) -> list[str]:
+    """List the codes whose last votes some party of today inherits, each once."""
+    return list(dict.fromkeys(d for p in contest.parties for d in p.inherits))
+
+
+def hand_on(table: SheetTable, rows: Sequence[Votes], *, contest: Contest) -> pd.DataFrame:
+    """Build the table of votes by place after they were handed on to the parties of today."""
+    today = [
+        inherit(votes, region_of(row, contest=contest), contest)
+        for row, votes in zip(table.rows, rows, strict=True)
+    ]
+    return build_result(table, today, contest=contest)
 
 
 def inherit(votes: Votes, region: str, contest: Contest) -> Votes:
